@@ -1,0 +1,87 @@
+#pragma once
+/// \file Scalar expressions of a chip and its experiment as a shared graph.
+///
+/// Constants are in internal units (ns, rad, hbar = 1). Equal subexpressions are one node.
+
+#include <cstdint>
+#include <optional>
+#include <string>
+#include <unordered_map>
+#include <vector>
+
+#include "lang/quantities/dimension.h"
+#include "lang/source/span.h"
+
+namespace tarn {
+
+struct NodeId {
+  std::uint32_t row = 0;
+  bool operator==(const NodeId&) const = default;
+  auto operator<=>(const NodeId&) const = default;
+};
+
+enum class NodeOp : std::uint8_t {
+  constant,    ///< `number`
+  parameter,   ///< parameter `index` of the instance
+  s, t, w,     ///< arguments: pace value, laboratory time, angular rate
+  reading,     ///< reading `index` of the experiment: measured, known at run time only
+  observable,  ///< value of observable `index`: in claims
+  offsets_on,  ///< 1; the runtime sets it to 0 to turn anneal offsets off
+  table,       ///< table `index` at a
+  neg, exp, ln, log10, sqrt, sin, cos, tan, asin, acos, atan, sinh, cosh, tanh, abs, floor, logical_not,
+  add, sub, mul, div, pow, mod, min, max,
+  less, less_equal, equal, not_equal, logical_and, logical_or,
+  select       ///< a ? b : c
+};
+
+struct Node {
+  NodeOp op = NodeOp::constant;
+  NodeId a, b, c;
+  double number = 0;
+  std::uint32_t index = 0;
+  Dimension dimension;
+  bool truth = false;
+  Span span;  ///< Where it was first written.
+};
+
+/// How a table is read between its points.
+enum class Interpolation : std::uint8_t { linear, monotone, spline, loglog };
+
+/// Data of a table in internal units, x strictly ascending.
+struct TableData {
+  std::string name;  ///< As shown: curves.csv, column B [GHz].
+  std::vector<double> x, y;
+  Interpolation by = Interpolation::linear;
+  bool hold_outside = true;  ///< A schedule keeps its end value; a density is zero.
+  Span span;
+};
+
+/// Nodes in order: operands precede their uses. Nodes are hash-consed by add().
+struct Graph {
+  std::vector<Node> nodes;
+  std::vector<TableData> tables;
+  std::unordered_map<std::uint64_t, std::vector<NodeId>> index;  ///< By hash of op and operands.
+
+  const Node& operator[](NodeId id) const { return nodes[id.row]; }
+  /// Returns an equal node if there is one (spans do not count), else appends. Operations on
+  /// constants only are computed at once.
+  NodeId add(Node node);
+  NodeId constant(double number, Dimension dimension, Span span);
+};
+
+/// What a node depends on, through all of its operands.
+struct Dependence {
+  bool s = false, t = false, w = false, readings = false, observables = false;
+  std::vector<std::uint32_t> parameters;  ///< Ascending.
+};
+Dependence dependence(const Graph& graph, NodeId id);
+
+/// Values for evaluating a graph outside compiled code: constants, counts, checks at samples.
+struct Bindings {
+  std::vector<double> parameters, readings, observables;
+  double s = 0, t = 0, w = 0, offsets_on = 1;
+};
+/// The value of `id`; a truth is 0 or 1. Any s in tables is interpolated as compiled code does.
+double evaluate(const Graph& graph, NodeId id, const Bindings& at);
+
+}  // namespace tarn

@@ -1,0 +1,40 @@
+#pragma once
+/// \file What every equation of motion offers to the experiment: one propagation at one local
+/// tolerance. Errors of answers are the experiment's business: it compares two propagations.
+
+#include <Eigen/Core>
+#include <cstddef>
+#include <cstdint>
+#include <functional>
+#include <string>
+#include <variant>
+
+#include "runtime/equation/timeline.h"
+
+namespace tarn::runtime {
+
+/// A state in the computational basis: amplitudes (2^n) or a density matrix (2^n x 2^n).
+using Ket = Eigen::VectorXcd;
+using Density = Eigen::MatrixXcd;
+using State = std::variant<Ket, Density>;
+
+/// What a propagation did; summed over points and shown in run.json.
+struct Counters {
+  std::uint64_t steps = 0, rejected = 0, evaluations = 0, exponentials = 0, decompositions = 0;
+  Counters& operator+=(const Counters& other);
+};
+
+/// Why a point could not be computed, in the user's terms.
+struct RunError {
+  std::string kind;     ///< Stable name: not_finite, step_underflow, interrupted, ...
+  std::string message;
+};
+
+/// Called with the index of each requested time, ascending, and the state there. The state is
+/// valid during the call only.
+using Visit = std::function<void(std::size_t index, const State& state)>;
+
+/// Returns true when the work should stop; asked about every 0.1 s or less.
+using Interrupted = std::function<bool()>;
+
+}  // namespace tarn::runtime
