@@ -9,6 +9,7 @@
 #include <string>
 #include <variant>
 
+#include "lang/support/place.h"
 #include "runtime/equation/timeline.h"
 
 namespace tarn::runtime {
@@ -28,6 +29,7 @@ struct Counters {
 struct RunError {
   std::string kind;     ///< Stable name: not_finite, step_underflow, interrupted, ...
   std::string message;
+  Place place = {};         ///< Of the number at fault, where one is.
 };
 
 /// Called with the index of each requested time, ascending, and the state there. The state is
