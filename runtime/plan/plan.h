@@ -163,6 +163,7 @@ struct Observable {
   std::vector<std::uint32_t> readings;  ///< What the row reads.
   double scale = 0;                     ///< > 0: the tolerance is absolute times this; 0: of plain numbers.
   Place place;
+  bool shown = true;                    ///< False: made for a claim only and listed in no table.
 };
 
 enum class Relation : std::uint8_t { less, less_equal, greater, greater_equal, equal, not_equal };
