@@ -60,7 +60,7 @@ struct QubitPlace {
 /// J(w) of a bath by its form; rows of set kSettings. A sum of components is the density.
 struct PowerLawForm { std::uint32_t strength, cutoff, exponent; };  ///< eta w (w/wc)^(p-1) exp(-w/wc)
 struct DrudeForm { std::uint32_t strength, cutoff; };               ///< eta w / (1 + (w/wc)^2)
-/// strength w centre^2 width^2 / ((w^2 - centre^2)^2 + width^2 w^2)
+/// (2/pi) strength centre^2 width w / ((w^2 - centre^2)^2 + (width w)^2)
 struct PeakForm { std::uint32_t strength, centre, width; };
 /// scale * piecewise table in w [rad/ns]; loglog or linear between knots, zero outside.
 struct TableForm { std::uint32_t scale; std::vector<double> w, j; bool loglog = false; };
@@ -155,13 +155,18 @@ struct Along { std::uint32_t samples; };  ///< Even in t, with both ends.
 struct Static {};                         ///< No pace, a scan, or of parameters only.
 using Moment = std::variant<AtEnd, AtTime, AtS, Along, Static>;
 
+/// What the tolerance of an observable is relative to: plain numbers, absolute; energies, the larger
+/// of the answer and the spectral width; rates, the larger of the answer and 1/(run length); others,
+/// the answer.
+enum class Scale : std::uint8_t { plain, energy, rate, answer };
+
 struct Observable {
   std::string name;
   DisplayUnit unit;
   Moment moment;
   std::uint32_t row = 0;                ///< In set kObservables.
   std::vector<std::uint32_t> readings;  ///< What the row reads.
-  double scale = 0;                     ///< > 0: the tolerance is absolute times this; 0: of plain numbers.
+  Scale scale = Scale::plain;
   Place place;
   bool shown = true;                    ///< False: made for a claim only and listed in no table.
 };
