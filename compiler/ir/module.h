@@ -104,10 +104,11 @@ struct FunctionSet {
   bool operator==(const FunctionSet&) const = default;
 };
 
-/// What passes found out about a generator; code generation relies on it.
+/// What passes found out about a generator, for people and for the choice of an equation.
+/// Code generation decides word by word and does not depend on it.
 struct Structure {
-  bool real_words = false;     ///< Every word has an even number of Y and a real factor.
-  bool imaginary = false;      ///< -i times a generator with real_words.
+  bool real_words = false;     ///< Every matrix element is real.
+  bool imaginary = false;      ///< Every matrix element is imaginary: -i times a real generator.
   bool diagonal = false;       ///< No word flips a bit.
   bool operator==(const Structure&) const = default;
 };
@@ -135,5 +136,18 @@ struct Module {
 
 /// Appends a value; its operands must exist already.
 ValueId append(Module& module, Op op, Type type = Type::real);
+
+/// Calls visit(ValueId&) for each operand of the operation, in the order written.
+template <class Operation, class Visit>
+void for_each_operand(Operation& operation, Visit&& visit) {
+  std::visit(
+      [&](auto& op) {
+        if constexpr (requires { op.operand; }) visit(op.operand);
+        if constexpr (requires { op.lhs; }) visit(op.lhs), visit(op.rhs);
+        if constexpr (requires { op.condition; }) visit(op.condition), visit(op.then_value), visit(op.else_value);
+        if constexpr (requires { op.x; }) visit(op.x);
+      },
+      operation);
+}
 
 }  // namespace tarn::ir
