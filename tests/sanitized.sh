@@ -1,0 +1,6 @@
+#!/usr/bin/env bash
+# The suite once more under the address and undefined-behaviour sanitizers, in a folder of its own.
+set -euo pipefail
+root=$(cd "$(dirname "${BASH_SOURCE[0]}")/.." && pwd)
+bash "$root/.ci/setup" "$root/build-sanitized" -DTARN_SANITIZE=ON -DTARN_VERIFY=ON "$@"
+ctest --test-dir "$root/build-sanitized" --output-on-failure --parallel 2
