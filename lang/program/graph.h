@@ -3,6 +3,7 @@
 ///
 /// Constants are in internal units (ns, rad, hbar = 1). Equal subexpressions are one node.
 
+#include <array>
 #include <cstdint>
 #include <optional>
 #include <string>
@@ -36,13 +37,16 @@ enum class NodeOp : std::uint8_t {
 
 struct Node {
   NodeOp op = NodeOp::constant;
-  NodeId a, b, c;
+  NodeId a{}, b{}, c{};
   double number = 0;
   std::uint32_t index = 0;
-  Dimension dimension;
+  Dimension dimension{};
   bool truth = false;
-  Span span;  ///< Where it was first written.
+  Span span{};  ///< Where it was first written.
 };
+
+/// How many of a, b, c the operation reads.
+int operand_count(NodeOp op);
 
 /// How a table is read between its points.
 enum class Interpolation : std::uint8_t { linear, monotone, spline, loglog };
@@ -54,6 +58,13 @@ struct TableData {
   Interpolation by = Interpolation::linear;
   bool hold_outside = true;  ///< A schedule keeps its end value; a density is zero.
   Span span;
+};
+
+/// Piece j covers knots[j] .. knots[j+1]: value = sum over k of c[k][j] (x - knots[j])^k.
+/// Of a log-log table knots and values are natural logarithms. See lang/program/table.h.
+struct PiecewiseCubic {
+  std::vector<double> knots;             ///< Strictly ascending, at least two.
+  std::array<std::vector<double>, 4> c;  ///< knots.size() - 1 each.
 };
 
 /// Nodes in order: operands precede their uses. Nodes are hash-consed by add().
@@ -81,7 +92,25 @@ struct Bindings {
   std::vector<double> parameters, readings, observables;
   double s = 0, t = 0, w = 0, offsets_on = 1;
 };
-/// The value of `id`; a truth is 0 or 1. Any s in tables is interpolated as compiled code does.
+/// The value of `id`; a truth is 0 or 1. Tables are read by the coefficients of
+/// lang/program/table.h, as compiled code does. `mod` has the sign of the divisor.
 double evaluate(const Graph& graph, NodeId id, const Bindings& at);
+
+/// Evaluates some nodes at many bindings: what they need is collected once.
+class Sampler {
+ public:
+  Sampler(const Graph& graph, const std::vector<NodeId>& roots);
+  /// Rows of the nodes needed, ascending; operands precede their uses.
+  const std::vector<std::uint32_t>& rows() const { return rows_; }
+  void run(const Bindings& at);
+  /// After run(). Precondition: the node is a root or below one.
+  double value(NodeId id) const { return values_[id.row]; }
+
+ private:
+  const Graph& graph_;
+  std::vector<std::uint32_t> rows_;
+  std::vector<PiecewiseCubic> cubics_;  ///< By table; empty where not needed.
+  std::vector<double> values_;
+};
 
 }  // namespace tarn

@@ -131,6 +131,7 @@ struct ObservableI {
   MomentI moment;
   NodeId value;  ///< Of parameters, s, t, readings.
   Span span;
+  bool shown = true;  ///< False: made for a claim only, listed in no table.
 };
 
 /// A claim is a truth node over comparisons; lowering takes it apart.
