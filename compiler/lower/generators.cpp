@@ -1,6 +1,8 @@
 #include "compiler/lower/generators.h"
 
+#include <algorithm>
 #include <map>
+#include <utility>
 
 #include "compiler/lower/words.h"
 
@@ -82,7 +84,7 @@ class CoefficientProducts {
  public:
   CoefficientProducts(Rows& rows, ir::Module& module) : rows_(rows), module_(module) {}
   std::uint32_t row(std::uint32_t a, std::uint32_t b) {
-    const auto key = std::minmax(a, b);
+    const std::pair<std::uint32_t, std::uint32_t> key = std::minmax(a, b);
     const auto found = made_.find(key);
     if (found != made_.end()) return found->second;
     const auto& functions = module_.sets[runtime::kCoefficients].functions;
