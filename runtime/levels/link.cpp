@@ -1,0 +1,227 @@
+#include "runtime/levels/link.h"
+
+#include <Eigen/Dense>
+#include <algorithm>
+#include <cmath>
+#include <complex>
+#include <numeric>
+#include <tuple>
+#include <type_traits>
+
+#include "lang/support/check.h"
+
+namespace tarn::runtime {
+namespace {
+
+using Complex = std::complex<double>;
+using Labels = std::vector<int>;
+
+int count_of(const Labels& manifold) {
+  return manifold.empty() ? 0 : 1 + *std::max_element(manifold.begin(), manifold.end());
+}
+
+std::vector<Labels> members(const Labels& manifold) {
+  std::vector<Labels> lists(static_cast<std::size_t>(count_of(manifold)));
+  for (std::size_t a = 0; a < manifold.size(); ++a) lists[static_cast<std::size_t>(manifold[a])].push_back(static_cast<int>(a));
+  return lists;
+}
+
+/// Rotates each degenerate manifold of the columns so that its vectors point to separate manifolds
+/// of the rows, where the rows tell it apart. Source: first order is degenerate perturbation
+/// theory; diagonalising the manifold ordinal of the other side keeps every order.
+template <class Scalar>
+Matrix<Scalar> adapt_columns(Matrix<Scalar>& overlap, const Labels& columns, const Labels& rows) {
+  Matrix<Scalar> basis;
+  Eigen::VectorXd ordinal(overlap.rows());
+  for (Eigen::Index r = 0; r < overlap.rows(); ++r) ordinal[r] = rows[static_cast<std::size_t>(r)];
+  for (const Labels& manifold : members(columns)) {
+    if (manifold.size() < 2) continue;
+    const Matrix<Scalar> block = overlap(Eigen::all, manifold);
+    const Eigen::VectorXd row_weight = block.rowwise().squaredNorm();
+    Eigen::VectorXd weight = Eigen::VectorXd::Zero(count_of(rows));
+    for (Eigen::Index r = 0; r < row_weight.size(); ++r) weight[rows[static_cast<std::size_t>(r)]] += row_weight[r];
+    if (weight.maxCoeff() > static_cast<double>(manifold.size()) - 0.5) continue;
+    const Matrix<Scalar> projected = block.adjoint() * ordinal.asDiagonal() * block;
+    const Eigen::SelfAdjointEigenSolver<Matrix<Scalar>> solver(projected);
+    if (basis.size() == 0) basis = Matrix<Scalar>::Identity(overlap.cols(), overlap.cols());
+    basis(manifold, manifold) = solver.eigenvectors();
+    overlap(Eigen::all, manifold) = block * solver.eigenvectors();
+  }
+  return basis;
+}
+
+/// Pairs every column with a row: largest products of manifold weights first.
+/// Deterministic: ties are broken by index. Looks at all pairs, so distant labels never swap.
+template <class Scalar>
+Labels match(const Matrix<Scalar>& overlap, const Labels& columns, const Labels& rows) {
+  const Eigen::Index size = overlap.rows();
+  const Eigen::MatrixXd weight = overlap.cwiseAbs2();
+  Eigen::MatrixXd by_column = Eigen::MatrixXd::Zero(size, count_of(columns));
+  Eigen::MatrixXd by_row = Eigen::MatrixXd::Zero(count_of(rows), size);
+  for (Eigen::Index k = 0; k < size; ++k) {
+    by_column.col(columns[static_cast<std::size_t>(k)]) += weight.col(k);
+    by_row.row(rows[static_cast<std::size_t>(k)]) += weight.row(k);
+  }
+  std::vector<std::tuple<double, int, int>> pairs;
+  for (int k = 0; k < size; ++k)
+    for (int r = 0; r < size; ++r) {
+      const double score = by_column(r, columns[static_cast<std::size_t>(k)]) * by_row(rows[static_cast<std::size_t>(r)], k);
+      if (score > 1e-8) pairs.emplace_back(-score - 1e-3 * weight(r, k), k, r);
+    }
+  std::sort(pairs.begin(), pairs.end());
+  Labels partner(static_cast<std::size_t>(size), -1), used(static_cast<std::size_t>(size), 0);
+  for (const auto& [score, k, r] : pairs) {
+    if (partner[static_cast<std::size_t>(k)] >= 0 || used[static_cast<std::size_t>(r)]) continue;
+    partner[static_cast<std::size_t>(k)] = r;
+    used[static_cast<std::size_t>(r)] = 1;
+  }
+  int spare = 0;
+  for (int& r : partner) {
+    if (r >= 0) continue;
+    while (used[static_cast<std::size_t>(spare)]) ++spare;
+    r = spare;
+    used[static_cast<std::size_t>(spare)] = 1;
+  }
+  return partner;
+}
+
+template <class Scalar>
+Matrix<Scalar> polar_factor(const Matrix<Scalar>& matrix) {
+  const Eigen::JacobiSVD<Matrix<Scalar>> svd(matrix, Eigen::ComputeFullU | Eigen::ComputeFullV);
+  return svd.matrixU() * svd.matrixV().adjoint();
+}
+
+/// Turns the right labels within each pair of manifolds onto the left ones, where they are not
+/// already close: a small turn there is as well left to the rotation. Returns the basis turned.
+template <class Scalar>
+void align(Matrix<Scalar>& overlap, Matrix<Scalar>& basis, const Labels& left, const Labels& right) {
+  const int stride = count_of(right);
+  Labels joint(left.size());
+  for (std::size_t a = 0; a < left.size(); ++a) joint[a] = left[a] * stride + right[a];
+  for (const Labels& group : members(joint)) {
+    if (group.empty()) continue;
+    const Matrix<Scalar> turn = polar_factor<Scalar>(overlap(group, group));
+    const auto size = static_cast<Eigen::Index>(group.size());
+    if ((turn - Matrix<Scalar>::Identity(size, size)).cwiseAbs().maxCoeff() < 0.1) continue;
+    const Matrix<Scalar> rows = overlap(group, Eigen::all), columns = basis(Eigen::all, group);
+    overlap(group, Eigen::all) = turn.adjoint() * rows;
+    basis(Eigen::all, group) = columns * turn;
+  }
+}
+
+template <class Scalar>
+bool is_identity(const Matrix<Scalar>& matrix) {
+  return (matrix - Matrix<Scalar>::Identity(matrix.rows(), matrix.cols())).cwiseAbs().maxCoeff() < 1e-14;
+}
+
+/// The slope is taken a little inside the link: a schedule may have a kink at its end.
+template <class Scalar>
+Eigen::VectorXd slopes(const LevelModel<Scalar>& model, double s, const Matrix<Scalar>& vectors) {
+  return (vectors.conjugate().cwiseProduct(model.slope(s, vectors))).real().colwise().sum().transpose();
+}
+
+template <class Scalar>
+Eigen::VectorXd adapted(const Eigen::VectorXd& energies, const Matrix<Scalar>& basis) {
+  return basis.size() == 0 ? energies : Eigen::VectorXd(basis.cwiseAbs2().transpose() * energies);
+}
+
+template <class Scalar>
+void set_energies(Link<Scalar>& link, const LevelModel<Scalar>& model, const Frame<Scalar>& left, const Frame<Scalar>& right) {
+  const double ds = link.s_right - link.s_left;
+  const auto turned = [](const Frame<Scalar>& frame, const Matrix<Scalar>& basis) -> Matrix<Scalar> {
+    if (basis.size() == 0) return frame.vectors;
+    return frame.vectors * basis;
+  };
+  link.left_energies = adapted<Scalar>(left.energies, link.left_basis);
+  link.right_energies = adapted<Scalar>(right.energies, link.right_basis);
+  link.left_slopes = slopes<Scalar>(model, link.s_left + 1e-9 * ds, turned(left, link.left_basis));
+  link.right_slopes = slopes<Scalar>(model, link.s_right - 1e-9 * ds, turned(right, link.right_basis));
+  link.mean_energies = 0.5 * (link.left_energies + link.right_energies) + ds / 12.0 * (link.left_slopes - link.right_slopes);
+}
+
+/// Series of asinh, S - S^3/6 + ..., for |S| small.
+template <class Scalar>
+Matrix<Scalar> asinh_series(const Matrix<Scalar>& sine) {
+  const Matrix<Scalar> square = sine * sine;
+  Matrix<Scalar> power = sine, sum = sine;
+  double coefficient = 1;
+  for (int k = 1; k < 12 && power.cwiseAbs().maxCoeff() > 1e-17; ++k) {
+    power = power * square;
+    coefficient *= -(2.0 * k - 1) / (2.0 * k);
+    sum += coefficient / (2.0 * k + 1) * power;
+  }
+  return sum;
+}
+
+}  // namespace
+
+std::vector<int> manifolds(const Eigen::VectorXd& energies, double tolerance) {
+  Labels order(static_cast<std::size_t>(energies.size())), ordinal(order.size());
+  std::iota(order.begin(), order.end(), 0);
+  std::stable_sort(order.begin(), order.end(), [&](int a, int b) { return energies[a] < energies[b]; });
+  int current = 0;
+  for (std::size_t k = 0; k < order.size(); ++k) {
+    if (k > 0 && energies[order[k]] - energies[order[k - 1]] > tolerance) ++current;
+    ordinal[static_cast<std::size_t>(order[k])] = current;
+  }
+  return ordinal;
+}
+
+template <class Scalar>
+Matrix<Scalar> rotation_logarithm(const Matrix<Scalar>& rotation) {
+  const Matrix<Scalar> sine = 0.5 * (rotation - rotation.adjoint());
+  if (sine.norm() < 0.2) return asinh_series<Scalar>(sine);
+  const Matrix<Complex> hermitian = Complex(0, -1) * sine.template cast<Complex>();
+  const Eigen::SelfAdjointEigenSolver<Matrix<Complex>> solver(hermitian);
+  const Eigen::VectorXd angle = solver.eigenvalues().unaryExpr([](double x) { return std::asin(std::clamp(x, -1.0, 1.0)); });
+  const Matrix<Complex> log = solver.eigenvectors() * (Complex(0, 1) * angle.cast<Complex>()).asDiagonal() * solver.eigenvectors().adjoint();
+  if constexpr (std::is_same_v<Scalar, double>) {
+    return log.real();
+  } else {
+    return log;
+  }
+}
+
+template <class Scalar>
+Link<Scalar> make_link(const LevelModel<Scalar>& model, const Frame<Scalar>& left, const Frame<Scalar>& right, double tolerance) {
+  TARN_CHECK(left.energies.size() == right.energies.size());
+  Link<Scalar> link;
+  link.s_left = left.s;
+  link.s_right = right.s;
+  Matrix<Scalar> overlap = right.vectors.adjoint() * left.vectors;
+  link.lost = (1.0 - overlap.cwiseAbs2().colwise().sum().array()).max(0.0).transpose();
+  const Labels columns = manifolds(left.energies, tolerance), rows = manifolds(right.energies, tolerance);
+  link.left_basis = adapt_columns<Scalar>(overlap, columns, rows);
+  Matrix<Scalar> transposed = overlap.adjoint();
+  Matrix<Scalar> basis = adapt_columns<Scalar>(transposed, rows, columns);
+  overlap = transposed.adjoint();
+  const Labels partner = match<Scalar>(overlap, columns, rows);
+  if (basis.size() == 0) basis = Matrix<Scalar>::Identity(overlap.rows(), overlap.rows());
+  basis = Matrix<Scalar>(basis(Eigen::all, partner));
+  overlap = Matrix<Scalar>(overlap(partner, Eigen::all));
+  Labels matched(partner.size());
+  for (std::size_t a = 0; a < partner.size(); ++a) matched[a] = rows[static_cast<std::size_t>(partner[a])];
+  align<Scalar>(overlap, basis, columns, matched);
+  if (!is_identity<Scalar>(basis)) link.right_basis = basis;
+  if (left.vectors.rows() != left.vectors.cols()) overlap = polar_factor<Scalar>(overlap);
+  link.rotation = rotation_logarithm<Scalar>(overlap);
+  set_energies<Scalar>(link, model, left, right);
+  return link;
+}
+
+template <class Scalar>
+void orient(Frame<Scalar>& right, Link<Scalar>& link) {
+  if (link.right_basis.size() == 0) return;
+  right.vectors = Matrix<Scalar>(right.vectors * link.right_basis);
+  right.energies = link.right_energies;
+  link.right_basis.resize(0, 0);
+}
+
+template Matrix<double> rotation_logarithm<double>(const Matrix<double>&);
+template Matrix<Complex> rotation_logarithm<Complex>(const Matrix<Complex>&);
+template Link<double> make_link<double>(const LevelModel<double>&, const Frame<double>&, const Frame<double>&, double);
+template Link<Complex> make_link<Complex>(const LevelModel<Complex>&, const Frame<Complex>&, const Frame<Complex>&, double);
+template void orient<double>(Frame<double>&, Link<double>&);
+template void orient<Complex>(Frame<Complex>&, Link<Complex>&);
+
+}  // namespace tarn::runtime
