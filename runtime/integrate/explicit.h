@@ -1,0 +1,113 @@
+#pragma once
+/// \file Adaptive integration of dy/dt = f(t, y) by the explicit pair 8(5,3), on W systems at once.
+///
+/// The W lanes are independent initial value problems with one right-hand side: each has its own
+/// times, tolerance and step; a lane that is done or has failed idles. Nothing of a lane's result
+/// depends on the others: every bit is the same whatever they do. W = 1 is the plain case.
+///
+/// Local error of a step: with e5, e3 the norms of the embedded estimates of order 5 and 3,
+/// e5^2 / sqrt(e5^2 + e3^2 / 100), in the plain 2-norm of the state, must not exceed the tolerance
+/// that `per_step` grants. Source: Solving Ordinary Differential Equations I (Springer, 1993), II.10.
+
+#include <cstddef>
+#include <functional>
+#include <limits>
+#include <optional>
+#include <span>
+#include <vector>
+
+#include "runtime/integrate/counters.h"
+#include "runtime/integrate/failure.h"
+#include "runtime/integrate/vectors.h"
+
+namespace tarn::runtime {
+
+/// Where the right-hand side will be evaluated next.
+struct Nodes {
+  std::size_t count = 0;
+  std::span<const double> t;           ///< t[node W + lane] [ns].
+  std::span<const std::size_t> piece;  ///< piece[lane]: which piece the lane is on.
+};
+
+/// The right-hand side, for all lanes in one call.
+struct RightHandSide {
+  /// Gets ready for evaluations at these nodes, which replace the earlier ones. Sets bad[lane] where
+  /// f has no finite value.
+  std::function<void(const Nodes& nodes, bool* bad)> nodes;
+  /// argument = sum_j weights[j W + lane] vectors[j] for j < count, derivative = f(t[node], argument).
+  /// The outputs overlap nothing.
+  std::function<void(std::size_t node, std::size_t count, const double* weights,
+                     const double* const* vectors, double* argument, double* derivative)>
+      stage;
+};
+
+/// What one lane has to do.
+struct LaneTask {
+  /// Boundaries of the pieces on which f is smooth, ascending; the first is where the lane starts,
+  /// the last where it ends. No step crosses a boundary. Fewer than two: the lane idles.
+  std::span<const double> boundaries;
+  /// Times at which the state is asked for, ascending, within the boundaries.
+  std::span<const double> times;
+  double tolerance = 1e-8;
+};
+
+/// Called with a lane, the index of a requested time, and an array whose lane holds the state there.
+using OnTime = std::function<void(std::size_t lane, std::size_t index, const double* state)>;
+
+class ExplicitIntegrator {
+ public:
+  /// `size` doubles a lane; `lanes` divides 8.
+  ExplicitIntegrator(std::size_t size, std::size_t lanes);
+
+  /// The states, interleaved by lanes: set before run(), at the end times after it. A lane that
+  /// failed holds its state at the last good step.
+  double* state() { return vectors_[0].data(); }
+
+  /// One task and one answer a lane; an empty answer is success. Steps of an earlier run are the
+  /// first guess of the next.
+  std::vector<std::optional<Failure>> run(const RightHandSide& f, std::span<const LaneTask> tasks,
+                                          const OnTime& on_time, const Interrupted& interrupted);
+
+  const Counters& counters(std::size_t lane) const { return lanes_[lane].counters; }
+
+ private:
+  struct Lane {
+    bool active = false;
+    bool fresh = false;        ///< The derivative at t is not known.
+    bool ends_piece = false;   ///< This step ends on a boundary.
+    bool accepted = false;
+    double t = 0, step = 0;    ///< `step` is what is tried next; 0 when unknown.
+    double next_t = 0, trial = 0;
+    double last_ratio = 1e-4;  ///< Error over tolerance of the last accepted step.
+    bool just_rejected = false;
+    std::size_t piece = 0, next_time = 0;
+    std::optional<Failure> failure;
+    Counters counters;
+  };
+
+  double* row(std::size_t index);
+  double* stage_row(std::size_t stage);
+  void start(std::span<const LaneTask> tasks, const OnTime& on_time);
+  bool any_active() const;
+  void fail(Lane& lane, FailureKind kind);
+  void stop_all(FailureKind kind);
+  void announce(const RightHandSide& f, std::span<const double> c);
+  void evaluate(const RightHandSide& f, std::size_t stage, std::size_t node, double* argument);
+  void refresh(const RightHandSide& f, std::span<const LaneTask> tasks);
+  void choose_steps(std::span<const LaneTask> tasks);
+  void attempt(const RightHandSide& f);
+  void judge(std::span<const LaneTask> tasks);
+  void judge_lane(Lane& lane, double ratio, double shortest);
+  void interpolate(const RightHandSide& f, std::span<const LaneTask> tasks, const OnTime& on_time);
+  void combine_interpolant(const double* x);
+  void advance(std::span<const LaneTask> tasks, const OnTime& on_time);
+  void report_until(std::size_t l, const LaneTask& task, const OnTime& on_time);
+
+  std::size_t size_, width_, length_;
+  std::vector<AlignedArray> vectors_;  ///< y, k0..k15, next y, argument.
+  std::vector<Lane> lanes_;
+  std::vector<double> node_times_, weights_;
+  std::vector<std::size_t> pieces_;
+};
+
+}  // namespace tarn::runtime

@@ -1,0 +1,32 @@
+#pragma once
+/// \file How long the next step may be, from the error of this one.
+
+#include <algorithm>
+#include <cmath>
+
+namespace tarn::runtime {
+
+/// The error estimate of the pair 8(5,3) from the norms of its two embedded estimates; of order 8.
+inline double blended_error(double e5, double e3) {
+  if (e5 == 0) return 0;
+  return e5 * e5 / std::sqrt(e5 * e5 + 0.01 * e3 * e3);
+}
+
+/// Factor for the step after an accepted one: proportional and integral control, for an error of
+/// order 8 in the step. `ratio` is error over tolerance of this step, `last_ratio` of the one before.
+/// Source: Solving Ordinary Differential Equations II (Springer, 1996), IV.2.
+inline double growth_after_success(double ratio, double last_ratio) {
+  constexpr double kIntegral = 0.04, kOrder = 8;
+  if (ratio == 0) return 6;
+  const double factor = 0.9 * std::pow(ratio, -(1 / kOrder - 0.2 * kIntegral)) *
+                        std::pow(last_ratio, kIntegral);
+  return std::clamp(factor, 0.3, 6.0);
+}
+
+/// Factor for repeating a rejected step; NaN and infinity shrink it most.
+inline double shrink_after_failure(double ratio) {
+  if (!std::isfinite(ratio)) return 0.1;
+  return std::clamp(0.9 * std::pow(ratio, -1.0 / 8), 0.1, 0.9);
+}
+
+}  // namespace tarn::runtime
