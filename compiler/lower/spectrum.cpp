@@ -123,22 +123,19 @@ bool take_factor(Builder& build, Summand& summand, NodeId id, bool inverse) {
     return true;
   }
   const Node node = build[id];
-  switch (node.op) {
-    case NodeOp::mul:
-      return take_factor(build, summand, node.a, inverse) && take_factor(build, summand, node.b, inverse);
-    case NodeOp::div:
-      return take_factor(build, summand, node.a, inverse) && take_factor(build, summand, node.b, !inverse);
-    case NodeOp::neg:
-      scale(build, summand, build.number(-1), false);
-      return take_factor(build, summand, node.a, inverse);
-    case NodeOp::exp:
-      return take_exponential(build, summand, node.a, inverse);
-    case NodeOp::table:
-      if (inverse || summand.table || build[node.a].op != NodeOp::w) return false;
-      summand.table = node.index;
-      return true;
-    default:
-      break;
+  if (node.op == NodeOp::mul || node.op == NodeOp::div) {
+    const bool other = inverse != (node.op == NodeOp::div);
+    return take_factor(build, summand, node.a, inverse) && take_factor(build, summand, node.b, other);
+  }
+  if (node.op == NodeOp::neg) {
+    scale(build, summand, build.number(-1), false);
+    return take_factor(build, summand, node.a, inverse);
+  }
+  if (node.op == NodeOp::exp) return take_exponential(build, summand, node.a, inverse);
+  if (node.op == NodeOp::table) {
+    if (inverse || summand.table || build[node.a].op != NodeOp::w) return false;
+    summand.table = node.index;
+    return true;
   }
   if (take_power(build, summand, id, build.number(1), inverse)) return true;
   if (node.op == NodeOp::pow && take_power(build, summand, node.a, node.b, inverse)) return true;
