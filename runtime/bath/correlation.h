@@ -1,0 +1,32 @@
+#pragma once
+/// \file The correlation function C(t) = <B(t)B(0)> of a bath, in rad^2/ns^2; C(-t) = C(t)*.
+/// Power law: gamma and Hurwitz zeta functions; Drude, peaks: exponentials and Lerch sums;
+/// tables, functions: Fourier transforms of Legendre panels of J. Formulas and sources stand
+/// in power_law_bath.h, rational_density.h, panel_series.h.
+
+#include <Eigen/Core>
+#include <complex>
+#include <functional>
+#include <vector>
+
+#include "runtime/bath/thermal_bath.h"
+
+namespace tarn::runtime {
+
+class CorrelationFunction {
+ public:
+  explicit CorrelationFunction(const ThermalBath& bath);
+
+  /// C(t), any real t [ns]. Closed forms: relative accuracy 1e-12; tables and functions:
+  /// 1e-12 C(0), uniform in t, the accuracy of the panels. A Drude part makes the real part
+  /// +infinity at t = 0.
+  std::complex<double> at(double t) const;
+
+  /// Shape: (n) in, (n) out.
+  Eigen::ArrayXcd operator()(const Eigen::Ref<const Eigen::ArrayXd>& t) const;
+
+ private:
+  std::vector<std::function<std::complex<double>(double)>> terms_;  ///< For t >= 0.
+};
+
+}  // namespace tarn::runtime
