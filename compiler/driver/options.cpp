@@ -1,0 +1,161 @@
+#include "compiler/driver/options.h"
+
+#include <CLI/CLI.hpp>
+#include <sstream>
+
+namespace tarn::compiler {
+namespace {
+
+constexpr const char* kAbout =
+    "Tarn: models of small annealing chips, their noise and the experiments made on them.";
+constexpr const char* kVersion = TARN_VERSION;
+
+std::vector<Override> split_overrides(const std::vector<std::string>& texts) {
+  std::vector<Override> result;
+  for (const std::string& text : texts) {
+    const std::size_t equals = text.find('=');
+    result.push_back({text.substr(0, equals), text.substr(equals + 1)});
+  }
+  return result;
+}
+
+/// What an option's text must look like, told as CLI11 wants it: empty if it is right.
+std::string check_override(const std::string& text) {
+  const std::size_t equals = text.find('=');
+  return equals == 0 || equals == std::string::npos ? "--set takes NAME=VALUE, such as ta=\"5 us\"" : "";
+}
+
+/// Seconds from 90, 90s, 15min or 2h.
+std::optional<double> parse_duration(const std::string& text) {
+  std::size_t used = 0;
+  double number = 0;
+  try {
+    number = std::stod(text, &used);
+  } catch (const std::exception&) {
+    return std::nullopt;
+  }
+  const std::string unit = text.substr(text.find_first_not_of(' ', used) == std::string::npos
+                                           ? text.size()
+                                           : text.find_first_not_of(' ', used));
+  const double seconds = unit.empty() || unit == "s" ? 1 : unit == "min" ? 60 : unit == "h" ? 3600 : 0;
+  if (seconds == 0 || !(number > 0) || number > 1e9) return std::nullopt;
+  return number * seconds;
+}
+
+/// The options of all commands while CLI11 fills them.
+struct Raw {
+  ModelOptions model;
+  std::vector<std::string> overrides;
+  std::string diagnostics = "text";
+  std::string experiment, out, stage, time_limit;
+  unsigned jobs = 0;
+  std::uint64_t sample = 0;
+  bool no_cache = false, timings = false, in_place = false;
+};
+
+void add_model(CLI::App& command, Raw& raw) {
+  command.add_option("FILE", raw.model.file, "The model, a .tarn file")->required();
+  command.add_option("--also-read", raw.model.also_read, "A folder beside the model's that `use` and tables may read")
+      ->type_name("DIR");
+  command.add_option("--diagnostics", raw.diagnostics, "How messages are written: text or json (one object a line)")
+      ->check(CLI::IsMember({"text", "json"}))
+      ->type_name("FORM");
+}
+
+void add_overrides(CLI::App& command, Raw& raw) {
+  command.add_option("--set", raw.overrides, "Give a parameter another value: --set ta=\"5 us\"")
+      ->check(check_override)
+      ->type_name("NAME=VALUE")
+      ->allow_extra_args(false);
+}
+
+void add_experiment(CLI::App& command, Raw& raw) {
+  command.add_option("--experiment", raw.experiment, "Only this experiment of the model")->type_name("NAME");
+}
+
+void add_cache(CLI::App& command, Raw& raw) {
+  command.add_flag("--no-cache", raw.no_cache, "Neither read nor write the cache of compiled models");
+}
+
+void add_run(CLI::App& app, Raw& raw) {
+  CLI::App* command = app.add_subcommand("run", "Run the model's experiments and leave their results in files");
+  add_model(*command, raw);
+  add_experiment(*command, raw);
+  add_overrides(*command, raw);
+  command->add_option("--out", raw.out, "Folder for the results (default: MODEL-results here)")->type_name("DIR");
+  command->add_option("--jobs", raw.jobs, "Grid points computed at a time (default: one for each core)")
+      ->check(CLI::Range(1u, 1024u))
+      ->type_name("N");
+  command->add_option("--sample", raw.sample, "Only N points, spread evenly over the grid")
+      ->check(CLI::Range(std::uint64_t{1}, std::uint64_t{1} << 40))
+      ->type_name("N");
+  command->add_option("--time-limit", raw.time_limit, "Stop in good order after this time: 90s, 15min, 2h")
+      ->check([](const std::string& text) {
+        return parse_duration(text) ? std::string() : "--time-limit takes a time such as 90s, 15min or 2h";
+      })
+      ->type_name("TIME");
+  add_cache(*command, raw);
+  command->add_flag("--timings", raw.timings, "Show where the time went");
+}
+
+void add_commands(CLI::App& app, Raw& raw) {
+  CLI::App* check = app.add_subcommand("check", "Check a model: names, dimensions, chips, experiments");
+  add_model(*check, raw);
+  add_overrides(*check, raw);
+  CLI::App* explain = app.add_subcommand("explain", "Show a model as resolved: terms, scales, gap, kernels");
+  add_model(*explain, raw);
+  add_experiment(*explain, raw);
+  add_overrides(*explain, raw);
+  add_cache(*explain, raw);
+  add_run(app, raw);
+  CLI::App* tidy = app.add_subcommand("tidy", "Write a model in its usual layout");
+  add_model(*tidy, raw);
+  tidy->add_flag("--in-place", raw.in_place, "Rewrite the file instead of printing the text");
+  CLI::App* emit = app.add_subcommand("emit", "Show one stage of compilation");
+  add_model(*emit, raw);
+  add_experiment(*emit, raw);
+  add_overrides(*emit, raw);
+  emit->add_option("--stage", raw.stage, "The stage to show")->required()->check(CLI::IsMember(emit_stages()))->type_name(
+      "STAGE");
+  emit->add_option("--out", raw.out, "Write to this file instead of standard output")->type_name("FILE");
+}
+
+Command build(const CLI::App& app, const Raw& raw) {
+  ModelOptions model = raw.model;
+  model.overrides = split_overrides(raw.overrides);
+  model.json_diagnostics = raw.diagnostics == "json";
+  const CompileOptions compile{!raw.no_cache};
+  if (app.got_subcommand("check")) return CheckCommand{model};
+  if (app.got_subcommand("explain")) return ExplainCommand{model, raw.experiment, compile};
+  if (app.got_subcommand("tidy")) return TidyCommand{model, raw.in_place};
+  if (app.got_subcommand("emit")) return EmitCommand{model, raw.experiment, raw.stage, raw.out};
+  RunCommand run{model, raw.experiment, raw.out, raw.jobs, {}, parse_duration(raw.time_limit), compile, raw.timings};
+  if (raw.sample > 0) run.sample = raw.sample;
+  return run;
+}
+
+}  // namespace
+
+const std::vector<std::string>& emit_stages() {
+  static const std::vector<std::string> kStages = {"syntax", "program", "instance", "plan",   "ir",
+                                                   "llvm",   "asm",     "header",   "object"};
+  return kStages;
+}
+
+Command parse_command_line(int argc, const char* const* argv) {
+  Raw raw;
+  CLI::App app(kAbout, "tarn");
+  app.set_version_flag("--version", std::string("tarn ") + kVersion);
+  app.require_subcommand(1);
+  add_commands(app, raw);
+  try {
+    app.parse(argc, argv);
+  } catch (const CLI::ParseError& error) {
+    std::ostringstream out, complaint;
+    const int status = app.exit(error, out, complaint);
+    return status == 0 ? Exit{0, out.str()} : Exit{2, complaint.str()};
+  }
+  return build(app, raw);
+}
+
+}  // namespace tarn::compiler
