@@ -1,0 +1,50 @@
+#pragma once
+/// \file What a grid point yields: answers with their errors, or why there are none.
+
+#include <cstdint>
+#include <limits>
+#include <optional>
+#include <string>
+#include <vector>
+
+#include "runtime/equation/propagate.h"
+#include "runtime/experiment/pace.h"
+#include "runtime/plan/plan.h"
+
+namespace tarn::runtime {
+
+/// A number in internal units and the estimate of its numerical error (1 sigma, for the whole run).
+struct Answer {
+  double value = std::numeric_limits<double>::quiet_NaN();
+  double error = std::numeric_limits<double>::quiet_NaN();
+};
+
+/// An answer and the moment it belongs to.
+struct Sample {
+  Instant at;
+  Answer answer;
+};
+
+/// How often an observable has a value: once a grid point, at each instant of its trace, or at each
+/// s of the scan.
+enum class Occurrence : std::uint8_t { once, trace, scan };
+Occurrence occurrence_of(const Plan& plan, const Observable& observable);
+
+/// True if the observable reads lowest(), highest() or final() of another.
+bool reads_reduction(const Plan& plan, const Observable& observable);
+
+/// The status of a point that went well, and of one whose error stayed above the tolerance.
+inline constexpr const char* kStatusOk = "ok";
+inline constexpr const char* kStatusLoose = "tolerance not reached";
+
+struct PointOutcome {
+  std::uint64_t index = 0;                   ///< In the grid, first axis slowest.
+  std::string status = kStatusOk;            ///< Or kStatusLoose, or `KIND: message` of a failed point.
+  std::optional<RunError> error;             ///< Set if the point failed; then there are no answers.
+  std::vector<std::vector<Sample>> series;   ///< For each observable of the plan.
+  std::vector<Answer> distribution;          ///< Of every bit string, if asked.
+  std::vector<std::string> remarks;          ///< To be shown with the run, once each.
+  Counters counters;
+};
+
+}  // namespace tarn::runtime
