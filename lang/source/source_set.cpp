@@ -14,11 +14,6 @@ std::uint32_t characters(std::string_view text) {
   return static_cast<std::uint32_t>(std::count_if(text.begin(), text.end(), is_lead));
 }
 
-std::uint32_t line_of(const SourceFile& file, std::uint32_t offset) {
-  const auto after = std::upper_bound(file.line_starts.begin(), file.line_starts.end(), offset);
-  return static_cast<std::uint32_t>(after - file.line_starts.begin());
-}
-
 }  // namespace
 
 SourceFile make_source(FileId id, std::string name, std::string text) {
@@ -69,6 +64,12 @@ std::string_view line_text(const SourceFile& file, std::uint32_t line) {
   std::string_view text = std::string_view(file.text).substr(begin, end - begin);
   if (text.ends_with('\r')) text.remove_suffix(1);
   return text;
+}
+
+std::uint32_t line_of(const SourceFile& file, std::uint32_t offset) {
+  offset = std::max(offset, file.line_starts.front());
+  const auto after = std::upper_bound(file.line_starts.begin(), file.line_starts.end(), offset);
+  return static_cast<std::uint32_t>(after - file.line_starts.begin());
 }
 
 LineColumn position(const SourceFile& file, std::uint32_t offset) {

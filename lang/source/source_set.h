@@ -53,6 +53,10 @@ SourceFile make_source(FileId id, std::string name, std::string text);
 /// Line (without its end) that holds `offset`.
 std::string_view line_text(const SourceFile& file, std::uint32_t line);
 
+/// Line, counted from 1, of the byte at `offset`; in logarithmic time.
+std::uint32_t line_of(const SourceFile& file, std::uint32_t offset);
+
+/// Takes time linear in the length of the line.
 LineColumn position(const SourceFile& file, std::uint32_t offset);
 
 }  // namespace tarn

@@ -154,7 +154,8 @@ struct Arg {
 struct UseItem {  // use spectra; use "five.tarn" as five
   Span span;
   Name name;                ///< The name the module goes by in this file.
-  std::optional<Text> file; ///< Nothing for the library's.
+  std::optional<Text> file;  ///< Nothing for the library's.
+  std::string doc;
 };
 
 struct Parameter {

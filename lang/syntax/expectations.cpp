@@ -1,0 +1,214 @@
+#include "lang/syntax/expectations.h"
+
+#include <algorithm>
+#include <string>
+
+#include "lang/quantities/units.h"
+#include "lang/syntax/characters.h"
+
+namespace tarn {
+namespace {
+
+std::string quote(std::string_view text) { return "`" + std::string(text) + "`"; }
+
+bool is_number(Code code) { return code == Code::number || code == Code::one; }
+
+bool starts_operand(Code code) {
+  return (is_word(code) && !is_reserved(code)) || is_number(code) || code == Code::text || code == Code::ketbra ||
+         code == Code::open_round;
+}
+
+bool is_comparison(Code code) {
+  return code == Code::less_equal || code == Code::greater_equal || code == Code::equal || code == Code::not_equal ||
+         code == Code::less || code == Code::greater;
+}
+
+/// The failure with what stands around it.
+class Stop {
+ public:
+  Stop(const SourceFile& file, const Tokens& tokens, const Failure& failure)
+      : file_(file), tokens_(tokens), failure_(failure), at_(failure.token) {}
+
+  Code here() const { return tokens_.code(at_); }
+  Code before() const { return at_ == 0 ? Code{} : tokens_.code(at_ - 1); }
+  Code after() const { return tokens_.code(at_ + 1); }
+  bool at_end() const { return at_ >= tokens_.size(); }
+
+  bool expects(std::string_view words) const {
+    const auto& list = failure_.expected;
+    return std::find(list.begin(), list.end(), words) != list.end();
+  }
+
+  /// Tokens from `from` to `to`, counted from the failure, both included.
+  Span span(int from, int to) const {
+    const Token first = token(from);
+    return {file_.id, first.begin, token(to).end};
+  }
+  std::string text(int from, int to) const {
+    constexpr std::size_t kLongest = 40;
+    const Span place = span(from, to);
+    std::string result = file_.text.substr(place.begin, place.end - place.begin);
+    return result.size() <= kLongest ? result : cut(result, kLongest) + "...";
+  }
+  std::string text(int i) const { return text(i, i); }
+
+  /// Marks the token, or the end of the last one where the text ends.
+  Span span() const {
+    if (!at_end()) return span(0, 0);
+    const std::uint32_t end = tokens_.size() == 0 ? file_.line_starts.front() : tokens_.places.back().end;
+    return {file_.id, end, end};
+  }
+  std::string found() const { return at_end() ? "the end of the file" : quote(text(0)); }
+
+  bool same_line_as_before() const {
+    if (at_ == 0 || at_end()) return false;
+    return position(file_, token(-1).begin).line == position(file_, token(0).begin).line;
+  }
+
+  /// Round or square bracket still open at the failure within its statement.
+  std::optional<std::uint32_t> open_bracket() const {
+    int depth = 0;
+    for (std::uint32_t i = at_; i > 0; --i) {
+      const Code code = tokens_.code(i - 1);
+      if (code == Code::open_curly || code == Code::close_curly) return std::nullopt;
+      if (code == Code::close_round || code == Code::close_square) ++depth;
+      if (code != Code::open_round && code != Code::open_square) continue;
+      if (depth == 0) return i - 1;
+      --depth;
+    }
+    return std::nullopt;
+  }
+  Span token_span(std::uint32_t i) const { return {file_.id, tokens_.places[i].begin, tokens_.places[i].end}; }
+  Code code(std::uint32_t i) const { return tokens_.code(i); }
+
+  std::string expected() const {
+    std::string joined;
+    const auto& list = failure_.expected;
+    for (std::size_t i = 0; i < list.size(); ++i) {
+      if (i > 0) joined += i + 1 == list.size() ? " or " : ", ";
+      const bool plain = list[i].find_first_of(" `") == std::string_view::npos;
+      joined += plain ? quote(list[i]) : std::string(list[i]);
+    }
+    return joined.empty() ? "something else" : joined;
+  }
+
+ private:
+  Token token(int offset) const { return tokens_.places[static_cast<std::size_t>(static_cast<std::int64_t>(at_) + offset)]; }
+
+  static std::string cut(const std::string& text, std::size_t longest) {
+    std::size_t length = 0;
+    while (length < longest) length += character_length(std::string_view(text).substr(length));
+    return text.substr(0, length);
+  }
+
+  const SourceFile& file_;
+  const Tokens& tokens_;
+  const Failure& failure_;
+  std::uint32_t at_;
+};
+
+bool report_character(const Stop& stop, Diagnostics& diagnostics) {
+  if (stop.here() != Code::unknown) return false;
+  auto tail = diagnostics.report(stop.span(), diag::unexpected_character, stop.text(0));
+  const std::string_view plain = plain_spelling(stop.text(0));
+  if (!plain.empty()) tail.remedy("write " + (plain.find(' ') == std::string_view::npos ? quote(plain) : std::string(plain)));
+  return true;
+}
+
+bool report_number(const Stop& stop, Diagnostics& diagnostics) {
+  if (stop.here() != Code::dot) return false;
+  if (is_number(stop.before())) {
+    diagnostics.report(stop.span(-1, 0), diag::number_format, stop.text(-1, 0)).remedy("write " + quote(stop.text(-1, 0) + "0"));
+    return true;
+  }
+  if (is_number(stop.after())) {
+    diagnostics.report(stop.span(0, 1), diag::number_format, stop.text(0, 1)).remedy("write " + quote("0" + stop.text(0, 1)));
+    return true;
+  }
+  return false;
+}
+
+/// `2 GHz^2`
+bool report_unit_power(const Stop& stop, Diagnostics& diagnostics) {
+  const bool unit = stop.here() == Code::unit_word || stop.here() == Code::percent;
+  if (!unit || !is_number(stop.before()) || stop.after() != Code::caret) return false;
+  const std::string number = stop.text(-1);
+  const std::string word = stop.text(0);
+  std::string remedy = "write `(" + number + " " + word + ")^2`, or `" + number + " [" + word + "^2]`";
+  if (word == "s") remedy += "; if the place along the anneal is meant, `" + number + "*s^2`";
+  diagnostics.report(stop.span(-1, 1), diag::unit_power, number + " " + word).remedy(remedy);
+  return true;
+}
+
+/// A word after a number that is no unit.
+bool report_after_number(const Stop& stop, Diagnostics& diagnostics) {
+  const bool word = is_word(stop.here()) && !is_reserved(stop.here());
+  if (!word || !is_number(stop.before()) || !stop.expects("an operator")) return false;
+  const std::string product = quote(stop.text(-1) + "*" + stop.text(0));
+  const std::string near = near_unit(stop.text(0));
+  if (near.empty()) {
+    diagnostics.report(stop.span(), diag::missing_operator, stop.text(-1), stop.text(0))
+        .remedy("to multiply, write " + product + " (" + quote(stop.text(0)) + " is not a unit)");
+  } else {
+    diagnostics.report(stop.span(), diag::unknown_unit, stop.text(0))
+        .remedy("did you mean " + quote(near) + "? to multiply, write " + product);
+  }
+  return true;
+}
+
+bool report_missing_operator(const Stop& stop, Diagnostics& diagnostics) {
+  if (!stop.expects("an operator") || !ends_operand(stop.before()) || !stop.same_line_as_before()) return false;
+  if (is_comparison(stop.here())) {
+    diagnostics.report(stop.span(), diag::chained_comparison).remedy("join two of them: `a < b and b < c`");
+    return true;
+  }
+  if (stop.here() == Code::assign) {
+    diagnostics.report(stop.span(), diag::unexpected, stop.expected(), stop.found()).remedy("to compare, write `==`");
+    return true;
+  }
+  if (!starts_operand(stop.here())) return false;
+  auto tail = diagnostics.report(stop.span(), diag::missing_operator, stop.text(-1), stop.text(0));
+  if (stop.here() != Code::text && stop.before() != Code::text) {
+    tail.remedy("to multiply, write " + quote(stop.text(-1) + "*" + stop.text(0)));
+  }
+  return true;
+}
+
+bool report_reserved(const Stop& stop, Diagnostics& diagnostics) {
+  if (!is_reserved(stop.here()) || !stop.expects("a name") || !stop.same_line_as_before()) return false;
+  diagnostics.report(stop.span(), diag::reserved_word, stop.text(0)).remedy("choose another name, such as " + quote(stop.text(0) + "_1"));
+  return true;
+}
+
+bool report_open_bracket(const Stop& stop, Diagnostics& diagnostics) {
+  if (!stop.expects(spelling(Code::close_round)) && !stop.expects(spelling(Code::close_square))) return false;
+  if (!stop.at_end() && !is_reserved(stop.here()) && stop.here() != Code::close_curly) return false;
+  const std::optional<std::uint32_t> open = stop.open_bracket();
+  if (!open) return false;
+  diagnostics.report(stop.token_span(*open), diag::unclosed_bracket, spelling(stop.code(*open)))
+      .note(stop.span(), "read up to here");
+  return true;
+}
+
+}  // namespace
+
+void report_failure(const SourceFile& file, const Tokens& tokens, const Failure& failure, Diagnostics& diagnostics) {
+  const Stop stop(file, tokens, failure);
+  const bool told = report_character(stop, diagnostics) || report_number(stop, diagnostics) ||
+                    report_unit_power(stop, diagnostics) || report_after_number(stop, diagnostics) ||
+                    report_open_bracket(stop, diagnostics) || report_missing_operator(stop, diagnostics) ||
+                    report_reserved(stop, diagnostics);
+  if (!told) diagnostics.report(stop.span(), diag::unexpected, stop.expected(), stop.found());
+}
+
+void report_open_block(const SourceFile& file, const Tokens& tokens, const OpenBlock& block, Diagnostics& diagnostics) {
+  const Token open = tokens.places[block.open];
+  auto tail = diagnostics.report({file.id, open.begin, open.end}, diag::unclosed_block);
+  if (block.token < tokens.size()) {
+    const Token next = tokens.places[block.token];
+    tail.note({file.id, next.begin, next.end}, "a new declaration starts here");
+  }
+  tail.remedy("close it with `}`");
+}
+
+}  // namespace tarn
