@@ -62,6 +62,24 @@ double clenshaw(std::span<const double> a, double u) {
   return b1;
 }
 
+/// Q_(n-1) = up[n] u Q_n - down[n] Q_(n+1): the recurrence without its divisions.
+struct Recurrence {
+  static constexpr std::size_t kSize = 256;
+  std::array<double, kSize> up{};
+  std::array<double, kSize> down{};
+};
+
+constexpr Recurrence make_recurrence() {
+  Recurrence r;
+  for (std::size_t n = 1; n < Recurrence::kSize; ++n) {
+    const auto degree = static_cast<double>(n);
+    r.up[n] = (2.0 * degree + 1.0) / degree;
+    r.down[n] = (degree + 1.0) / degree;
+  }
+  return r;
+}
+constexpr Recurrence kRecurrence = make_recurrence();
+
 /// Sum of a_n Q_n(u), given q0 = Q_0(u) = log|(u+1)/(u-1)|/2.
 double sum_second_kind(std::span<const double> a, double u, double q0) {
   const double size = std::abs(u);
@@ -82,13 +100,12 @@ double sum_second_kind(std::span<const double> a, double u, double q0) {
   }
   // Upward recurrence is unstable out here; downward from far enough, scaled by Q_0.
   constexpr double kDigits = 38.0;
-  const auto start = a.size() + static_cast<std::size_t>(kDigits / (2.0 * growth)) + 2;
+  const auto start = std::min(a.size() + static_cast<std::size_t>(kDigits / (2.0 * growth)) + 2, Recurrence::kSize - 1);
   double above = 0.0;
   double q = 1e-280;
   double sum = 0.0;
   for (std::size_t n = start; n-- > 0;) {
-    const auto degree = static_cast<double>(n + 1);
-    const double below = ((2.0 * degree + 1.0) * u * q - (degree + 1.0) * above) / degree;
+    const double below = kRecurrence.up[n + 1] * u * q - kRecurrence.down[n + 1] * above;
     above = q;
     q = below;
     if (n < a.size()) sum += a[n] * q;
@@ -229,6 +246,13 @@ std::complex<double> PanelSeries::fourier(double t) const {
     sum += 2.0 * half * std::complex<double>(std::cos(phase), -std::sin(phase)) * local;
   }
   return sum;
+}
+
+std::vector<double> PanelSeries::edges() const {
+  std::vector<double> all;
+  for (const Panel& panel : panels_) all.push_back(panel.left);
+  if (!panels_.empty()) all.push_back(panels_.back().right);
+  return all;
 }
 
 double PanelSeries::integral() const {

@@ -43,11 +43,14 @@ class PanelSeries {
   double integral() const;
 
   /// Estimate of max |f - series|: the largest of the last three terms on the worst panel.
+  /// For a panel that ends in a singularity of f it may be low by a factor of ten.
   double error() const { return error_; }
   /// Estimate of int |f - series|, which bounds the error of fourier().
   double integral_error() const { return integral_error_; }
   std::size_t evaluations() const { return evaluations_; }
   std::size_t panel_count() const { return panels_.size(); }
+  /// Edges of the panels, ascending: panel_count() + 1 of them.
+  std::vector<double> edges() const;
 
  private:
   struct Panel {

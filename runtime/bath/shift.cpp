@@ -1,6 +1,7 @@
 #include "runtime/bath/shift.h"
 
 #include <algorithm>
+#include <array>
 #include <cmath>
 
 #include "lang/support/check.h"
@@ -40,24 +41,34 @@ Term component_term(const ThermalBath& bath, std::size_t row) {
   return panel_term(bath, row);
 }
 
-void append_kinks(const Component& component, std::vector<double>& kinks) {
-  if (const auto* c = std::get_if<Tabulated>(&component)) kinks.insert(kinks.end(), c->w.begin(), c->w.end());
-  if (const auto* c = std::get_if<Sampled>(&component)) {
-    kinks.insert(kinks.end(), c->breaks.begin(), c->breaks.end());
-    kinks.push_back(c->low);
-    if (std::isfinite(c->high)) kinks.push_back(c->high);
+void append_kinks(const Component& component, std::vector<DensityKink>& kinks) {
+  if (const auto* c = std::get_if<Tabulated>(&component)) {
+    const auto table = std::make_shared<const Tabulated>(*c);
+    for (std::size_t row = 0; row < c->w.size(); ++row)
+      if (c->w[row] > 0.0) kinks.push_back({c->w[row], table, row});
   }
+  if (const auto* c = std::get_if<Sampled>(&component)) {
+    for (const double w : c->breaks) kinks.push_back({w, nullptr, 0});
+    kinks.push_back({c->low, nullptr, 0});
+    if (std::isfinite(c->high)) kinks.push_back({c->high, nullptr, 0});
+  }
+}
+
+/// 1/(1 - exp(-w/theta)), w != 0.
+double occupation_factor(double w, double theta) {
+  if (theta == 0.0) return w > 0.0 ? 1.0 : 0.0;
+  return -1.0 / std::expm1(-w / theta);
 }
 
 }  // namespace
 
-ShiftFunction::ShiftFunction(const ThermalBath& bath) : kinks_{0.0}, lambda_(bath.reorganisation()) {
+ShiftFunction::ShiftFunction(const ThermalBath& bath)
+    : kinks_{{0.0, nullptr, 0}}, theta_(bath.theta()), lambda_(bath.reorganisation()) {
   for (std::size_t row = 0; row < bath.components().size(); ++row) {
     terms_.push_back(component_term(bath, row));
     append_kinks(bath.components()[row], kinks_);
   }
-  std::sort(kinks_.begin(), kinks_.end());
-  kinks_.erase(std::unique(kinks_.begin(), kinks_.end()), kinks_.end());
+  std::stable_sort(kinks_.begin(), kinks_.end(), [](const DensityKink& a, const DensityKink& b) { return a.w < b.w; });
 }
 
 double ShiftFunction::at(double w) const {
@@ -72,29 +83,78 @@ ArrayXd ShiftFunction::operator()(const Eigen::Ref<const ArrayXd>& w) const {
 
 namespace {
 
-PanelSeries tabulate(const ShiftFunction& shift, double w_max, double tolerance) {
+constexpr std::array<double, 3> kCheckPlaces = {0.0005, 0.5, 0.9995};
+
+std::vector<double> table_edges(const ShiftFunction& shift, double w_max) {
   std::vector<double> edges = {-w_max, w_max};
-  for (const double kink : shift.kinks()) {
-    if (kink >= w_max) continue;
-    edges.push_back(kink);
-    if (kink > 0.0) edges.push_back(-kink);
+  for (const DensityKink& kink : shift.kinks()) {
+    if (kink.w >= w_max) continue;
+    edges.push_back(kink.w);
+    edges.push_back(-kink.w);
   }
+  for (double& edge : edges) edge += 0.0;  // no negative zero
   std::sort(edges.begin(), edges.end());
-  const BatchFunction values = [&shift](std::span<const double> w, double* s) {
-    for (std::size_t i = 0; i < w.size(); ++i) s[i] = shift.at(w[i]);
-  };
-  return PanelSeries::expand(values, edges, {0.0, tolerance * shift.scale()});
+  edges.erase(std::unique(edges.begin(), edges.end()), edges.end());
+  return edges;
 }
 
 }  // namespace
 
-ShiftTable::ShiftTable(ShiftFunction shift, double w_max, double tolerance) : shift_(std::move(shift)), w_max_(w_max) {
+ShiftTable::ShiftTable(ShiftFunction shift, double w_max, double tolerance)
+    : shift_(std::move(shift)), w_max_(w_max), edges_(table_edges(shift_, w_max)) {
   TARN_CHECK(w_max > 0.0 && tolerance > 0.0);
-  series_ = tabulate(shift_, w_max, tolerance);
+  // The terms that are left out add up to more than the largest of them where S has a
+  // logarithm at a panel's end; so the table is made finer than asked, then checked.
+  constexpr double kMargin = 0.05;
+  constexpr int kAttempts = 3;
+  const double allowed = tolerance * shift_.scale();
+  double aim = kMargin * allowed;
+  for (int attempt = 0; attempt < kAttempts; ++attempt, aim *= kMargin) {
+    build(aim);
+    if (error_ <= allowed) return;
+  }
+}
+
+double ShiftTable::singular_part(double w) const {
+  const auto upper = std::upper_bound(edges_.begin(), edges_.end(), w);
+  if (upper == edges_.begin() || upper == edges_.end()) return 0.0;
+  double sum = 0.0;
+  for (const double edge : {*(upper - 1), *upper}) {
+    // b(w) has a pole at w = 0: next to it the plain series serves.
+    if (edge == 0.0) return 0.0;
+    const double size = std::abs(edge);
+    auto kink = std::lower_bound(shift_.kinks().begin(), shift_.kinks().end(), size,
+                                 [](const DensityKink& k, double x) { return k.w < x; });
+    double step = 0.0;
+    for (; kink != shift_.kinks().end() && kink->w == size; ++kink)
+      if (kink->table) step += density_step(*kink->table, kink->row, std::abs(w));
+    if (step != 0.0 && w != edge) sum += step * std::log(std::abs(w - edge));
+  }
+  return sum == 0.0 ? 0.0 : sum * occupation_factor(w, shift_.theta());
+}
+
+void ShiftTable::build(double absolute_tolerance) {
+  const BatchFunction values = [this](std::span<const double> w, double* s) {
+    for (std::size_t i = 0; i < w.size(); ++i) s[i] = shift_.at(w[i]) - singular_part(w[i]);
+  };
+  series_ = PanelSeries::expand(values, edges_, {0.0, absolute_tolerance});
+  error_ = largest_error();
+  evaluations_ += series_.evaluations() + kCheckPlaces.size() * series_.panel_count();
+}
+
+double ShiftTable::largest_error() const {
+  const std::vector<double> edges = series_.edges();
+  double error = 0.0;
+  for (std::size_t i = 0; i + 1 < edges.size(); ++i)
+    for (const double place : kCheckPlaces) {
+      const double w = (1.0 - place) * edges[i] + place * edges[i + 1];
+      error = std::max(error, std::abs(series_.value(w) + singular_part(w) - shift_.at(w)));
+    }
+  return error;
 }
 
 ArrayXd ShiftTable::operator()(const Eigen::Ref<const ArrayXd>& w) const {
-  return w.unaryExpr([this](double x) { return std::abs(x) <= w_max_ ? series_.value(x) : shift_.at(x); });
+  return w.unaryExpr([this](double x) { return std::abs(x) <= w_max_ ? series_.value(x) + singular_part(x) : shift_.at(x); });
 }
 
 }  // namespace tarn::runtime

@@ -12,6 +12,14 @@
 
 namespace tarn::runtime {
 
+/// A frequency where J or its slope jumps. S has the term step(|w|) b(w) log|w - v| at v = w
+/// and v = -w of the kink, b(w) = 1/(1 - exp(-w/theta)), step as density_step().
+struct DensityKink {
+  double w;                                ///< [rad/ns], >= 0.
+  std::shared_ptr<const Tabulated> table;  ///< Null where the step is not known.
+  std::size_t row;                         ///< Of the table.
+};
+
 /// S(w) of a bath, one component at a time:
 /// power law: half-range transform of C along arg t = pi/4 (Ohmic at theta = 0: Ei);
 /// Drude, peaks: digamma functions of their poles; tables, functions: Legendre panels of J.
@@ -28,35 +36,48 @@ class ShiftFunction {
 
   /// lambda [rad/ns], the scale of the error.
   double scale() const { return lambda_; }
-  /// |w| at which S is not smooth [rad/ns], ascending, 0 among them.
-  const std::vector<double>& kinks() const { return kinks_; }
+  double theta() const { return theta_; }
+  /// Where S is not smooth, w ascending; 0 is among them.
+  const std::vector<DensityKink>& kinks() const { return kinks_; }
 
  private:
   std::vector<std::function<double(double)>> terms_;
-  std::vector<double> kinks_;
+  std::vector<DensityKink> kinks_;
+  double theta_;
   double lambda_;
 };
 
-/// S on [-w_max, w_max] as piecewise polynomials, for some 1e5 values a step.
+/// S on [-w_max, w_max] as piecewise polynomials, for some 1e5 values a step. Between two
+/// rows of a tabulated J the logarithms of those two rows are kept apart, exactly.
 class ShiftTable {
  public:
   /// w_max > 0 [rad/ns]; tolerance relative to lambda. Costs a few thousand values of S for
-  /// smooth baths, a few hundred more for each kink of a table.
+  /// smooth baths, about 50 more for each row of a table, 1000 for each break of a function.
   ShiftTable(ShiftFunction shift, double w_max, double tolerance = 1e-10);
 
-  /// Some 50 ns a value inside [-w_max, w_max]; outside, S is computed afresh.
+  /// Some 100 ns a value inside [-w_max, w_max]; outside, S is computed afresh.
   /// Shape: (n) in, (n) out, in rad/ns.
   Eigen::ArrayXd operator()(const Eigen::Ref<const Eigen::ArrayXd>& w) const;
 
-  /// Estimate of the largest error on the table [rad/ns]: above tolerance * lambda only next
-  /// to a point where S is infinite.
-  double error() const { return series_.error(); }
-  std::size_t evaluations() const { return series_.evaluations(); }
+  /// The largest error found at three points of each panel, both ends among them, that the
+  /// table was not made from [rad/ns]: above tolerance * lambda only next to a point where S
+  /// is infinite.
+  double error() const { return error_; }
+  /// Values of S that were computed to make the table.
+  std::size_t evaluations() const { return evaluations_; }
 
  private:
+  /// The logarithms kept apart at w.
+  double singular_part(double w) const;
+  void build(double absolute_tolerance);
+  double largest_error() const;
+
   ShiftFunction shift_;
   double w_max_;
-  PanelSeries series_;
+  std::vector<double> edges_;  ///< -w_max, w_max and the kinks between, ascending.
+  PanelSeries series_;         ///< S less its singular part.
+  double error_ = 0.0;
+  std::size_t evaluations_ = 0;
 };
 
 }  // namespace tarn::runtime

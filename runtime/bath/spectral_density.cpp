@@ -26,17 +26,21 @@ constexpr double kNegligible = 1e-18;
 /// The frequency [rad/ns] at which the slope J/w at zero is read off a Sampled J.
 constexpr double kZeroProbe = 1e-15;
 
-double table_value(const Tabulated& table, double w) {
-  if (w < table.w.front() || w > table.w.back()) return 0.0;
-  const auto upper = std::upper_bound(table.w.begin(), table.w.end(), w);
-  const auto row = std::min<std::ptrdiff_t>(upper - table.w.begin(), std::ssize(table.w) - 1) - 1;
-  const auto i = static_cast<std::size_t>(row);
+/// The law of the segment that starts at row i, at any w > 0.
+double segment_value(const Tabulated& table, std::size_t i, double w) {
   if (table.interpolation == Interpolation::log_log) {
     const double x = std::log(w / table.w[i]) / std::log(table.w[i + 1] / table.w[i]);
     return table.j[i] * std::exp(x * std::log(table.j[i + 1] / table.j[i]));
   }
   const double x = (w - table.w[i]) / (table.w[i + 1] - table.w[i]);
   return (1.0 - x) * table.j[i] + x * table.j[i + 1];
+}
+
+double table_value(const Tabulated& table, double w) {
+  if (w < table.w.front() || w > table.w.back()) return 0.0;
+  const auto upper = std::upper_bound(table.w.begin(), table.w.end(), w);
+  const auto row = std::min<std::ptrdiff_t>(upper - table.w.begin(), std::ssize(table.w) - 1) - 1;
+  return segment_value(table, static_cast<std::size_t>(row), w);
 }
 
 double table_slope_at_zero(const Tabulated& table) {
@@ -234,6 +238,12 @@ ArrayXd density_over_w(const Component& component, const ArrayRef& w) {
           },
       },
       component);
+}
+
+double density_step(const Tabulated& table, std::size_t row, double w) {
+  const double right = row + 1 < table.w.size() ? segment_value(table, row, w) : 0.0;
+  const double left = row > 0 ? segment_value(table, row - 1, w) : 0.0;
+  return right - left;
 }
 
 ArrayXd spectral_density(const Component& component, const ArrayRef& w) {

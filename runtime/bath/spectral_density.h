@@ -95,6 +95,10 @@ Eigen::ArrayXd spectral_density(const Component& component, const Eigen::Ref<con
 /// Shape: (n) in, (n) out.
 Eigen::ArrayXd density_over_w(const Component& component, const Eigen::Ref<const Eigen::ArrayXd>& w);
 
+/// J just right of row `row` of a table minus J just left of it, both continued smoothly to
+/// w > 0, in rad/ns: zero at the row itself unless J jumps there.
+double density_step(const Tabulated& table, std::size_t row, double w);
+
 /// Where J lives [rad/ns]: J is negligible (below 1e-18 of its maximum) outside [low, high];
 /// `scale` is where w J is largest, the frequency that sets time scales.
 struct Support {
