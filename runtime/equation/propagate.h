@@ -4,13 +4,14 @@
 
 #include <Eigen/Core>
 #include <cstddef>
-#include <cstdint>
 #include <functional>
 #include <string>
 #include <variant>
 
 #include "lang/support/place.h"
 #include "runtime/equation/timeline.h"
+#include "runtime/integrate/counters.h"
+#include "runtime/integrate/failure.h"
 
 namespace tarn::runtime {
 
@@ -18,12 +19,6 @@ namespace tarn::runtime {
 using Ket = Eigen::VectorXcd;
 using Density = Eigen::MatrixXcd;
 using State = std::variant<Ket, Density>;
-
-/// What a propagation did; summed over points and shown in run.json.
-struct Counters {
-  std::uint64_t steps = 0, rejected = 0, evaluations = 0, exponentials = 0, decompositions = 0;
-  Counters& operator+=(const Counters& other);
-};
 
 /// Why a point could not be computed, in the user's terms.
 struct RunError {
@@ -36,7 +31,7 @@ struct RunError {
 /// valid during the call only.
 using Visit = std::function<void(std::size_t index, const State& state)>;
 
-/// Returns true when the work should stop; asked about every 0.1 s or less.
-using Interrupted = std::function<bool()>;
+/// The error of a run that an integrator gave up.
+RunError run_error(const Failure& failure);
 
 }  // namespace tarn::runtime

@@ -25,6 +25,14 @@ double resolution(double t, double end) {
   return 16 * std::numeric_limits<double>::epsilon() * std::max(std::abs(t), std::abs(end));
 }
 
+/// Error that one step may make.
+double granted(const LaneTask& task, double step) {
+  constexpr double kFullGrants = 128;
+  const double duration =
+      task.duration > 0 ? task.duration : task.boundaries.back() - task.boundaries.front();
+  return task.tolerance * std::min(1.0, kFullGrants * step / duration);
+}
+
 }  // namespace
 
 ExplicitIntegrator::ExplicitIntegrator(std::size_t size, std::size_t lanes)
@@ -197,7 +205,8 @@ void ExplicitIntegrator::judge(std::span<const LaneTask> tasks) {
     Lane& lane = lanes_[l];
     if (!lane.active) continue;
     const double error = lane.trial * blended_error(std::sqrt(e5[l]), std::sqrt(e3[l]));
-    judge_lane(lane, error / tasks[l].tolerance, resolution(lane.t, tasks[l].boundaries.back()));
+    judge_lane(lane, error / granted(tasks[l], lane.trial),
+               resolution(lane.t, tasks[l].boundaries.back()));
   }
 }
 

@@ -5,37 +5,25 @@
 #include <cstring>
 
 #include "lang/support/check.h"
-
-// One build, several instruction sets: the loader picks. Sanitised builds cannot resolve clones.
-#if defined(__x86_64__) && !defined(__SANITIZE_ADDRESS__)
-#define TARN_HOST_CLONES \
-  __attribute__((target_clones("default", "arch=x86-64-v3", "arch=x86-64-v4")))
-#else
-#define TARN_HOST_CLONES
-#endif
+#include "runtime/integrate/packs.h"
 
 namespace tarn::runtime {
 namespace {
 
-constexpr std::size_t kWidth = 8;
-using Pack = double __attribute__((vector_size(kWidth * sizeof(double))));
 using Patterns = std::array<Pack, kMostVectors>;
 
 /// Weights repeated so that they line up with eight consecutive doubles of interleaved lanes.
 void fill_patterns(std::size_t count, std::size_t lanes, const double* weights, Patterns& out) {
   TARN_CHECK(count >= 1 && count <= kMostVectors);
-  TARN_CHECK(lanes >= 1 && kWidth % lanes == 0);
+  TARN_CHECK(lanes >= 1 && kPackWidth % lanes == 0);
   for (std::size_t j = 0; j < count; ++j)
-    for (std::size_t k = 0; k < kWidth; ++k) out[j][k] = weights[j * lanes + k % lanes];
+    for (std::size_t k = 0; k < kPackWidth; ++k) out[j][k] = weights[j * lanes + k % lanes];
 }
-
-const Pack& pack(const double* p) { return *reinterpret_cast<const Pack*>(p); }
-Pack& pack(double* p) { return *reinterpret_cast<Pack*>(p); }
 
 template <std::size_t N>
 [[gnu::always_inline]] inline void combine_fixed(std::size_t length, const double* const* vectors,
                                                  const Pack* weights, double* out) {
-  for (std::size_t i = 0; i < length; i += kWidth) {
+  for (std::size_t i = 0; i < length; i += kPackWidth) {
     Pack sum = weights[0] * pack(vectors[0] + i);
 #pragma GCC unroll 16
     for (std::size_t j = 1; j < N; ++j) sum += weights[j] * pack(vectors[j] + i);
@@ -70,7 +58,7 @@ TARN_HOST_CLONES
 void squares_packs(std::size_t length, std::size_t count, const double* const* vectors,
                    const Pack* first, const Pack* second, Pack* sums) {
   Pack first_sum{}, second_sum{};
-  for (std::size_t i = 0; i < length; i += kWidth) {
+  for (std::size_t i = 0; i < length; i += kPackWidth) {
     Pack x{}, y{};
     for (std::size_t j = 0; j < count; ++j) {
       x += first[j] * pack(vectors[j] + i);
@@ -85,13 +73,13 @@ void squares_packs(std::size_t length, std::size_t count, const double* const* v
 
 void fold(const Pack& sums, std::size_t lanes, double* squares) {
   std::fill_n(squares, lanes, 0.0);
-  for (std::size_t k = 0; k < kWidth; ++k) squares[k % lanes] += sums[k];
+  for (std::size_t k = 0; k < kPackWidth; ++k) squares[k % lanes] += sums[k];
 }
 
 }  // namespace
 
 AlignedArray::AlignedArray(std::size_t count)
-    : size_((std::max<std::size_t>(count, 1) + kWidth - 1) / kWidth * kWidth) {
+    : size_((std::max<std::size_t>(count, 1) + kPackWidth - 1) / kPackWidth * kPackWidth) {
   void* memory = std::aligned_alloc(64, size_ * sizeof(double));
   if (memory == nullptr) throw std::bad_alloc();
   std::memset(memory, 0, size_ * sizeof(double));
@@ -118,9 +106,9 @@ void combined_squares(std::size_t length, std::size_t lanes, std::span<const dou
 }
 
 void squares(std::size_t length, std::size_t lanes, const double* x, double* result) {
-  TARN_CHECK(lanes >= 1 && kWidth % lanes == 0);
+  TARN_CHECK(lanes >= 1 && kPackWidth % lanes == 0);
   Pack sum{};
-  for (std::size_t i = 0; i < length; i += kWidth) sum += pack(x + i) * pack(x + i);
+  for (std::size_t i = 0; i < length; i += kPackWidth) sum += pack(x + i) * pack(x + i);
   fold(sum, lanes, result);
 }
 
