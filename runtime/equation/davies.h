@@ -1,0 +1,109 @@
+#pragma once
+/// \file Davies' equation in instantaneous levels, along a pace.
+///
+/// Ramps are walked on the nodes of a track, which every run of the same chip shares. One step of
+/// length h turns the state by the exact rotation of the levels with its fast phases integrated
+/// (each element of the rotation times sin(x)/x of half the phase it collects: the Filon rule of
+/// order 2), lets it relax at the middle, and turns it on. Steps are not bound to the phases.
+/// A hold is one exponential, block by block. The run is repeated with halved steps and
+/// extrapolated until the answers agree to the tolerance; where steps are bound to miss it, the
+/// same equation is integrated explicitly (davies_explicit.h).
+/// Sources: Commun. Math. Phys. 39, 91 (1974); New J. Phys. 14, 123016 (2012); oscillating
+/// propagators: Numer. Math. 94, 289 (2003).
+
+#include <complex>
+#include <functional>
+#include <memory>
+#include <vector>
+
+#include "lang/support/result.h"
+#include "runtime/equation/davies_table.h"
+#include "runtime/equation/propagate.h"
+#include "runtime/equation/timeline.h"
+#include "runtime/levels/track.h"
+
+namespace tarn::runtime {
+
+/// The generator at the middle of every step of a track, made when first asked for: depends on
+/// track and baths alone. Shared between runs and threads.
+template <class Scalar>
+class DaviesTables {
+ public:
+  /// `baths` has one entry for every coupling.
+  DaviesTables(std::shared_ptr<const Track<Scalar>> track, std::vector<BathFunctions> baths);
+  ~DaviesTables();
+  DaviesTables(const DaviesTables&) = delete;
+  DaviesTables& operator=(const DaviesTables&) = delete;
+
+  const Track<Scalar>& track() const { return *track_; }
+  std::span<const BathFunctions> baths() const { return baths_; }
+  /// One table for each of track().steps(interval, depth).
+  const std::vector<DaviesTable>& steps(std::size_t interval, int depth) const;
+
+ private:
+  struct Cache;
+  std::shared_ptr<const Track<Scalar>> track_;
+  std::vector<BathFunctions> baths_;
+  std::vector<std::unique_ptr<Cache>> cache_;
+};
+
+/// rate (L rho L^dagger - {L^dagger L, rho}/2) as written, beside the baths.
+struct LabJump {
+  Eigen::MatrixXcd op;  ///< N x N, computational basis.
+  double rate = 0;      ///< 1/ns
+};
+
+/// A Hermitian N x N term that depends on the time itself [rad/ns, t in ns]; empty: none. It drives the state
+/// and enters no level and no rate.
+using Drive = std::function<Eigen::MatrixXcd(double t)>;
+
+struct DaviesRun {
+  Timeline timeline;
+  Density initial;            ///< N x N, computational basis, trace 1.
+  std::vector<double> times;  ///< Where the state is wanted, ascending, within the timeline [ns].
+  std::vector<LabJump> jumps;
+  Drive drive;
+};
+
+struct DaviesOptions {
+  double tolerance = 1e-6;  ///< On every population, in the levels and in the computational basis.
+  int first_depth = 0;      ///< Steps of a base interval in the first pass: 2^first_depth.
+  int last_depth = 9;       ///< Refinement stops here.
+  double max_steps = 4e5;   ///< No pass of more steps than this.
+  double max_explicit_phase = 4e5;  ///< No explicit integration over more phase than this [rad].
+  Interrupted interrupted;
+};
+
+struct DaviesAnswer {
+  std::vector<Density> states;  ///< At the times wanted, computational basis, N x N.
+  double error = 0;             ///< Estimate for the populations, the largest over all times.
+  double state_error = 0;       ///< The same for the state: Frobenius norm, coherences included.
+  bool converged = false;       ///< error <= tolerance.
+  bool explicitly = false;      ///< The explicit integrator gave the answer.
+  int depth = 0;                ///< Of the last pass.
+  double leakage = 0;           ///< Population that leaves the levels kept: an upper estimate.
+  Counters counters;
+};
+
+/// One run. Errors: `s_out_of_range` (the pace leaves the track), `interrupted`,
+/// `too_many_levels` (jumps as written or a drive with levels left out).
+/// The state keeps its trace to 1e-12 and is Hermitian; extrapolation leaves it positive to
+/// within the error.
+template <class Scalar>
+Result<DaviesAnswer, RunError> run_davies(const DaviesTables<Scalar>& tables, const DaviesRun& run,
+                                          const DaviesOptions& options);
+
+/// What one pass with fixed steps gave.
+struct DaviesPass {
+  std::vector<Density> states;
+  std::vector<Eigen::VectorXd> manifolds;  ///< Populations of the manifolds, energy ascending.
+  double leakage = 0;
+  Counters counters;
+};
+
+/// One pass at a depth, without extrapolation: completely positive.
+template <class Scalar>
+Result<DaviesPass, RunError> davies_pass(const DaviesTables<Scalar>& tables, const DaviesRun& run,
+                                         int depth, const DaviesOptions& options);
+
+}  // namespace tarn::runtime
