@@ -10,9 +10,8 @@ namespace {
 
 constexpr std::string_view kIndent = "    ";
 constexpr std::string_view kReplacement = "\xEF\xBF\xBD";
-constexpr std::string_view kEllipsis = "...";
-constexpr std::size_t kShownBefore = 70;  ///< Columns kept on either side of a mark.
-constexpr std::size_t kShownAfter = 50;
+constexpr std::size_t kShownBefore = 70;  ///< Bytes shown on either side of a mark's start.
+constexpr std::size_t kShownAfter = 60;
 
 /// One character of the excerpt: what is printed and how wide it is.
 struct Cell {
@@ -30,14 +29,27 @@ Cell next_cell(std::string_view rest, unsigned tab_width, std::size_t& length) {
   return {std::string(rest.substr(0, length)), terminal_width(c.code_point), false};
 }
 
-/// The first line of the span, cut into cells; an empty span marks the cell at its place.
+Cell ellipsis() { return {"...", 3, false}; }
+
+/// Where the character begins that holds the byte at `offset`.
+std::size_t character_start(std::string_view text, std::size_t offset) {
+  while (offset > 0 && offset < text.size() && (static_cast<unsigned char>(text[offset]) & 0xC0U) == 0x80U) --offset;
+  return offset;
+}
+
+/// The first line of the span, cut into cells; of a long line the part around the
+/// start of the mark. An empty span marks the cell at its place.
 std::vector<Cell> cells_of(const SourceFile& file, Span span, unsigned tab_width) {
   const std::uint32_t line = line_of(file, span.begin);
   const std::string_view text = line_text(file, line);
-  const std::uint32_t begin = file.line_starts[line - 1];
+  const std::size_t begin = file.line_starts[line - 1];
+  const std::size_t mark = std::max<std::size_t>(span.begin, begin) - begin;
+  const std::size_t first = mark > kShownBefore ? character_start(text, mark - kShownBefore) : 0;
+  const std::size_t last = std::min(text.size(), mark + kShownAfter);
   std::vector<Cell> cells;
+  if (first > 0) cells.push_back(ellipsis());
   bool any = false;
-  for (std::size_t at = 0; at < text.size();) {
+  for (std::size_t at = first; at < last;) {
     std::size_t length = 0;
     Cell cell = next_cell(text.substr(at), tab_width, length);
     const std::size_t offset = begin + at;
@@ -46,23 +58,9 @@ std::vector<Cell> cells_of(const SourceFile& file, Span span, unsigned tab_width
     cells.push_back(std::move(cell));
     at += length;
   }
+  if (last < text.size()) cells.push_back(ellipsis());
   if (!any) cells.push_back({" ", 1, true});
   return cells;
-}
-
-/// Keeps what surrounds the first marked cell.
-void shorten(std::vector<Cell>& cells) {
-  const auto mark = std::find_if(cells.begin(), cells.end(), [](const Cell& c) { return c.marked; });
-  const auto at = static_cast<std::size_t>(mark - cells.begin());
-  const auto ellipsis = [] { return Cell{std::string(kEllipsis), 3, false}; };
-  if (cells.size() > at + kShownAfter) {
-    cells.resize(at + kShownAfter);
-    cells.push_back(ellipsis());
-  }
-  if (at > kShownBefore) {
-    cells.erase(cells.begin(), cells.begin() + static_cast<std::ptrdiff_t>(at - kShownBefore));
-    cells.insert(cells.begin(), ellipsis());
-  }
 }
 
 struct Paint {
@@ -83,8 +81,7 @@ std::string_view colour_of(Severity severity) {
 }
 
 std::string excerpt(const SourceFile& file, Span span, const RenderStyle& style, std::string_view colour) {
-  std::vector<Cell> cells = cells_of(file, span, style.tab_width);
-  shorten(cells);
+  const std::vector<Cell> cells = cells_of(file, span, style.tab_width);
   std::string line;
   std::string marks;
   std::string gap;
@@ -165,7 +162,8 @@ std::string render_json(const Diagnostic& diagnostic, const SourceSet& sources) 
                               {"remedy", diagnostic.remedy}};
   json.update(place_json(sources, diagnostic.span));
   const SourceFile& file = sources.file(diagnostic.span.file);
-  json["excerpt"] = line_text(file, line_of(file, diagnostic.span.begin));
+  constexpr std::size_t kLongestExcerpt = 1000;
+  json["excerpt"] = line_text(file, line_of(file, diagnostic.span.begin)).substr(0, kLongestExcerpt);
   json["notes"] = nlohmann::ordered_json::array();
   for (const SecondarySpan& other : diagnostic.notes) {
     nlohmann::ordered_json note{{"message", other.note}};

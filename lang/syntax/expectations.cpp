@@ -4,6 +4,7 @@
 #include <string>
 
 #include "lang/quantities/units.h"
+#include "lang/support/near.h"
 #include "lang/syntax/characters.h"
 
 namespace tarn {
@@ -81,11 +82,20 @@ class Stop {
   Span token_span(std::uint32_t i) const { return {file_.id, tokens_.places[i].begin, tokens_.places[i].end}; }
   Code code(std::uint32_t i) const { return tokens_.code(i); }
 
+  /// The expected words of the language, without the descriptions.
+  std::vector<std::string_view> expected_words() const {
+    std::vector<std::string_view> words;
+    for (const std::string_view e : failure_.expected) {
+      if (e.find_first_of(" `") == std::string_view::npos && e.size() > 1) words.push_back(e);
+    }
+    return words;
+  }
+
   std::string expected() const {
     std::string joined;
     const auto& list = failure_.expected;
     for (std::size_t i = 0; i < list.size(); ++i) {
-      if (i > 0) joined += i + 1 == list.size() ? " or " : ", ";
+      if (i > 0) joined += i + 1 == list.size() ? (list.size() > 2 ? ", or " : " or ") : ", ";
       const bool plain = list[i].find_first_of(" `") == std::string_view::npos;
       joined += plain ? quote(list[i]) : std::string(list[i]);
     }
@@ -140,6 +150,17 @@ bool report_unit_power(const Stop& stop, Diagnostics& diagnostics) {
   return true;
 }
 
+/// A slip in a word of the language: `ovr`.
+bool report_slip(const Stop& stop, Diagnostics& diagnostics) {
+  if (!is_word(stop.here()) || is_reserved(stop.here())) return false;
+  const std::string word = stop.text(0);
+  const std::string_view meant = near_word(word, stop.expected_words());
+  if (meant.empty() || word.size() < 3) return false;
+  diagnostics.report(stop.span(), diag::unexpected, stop.expected(), stop.found())
+      .remedy("did you mean " + quote(meant) + "?");
+  return true;
+}
+
 /// A word after a number that is no unit.
 bool report_after_number(const Stop& stop, Diagnostics& diagnostics) {
   const bool word = is_word(stop.here()) && !is_reserved(stop.here());
@@ -168,8 +189,9 @@ bool report_missing_operator(const Stop& stop, Diagnostics& diagnostics) {
   }
   if (!starts_operand(stop.here())) return false;
   auto tail = diagnostics.report(stop.span(), diag::missing_operator, stop.text(-1), stop.text(0));
+  const bool closing = stop.before() == Code::close_round || stop.before() == Code::close_square;
   if (stop.here() != Code::text && stop.before() != Code::text) {
-    tail.remedy("to multiply, write " + quote(stop.text(-1) + "*" + stop.text(0)));
+    tail.remedy("to multiply, write " + (closing ? "`*` between them" : quote(stop.text(-1) + "*" + stop.text(0))));
   }
   return true;
 }
@@ -195,7 +217,8 @@ bool report_open_bracket(const Stop& stop, Diagnostics& diagnostics) {
 void report_failure(const SourceFile& file, const Tokens& tokens, const Failure& failure, Diagnostics& diagnostics) {
   const Stop stop(file, tokens, failure);
   const bool told = report_character(stop, diagnostics) || report_number(stop, diagnostics) ||
-                    report_unit_power(stop, diagnostics) || report_after_number(stop, diagnostics) ||
+                    report_unit_power(stop, diagnostics) || report_slip(stop, diagnostics) ||
+                    report_after_number(stop, diagnostics) ||
                     report_open_bracket(stop, diagnostics) || report_missing_operator(stop, diagnostics) ||
                     report_reserved(stop, diagnostics);
   if (!told) diagnostics.report(stop.span(), diag::unexpected, stop.expected(), stop.found());

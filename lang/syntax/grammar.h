@@ -54,7 +54,10 @@ struct path : peg::seq<step, peg::star<more<Code::dot>, step>, peg::opt<call>> {
 
 struct number_token : any_of<Code::number, Code::one> {};
 struct unit_word : peg::sor<name, any_of<Code::percent>> {};
-struct factor : peg::seq<unit_word, peg::opt<more<Code::caret>, number_token>> {
+struct exponent : number_token {
+  static constexpr std::string_view expected = "an exponent such as `2` or `0.5`";
+};
+struct factor : peg::seq<unit_word, peg::opt<more<Code::caret>, exponent>> {
   static constexpr std::string_view expected = "a unit";
 };
 struct bracket : peg::seq<token<Code::open_square>, peg::sor<any_of<Code::one>, factor>,
@@ -413,7 +416,7 @@ struct tolerance : peg::seq<any_of<Code::tolerance>, expr> {
 };
 struct statement : peg::sor<let, chip_use, begin, pace, equation, levels, draws, observe, scan, sweep, data, compare,
                             fit, expect, tolerance> {
-  static constexpr std::string_view expected = "a statement of the experiment or `}`";
+  static constexpr std::string_view expected = "a statement of the experiment";
 };
 struct experiment : peg::seq<token<Code::experiment>, name, block<statement>> {
   static constexpr Tag tag = Tag::experiment;
