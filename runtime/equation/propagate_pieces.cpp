@@ -11,7 +11,7 @@ double Piece::s_at(double t) const {
   const auto at = [&](double time) { return segment.s0 + slope * (time - segment.t0); };
   const double margin = std::min(std::abs(segment.s1 - segment.s0) * 0x1p-42,
                                  std::abs(slope) * (t1 - t0) / 4);
-  const auto [low, high] = std::minmax(at(t0), at(t1));
+  const double low = std::min(at(t0), at(t1)), high = std::max(at(t0), at(t1));
   return high - low > 2 * margin ? std::clamp(at(t), low + margin, high - margin) : low;
 }
 

@@ -25,12 +25,14 @@ double resolution(double t, double end) {
   return 16 * std::numeric_limits<double>::epsilon() * std::max(std::abs(t), std::abs(end));
 }
 
-/// Error that one step may make.
-double granted(const LaneTask& task, double step) {
-  constexpr double kFullGrants = 128;
+/// Error that one step may make. A floor lets steps pass over a jump of f, where the error falls no
+/// faster than the step; a step of the `shortest` length may use all.
+double granted(const LaneTask& task, double step, double shortest) {
+  constexpr double kFullGrants = 128, kLeastGrant = 1.0 / 256;
+  if (step <= shortest) return task.tolerance;
   const double duration =
       task.duration > 0 ? task.duration : task.boundaries.back() - task.boundaries.front();
-  return task.tolerance * std::min(1.0, kFullGrants * step / duration);
+  return task.tolerance * std::clamp(kFullGrants * step / duration, kLeastGrant, 1.0);
 }
 
 }  // namespace
@@ -205,8 +207,8 @@ void ExplicitIntegrator::judge(std::span<const LaneTask> tasks) {
     Lane& lane = lanes_[l];
     if (!lane.active) continue;
     const double error = lane.trial * blended_error(std::sqrt(e5[l]), std::sqrt(e3[l]));
-    judge_lane(lane, error / granted(tasks[l], lane.trial),
-               resolution(lane.t, tasks[l].boundaries.back()));
+    const double shortest = resolution(lane.t, tasks[l].boundaries.back());
+    judge_lane(lane, error / granted(tasks[l], lane.trial, shortest), shortest);
   }
 }
 
@@ -226,7 +228,7 @@ void ExplicitIntegrator::judge_lane(Lane& lane, double ratio, double shortest) {
   lane.just_rejected = true;
   if (lane.trial <= shortest)
     return fail(lane, std::isfinite(ratio) ? FailureKind::step_underflow : FailureKind::not_finite);
-  lane.step = lane.trial * shrink_after_failure(ratio);
+  lane.step = std::max(lane.trial * shrink_after_failure(ratio), shortest);
 }
 
 /// Reports the requested times that lie inside the accepted steps, one for each lane in a round.
