@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <cmath>
 #include <complex>
+#include <iterator>
 #include <optional>
 
 #include "lang/support/check.h"
@@ -14,6 +15,7 @@ using Complex = std::complex<double>;
 
 constexpr double kExactGap = 1e-10;     ///< Of the width: a smaller gap counts as a true crossing.
 constexpr double kShortest = 1e-12;     ///< Of the range of s.
+constexpr std::size_t kMaxWindows = 8;
 constexpr double kShortWindow = 1e-6;   ///< Of the range: a shorter coincidence is passed over.
 
 std::vector<double> initial_nodes(const std::vector<double>& breaks, const TrackOptions& options) {
@@ -124,14 +126,26 @@ class Builder {
     coarse.swap(grid_.nodes);
     for (std::size_t k = 0; k < coarse.size(); ++k) {
       if (k > 0) {
-        auto from_left = window(coarse[k - 1], coarse[k]);
-        auto from_right = window(coarse[k], coarse[k - 1]);
-        if (from_left && from_right && from_left->s > from_right->s) from_right.reset();
-        if (from_left) grid_.nodes.push_back(std::move(*from_left));
-        if (from_right) grid_.nodes.push_back(std::move(*from_right));
+        auto from_left = windows(coarse[k - 1], coarse[k]);
+        auto from_right = windows(coarse[k], coarse[k - 1]);
+        const double reached = from_left.empty() ? coarse[k - 1].s : from_left.back().s;
+        std::erase_if(from_right, [&](const auto& frame) { return frame.s <= reached; });
+        std::move(from_left.begin(), from_left.end(), std::back_inserter(grid_.nodes));
+        std::move(from_right.rbegin(), from_right.rend(), std::back_inserter(grid_.nodes));
       }
       grid_.nodes.push_back(coarse[k]);
     }
+  }
+
+  /// The ends of nested windows (below) from `node` on, at most kMaxWindows of them.
+  std::vector<Frame<Scalar>> windows(const Frame<Scalar>& node, const Frame<Scalar>& other) const {
+    std::vector<Frame<Scalar>> ends;
+    while (ends.size() < kMaxWindows) {
+      auto end = window(ends.empty() ? node : ends.back(), other);
+      if (!end) break;
+      ends.push_back(std::move(*end));
+    }
+    return ends;
   }
 
   std::size_t shared(const Frame<Scalar>& node, const Frame<Scalar>& other) const {
