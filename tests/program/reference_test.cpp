@@ -155,7 +155,7 @@ TEST_CASE("what the reference lists as not available is refused") {
   add("equation each of (schroedinger, davies)",
       [](Parts& p) { p.equation = "equation each of (schroedinger, davies)"; });
   add("under davies", [](Parts& p) { p.more = "expect x under davies > 0"; });
-  for (const char* statement : {"observe T1", "observe T2", "expect verdict <= marginal", "trajectories 200 seed 1",
+  for (const char* statement : {"observe T1", "observe T2", "expect verdict <= marginal", "levels auto", "trajectories 200 seed 1",
                                 "freeze 100 seed 1", "ensemble 100 seed 1"}) {
     add(statement, [&](Parts& p) { p.more = statement; });
   }
