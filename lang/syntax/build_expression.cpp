@@ -143,21 +143,31 @@ std::optional<ast::UnitText> Builder::unit(NodeId id) {
     TARN_CHECK(known.has_value());
     return ast::UnitText{place, std::string(word), false, *known};
   }
-  const Span content{place.file, place.begin + 1, place.end - 1};
-  const auto parsed = parse_unit(text(content));
+  // Token by token, so that spaces and comments between them do not matter.
+  std::string product;
+  for (std::uint32_t t = node(id).begin + 1; t + 1 < node(id).end; ++t) product += text(token_span(t));
+  const auto parsed = parse_unit(product);
   if (!parsed) {
-    report_unit(content, parsed.error());
+    report_unit(id, parsed.error());
     return std::nullopt;
   }
-  return ast::UnitText{place, std::string(text(content)), true, *parsed};
+  return ast::UnitText{place, product, true, *parsed};
 }
 
-void Builder::report_unit(Span content, const UnitError& error) {
-  Span place = content;
-  if (error.end > error.begin) {
-    place.begin = content.begin + static_cast<std::uint32_t>(error.begin);
-    place.end = content.begin + static_cast<std::uint32_t>(error.end);
+/// The tokens of the bracket that hold the bytes `begin` .. `end` of its joined text.
+Span Builder::part_of_unit(NodeId bracket, std::size_t begin, std::size_t end) const {
+  std::optional<Span> part;
+  std::size_t at = 0;
+  for (std::uint32_t t = node(bracket).begin + 1; t + 1 < node(bracket).end; ++t) {
+    const Span token = token_span(t);
+    if (at < end && at + (token.end - token.begin) > begin) part = part ? cover(*part, token) : token;
+    at += token.end - token.begin;
   }
+  return part ? *part : span(bracket);
+}
+
+void Builder::report_unit(NodeId bracket, const UnitError& error) {
+  const Span place = part_of_unit(bracket, error.begin, error.end);
   switch (error.reason) {
     case UnitError::Reason::bad_exponent:
       diagnostics_.report(place, diag::unit_exponent, error.found).remedy("an exponent is a number such as `2` or `0.5`");

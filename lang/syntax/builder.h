@@ -63,7 +63,8 @@ class Builder {
   ast::ExprId choice(NodeId id);
   ast::ExprId parenthesised(NodeId id);
   void warn_divided_unit(ast::ExprId left, ast::ExprId right);
-  void report_unit(Span content, const UnitError& error);
+  void report_unit(NodeId bracket, const UnitError& error);
+  Span part_of_unit(NodeId bracket, std::size_t begin, std::size_t end) const;
   unsigned height_of(const ast::Path& path) const;
   ast::Given given(NodeId id);
 

@@ -64,16 +64,18 @@ std::vector<Target>::const_iterator begins_from(const std::vector<Target>& targe
                           [](const Target& target, std::uint32_t from) { return target.span.begin < from; });
 }
 
-/// On the comment's line the declaration that ends last before it, else the last begun.
+/// On the comment's line the declaration that ends last before it, unless one begun
+/// later on the line is still open; else the last begun.
 const Target* on_line(const std::vector<Target>& targets, std::uint32_t line_start, Span comment) {
   const Target* ended = nullptr;
-  const Target* begun = nullptr;
+  const Target* open = nullptr;
   for (auto target = begins_from(targets, line_start); target != targets.end(); ++target) {
     if (target->span.begin >= comment.begin) break;
+    if (target->span.end > comment.begin) open = &*target;
     if (target->span.end <= comment.begin && (ended == nullptr || target->span.end > ended->span.end)) ended = &*target;
-    begun = &*target;
   }
-  return ended != nullptr ? ended : begun;
+  if (ended == nullptr) return open;
+  return open != nullptr && open->span.begin > ended->span.begin ? open : ended;
 }
 
 const Target* next_after(const std::vector<Target>& targets, Span comment) {
@@ -87,24 +89,49 @@ std::string_view words_of(std::string_view comment) {
   return comment.substr(0, comment.find_last_not_of(" \t") + 1);
 }
 
-}  // namespace
-
-void attach_docs(Ast& ast, const SourceFile& file) {
-  const bool any = std::any_of(ast.comments.begin(), ast.comments.end(), [](const auto& c) { return c.doc; });
-  if (!any) return;
+std::vector<Target> sorted_targets(Ast& ast, const SourceFile& file) {
   Targets targets(file);
   for (ast::Item& item : ast.items) std::visit(targets, item);
   std::sort(targets.list.begin(), targets.list.end(), [](const Target& a, const Target& b) {
     return a.span.begin != b.span.begin ? a.span.begin < b.span.begin : a.span.end > b.span.end;
   });
+  return std::move(targets.list);
+}
+
+/// As many as there are comments; null for those that document nothing.
+std::vector<const Target*> targets_of_comments(const Ast& ast, const std::vector<Target>& targets,
+                                               const SourceFile& file) {
+  std::vector<const Target*> result;
   for (const ast::Comment& comment : ast.comments) {
-    if (!comment.doc) continue;
-    const Target* target = on_line(targets.list, file.line_starts[line_of(file, comment.span.begin) - 1], comment.span);
-    if (target == nullptr) target = next_after(targets.list, comment.span);
-    if (target == nullptr) continue;
-    const std::string_view text = std::string_view(file.text).substr(comment.span.begin, comment.span.end - comment.span.begin);
-    if (!target->doc->empty()) *target->doc += '\n';
-    *target->doc += words_of(text);
+    const Target* target = nullptr;
+    if (comment.doc) target = on_line(targets, file.line_starts[line_of(file, comment.span.begin) - 1], comment.span);
+    if (comment.doc && target == nullptr) target = next_after(targets, comment.span);
+    result.push_back(target);
+  }
+  return result;
+}
+
+}  // namespace
+
+std::vector<std::optional<Span>> documented(Ast& ast, const SourceFile& file) {
+  std::vector<std::optional<Span>> result;
+  const std::vector<Target> targets = sorted_targets(ast, file);
+  for (const Target* target : targets_of_comments(ast, targets, file)) {
+    result.push_back(target == nullptr ? std::nullopt : std::optional(target->span));
+  }
+  return result;
+}
+
+void attach_docs(Ast& ast, const SourceFile& file) {
+  const bool any = std::any_of(ast.comments.begin(), ast.comments.end(), [](const auto& c) { return c.doc; });
+  if (!any) return;
+  const std::vector<Target> targets = sorted_targets(ast, file);
+  const std::vector<const Target*> owners = targets_of_comments(ast, targets, file);
+  for (std::size_t i = 0; i < owners.size(); ++i) {
+    if (owners[i] == nullptr) continue;
+    const Span comment = ast.comments[i].span;
+    if (!owners[i]->doc->empty()) *owners[i]->doc += '\n';
+    *owners[i]->doc += words_of(std::string_view(file.text).substr(comment.begin, comment.end - comment.begin));
   }
 }
 
