@@ -338,8 +338,8 @@ void Builder::warn_divided_unit(ast::ExprId left, ast::ExprId right) {
   const std::string d = std::string(text(below.span));
   const Span place = cover(above.span, below.span);
   diagnostics_.report(place, diag::divided_unit, text(place), n + "/(" + d + ")")
-      .remedy("write `" + n + "/(" + d + ")`, or `(" + n + "/" + denominator->text + ")*1" +
-              (denominator->unit->bracket ? "" : " ") + std::string(text(denominator->unit->span)) + "` for the other");
+      .remedy("write `" + n + "/(" + d + ")`, or `(" + n + "/" + denominator->text + ")*1 " +
+              std::string(text(denominator->unit->span)) + "` for the other");
 }
 
 ast::Range Builder::range(NodeId id) {

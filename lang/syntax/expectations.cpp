@@ -1,6 +1,7 @@
 #include "lang/syntax/expectations.h"
 
 #include <algorithm>
+#include <array>
 #include <string>
 
 #include "lang/quantities/units.h"
@@ -32,7 +33,9 @@ class Stop {
 
   Code here() const { return tokens_.code(at_); }
   Code before() const { return at_ == 0 ? Code{} : tokens_.code(at_ - 1); }
-  Code after() const { return tokens_.code(at_ + 1); }
+  Code after() const { return code_at(1); }
+  /// Counted from the failure.
+  Code code_at(std::uint32_t offset) const { return tokens_.code(at_ + offset); }
   bool at_end() const { return at_ >= tokens_.size(); }
 
   bool expects(std::string_view words) const {
@@ -144,8 +147,9 @@ bool report_unit_power(const Stop& stop, Diagnostics& diagnostics) {
   if (!unit || !is_number(stop.before()) || stop.after() != Code::caret) return false;
   const std::string number = stop.text(-1);
   const std::string word = stop.text(0);
-  std::string remedy = "write `(" + number + " " + word + ")^2`, or `" + number + " [" + word + "^2]`";
-  if (word == "s") remedy += "; if the place along the anneal is meant, `" + number + "*s^2`";
+  const std::string power = "^" + (is_number(stop.code_at(2)) ? stop.text(2) : "2");
+  std::string remedy = "write `(" + number + " " + word + ")" + power + "`, or `" + number + " [" + word + power + "]`";
+  if (word == "s") remedy += "; if the place along the anneal is meant, `" + number + "*s" + power + "`";
   diagnostics.report(stop.span(-1, 1), diag::unit_power, number + " " + word).remedy(remedy);
   return true;
 }
@@ -196,8 +200,16 @@ bool report_missing_operator(const Stop& stop, Diagnostics& diagnostics) {
   return true;
 }
 
+/// Words that join parts of a statement: where one stands, a name is rather missing.
+bool joins(Code code) {
+  constexpr auto kJoining = std::to_array<Code>({Code::along, Code::and_, Code::at, Code::each, Code::else_, Code::for_,
+                                                 Code::if_, Code::in, Code::not_, Code::or_, Code::over, Code::then,
+                                                 Code::under, Code::when, Code::where});
+  return std::find(kJoining.begin(), kJoining.end(), code) != kJoining.end();
+}
+
 bool report_reserved(const Stop& stop, Diagnostics& diagnostics) {
-  if (!is_reserved(stop.here()) || !stop.expects("a name") || !stop.same_line_as_before()) return false;
+  if (!is_reserved(stop.here()) || joins(stop.here()) || !stop.expects("a name") || !stop.same_line_as_before()) return false;
   diagnostics.report(stop.span(), diag::reserved_word, stop.text(0)).remedy("choose another name, such as " + quote(stop.text(0) + "_1"));
   return true;
 }
