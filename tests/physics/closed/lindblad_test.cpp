@@ -93,7 +93,7 @@ TEST_CASE("a register of noisy qubits stays a product") {
   const Rates rates{5e-3, 1e-3, 4e-3};
   const Dense one = noisy(1, 1.7, 2.5, 2.5, rates).generator(0, 0.3, 0);
   for (const std::size_t n : {1u, 2u, 3u, 4u}) {
-    const double duration = n == 4 ? 30 : 800;
+    const double duration = n == 4 ? 30 : 4000;
     const runtime::Timeline hold{{{0, duration, 0.3, 0.3}}, 0.3, 0.3};
     const Trace trace = run_lindblad(noisy(n, 1.7, 2.5, 2.5, rates), hold, power(tilted(), n), 1e-9,
                                      {duration / 3, duration});
