@@ -3,7 +3,8 @@
 #include <algorithm>
 #include <array>
 #include <cmath>
-#include <unsupported/Eigen/MatrixFunctions>
+
+#include "runtime/integrate/dense_exponential.h"
 
 namespace tarn::runtime {
 namespace {
@@ -141,7 +142,7 @@ template <class Scalar>
 void exponentials(Generator<Scalar>& generator, double t, std::span<const double> times, Density& state, const StateAt& visit, Counters& counters) {
   const Eigen::MatrixXcd map = whole_map<Scalar>(generator, t, state.rows());
   for (const double time : times) {
-    const Eigen::VectorXcd image = (map * (time - t)).exp() * state.reshaped();
+    const Eigen::VectorXcd image = dense_exponential(map, time - t) * state.reshaped();
     state = image.reshaped(state.rows(), state.cols());
     t = time;
     ++counters.exponentials;

@@ -3,18 +3,15 @@
 #include <cmath>
 #include <complex>
 #include <numeric>
-#include <unsupported/Eigen/MatrixFunctions>
+
+#include "runtime/integrate/dense_exponential.h"
+#include "runtime/levels/product.h"
+#include "runtime/levels/rotation.h"
 
 namespace tarn::runtime {
 namespace {
 
 using Complex = std::complex<double>;
-
-template <class Scalar>
-void turn(const Matrix<Scalar>& left, Eigen::MatrixXcd& rho) {
-  const Eigen::MatrixXcd half = left * rho;
-  rho.noalias() = half * left.adjoint();
-}
 
 /// Elements times sin(x)/x, x = half the phase the pair collects; phases in half[a] = phi_a/2.
 template <class Scalar>
@@ -35,9 +32,9 @@ template <class Scalar>
 void cross(const Link<Scalar>& link, const Eigen::VectorXd& shift, double h, bool backward, Eigen::MatrixXcd& rho) {
   const Matrix<Scalar>& before = backward ? link.right_basis : link.left_basis;
   const Matrix<Scalar>& after = backward ? link.left_basis : link.right_basis;
-  if (before.size() != 0) turn<Scalar>(before.adjoint(), rho);
+  if (before.size() != 0) turn<Scalar>(Matrix<Scalar>(before.adjoint()), rho);
   const Eigen::VectorXd half = 0.5 * h * (link.mean_energies + shift);
-  Matrix<Scalar> r = exp_rotation<Scalar>(filon<Scalar>(link.rotation, half));
+  Matrix<Scalar> r = rotation_exponential<Scalar>(filon<Scalar>(link.rotation, half));
   if (backward) r.adjointInPlace();
   Eigen::VectorXcd phase(half.size());
   for (Eigen::Index a = 0; a < half.size(); ++a) phase[a] = std::polar(1.0, -half[a]);
@@ -45,18 +42,6 @@ void cross(const Link<Scalar>& link, const Eigen::VectorXd& shift, double h, boo
   turn<Scalar>(r, rho);
   rho = phase.asDiagonal() * rho * phase.conjugate().asDiagonal();
   if (after.size() != 0) turn<Scalar>(after, rho);
-}
-
-template <class Scalar>
-Matrix<Scalar> exp_series(const Matrix<Scalar>& w, double norm) {
-  const Matrix<Scalar> one = Matrix<Scalar>::Identity(w.rows(), w.cols());
-  const Matrix<Scalar> w2 = w * w;
-  if (norm < 1e-5) return one + w + 0.5 * w2;
-  if (norm < 1.5e-3) return one + w + w2 * (0.5 * one + w / 6.0 + w2 / 24.0);
-  const Matrix<Scalar> w3 = w2 * w;
-  if (norm < 0.015) return one + w + 0.5 * w2 + w3 * (one / 6.0 + w / 24.0 + w2 / 120.0 + w3 / 720.0);
-  const Matrix<Scalar> w4 = w2 * w2;
-  return one + w + 0.5 * w2 + w3 / 6.0 + w4 * (one / 24.0 + w / 120.0 + w2 / 720.0 + w3 / 5040.0 + w4 / 40320.0);
 }
 
 std::vector<std::vector<std::uint32_t>> connected(const DaviesTable& table) {
@@ -77,16 +62,6 @@ std::vector<std::vector<std::uint32_t>> connected(const DaviesTable& table) {
 }
 
 }  // namespace
-
-template <class Scalar>
-Matrix<Scalar> exp_rotation(const Matrix<Scalar>& w) {
-  const double norm = w.cwiseAbs().colwise().sum().maxCoeff();
-  if (norm < 0.06) return exp_series<Scalar>(w, norm);
-  const int halvings = static_cast<int>(std::ceil(std::log2(norm / 0.06)));
-  Matrix<Scalar> r = exp_series<Scalar>(w / std::ldexp(1.0, halvings), 0.06);
-  for (int k = 0; k < halvings; ++k) r = Matrix<Scalar>(r * r);
-  return r;
-}
 
 template <class Scalar>
 void advance(const StepFrames<Scalar>& step, const DaviesTable& table, double h, bool backward, Eigen::MatrixXcd& rho) {
@@ -127,7 +102,7 @@ HoldMap::HoldMap(const Eigen::VectorXd& energies, const DaviesTable& table)
 
 void HoldMap::prepare(double t) {
   if (std::abs(t - prepared_) <= 1e-13 * std::abs(t)) return;
-  for (Block& block : blocks_) block.map = (block.generator * t).exp();
+  for (Block& block : blocks_) block.map = dense_exponential(block.generator, t);
   exponentials_ += blocks_.size();
   prepared_ = t;
 }
@@ -144,8 +119,6 @@ void HoldMap::apply(double t, Eigen::MatrixXcd& rho) {
     if (single_[static_cast<std::size_t>(p)]) rho.data()[p] *= std::exp(t * exponent_.data()[p]);
 }
 
-template Matrix<double> exp_rotation<double>(const Matrix<double>&);
-template Matrix<Complex> exp_rotation<Complex>(const Matrix<Complex>&);
 template void advance<double>(const StepFrames<double>&, const DaviesTable&, double, bool, Eigen::MatrixXcd&);
 template void advance<Complex>(const StepFrames<Complex>&, const DaviesTable&, double, bool, Eigen::MatrixXcd&);
 

@@ -8,10 +8,6 @@
 
 namespace tarn::runtime {
 
-/// exp(W) for antisymmetric (anti-Hermitian) W, to 1e-15.
-template <class Scalar>
-Matrix<Scalar> exp_rotation(const Matrix<Scalar>& w);
-
 /// rho (K x K) from the basis of the step's start to that of its end, in time h > 0 [ns]; backward: from
 /// end to start. Local error O(h^3), global order 2.
 template <class Scalar>

@@ -5,54 +5,56 @@
 #include <limits>
 
 #include "lang/support/check.h"
+#include "runtime/levels/product.h"
 
 namespace tarn::runtime {
 namespace {
 
 using Complex = std::complex<double>;
 
-struct Entry {
-  Eigen::Index n, m;
-  Complex value;
+/// Rates and shifts of all couplings, [coupling][group]; groups no coupling uses stay 0.
+struct Spectra {
+  std::vector<std::vector<double>> rate, shift;
 };
 
-/// Elements of one coupling that belong to one frequency.
+/// Pairs of each group in which some coupling has an element above rounding.
 struct Jump {
-  std::size_t first, last;  ///< Range of entries.
-  double w;
+  std::vector<std::uint32_t> pairs;
+  double w = 0;  ///< Mean frequency of the group.
 };
 
-struct Jumps {
-  std::vector<Entry> entries;
-  std::vector<Jump> jumps;
-};
-
-/// The jumps with an element above rounding, with their mean frequencies.
 template <class Scalar>
-Jumps collect(const Matrix<Scalar>& elements, const FrequencyGroups& groups, const Eigen::VectorXd& energies) {
-  const Eigen::Index levels = elements.rows();
-  const double negligible = 1e-13 * elements.cwiseAbs().maxCoeff();
-  Jumps found;
+std::vector<Jump> collect(const std::vector<Matrix<Scalar>>& elements, const FrequencyGroups& groups, const Eigen::VectorXd& energies) {
+  const Eigen::Index levels = energies.size();
+  Eigen::MatrixXd size = Eigen::MatrixXd::Zero(levels, levels);
+  for (const auto& one : elements) size = size.cwiseMax(one.cwiseAbs());
+  const double negligible = 1e-13 * size.maxCoeff();
+  std::vector<Jump> found;
   for (std::size_t g = 0; g < groups.count(); ++g) {
-    Jump jump{found.entries.size(), 0, 0.0};
+    Jump jump;
     for (std::uint32_t k = groups.start[g]; k < groups.start[g + 1]; ++k) {
-      const auto pair = static_cast<Eigen::Index>(groups.order[k]);
-      const Eigen::Index n = pair % levels, m = pair / levels;
-      jump.w += energies[m] - energies[n];
-      if (std::abs(elements(n, m)) > negligible) found.entries.push_back({n, m, elements(n, m)});
+      const std::uint32_t pair = groups.order[k];
+      jump.w += energies[pair / levels] - energies[pair % levels];
+      if (size.data()[pair] > negligible) jump.pairs.push_back(pair);
     }
     jump.w /= groups.start[g + 1] - groups.start[g];
-    jump.last = found.entries.size();
-    if (jump.last > jump.first) found.jumps.push_back(jump);
+    if (!jump.pairs.empty()) found.push_back(std::move(jump));
   }
   return found;
 }
 
-std::vector<double> evaluate(const SpectralFunction& function, const std::vector<Jump>& jumps) {
-  std::vector<double> w, values(jumps.size());
+Spectra evaluate(std::span<const BathFunctions> baths, const std::vector<Jump>& jumps) {
+  std::vector<double> w;
   for (const Jump& jump : jumps) w.push_back(jump.w);
-  if (function && !w.empty()) function(w, values.data());
-  return values;
+  Spectra spectra;
+  for (const auto& bath : baths) {
+    spectra.rate.emplace_back(w.size(), 0.0);
+    spectra.shift.emplace_back(w.size(), 0.0);
+    if (w.empty()) continue;
+    bath.rate(w, spectra.rate.back().data());
+    if (bath.shift) bath.shift(w, spectra.shift.back().data());
+  }
+  return spectra;
 }
 
 /// Sums up the map; pairs numbered a + K b until finish() numbers the coupled ones.
@@ -64,16 +66,21 @@ class Collector {
         decay_(Eigen::MatrixXcd::Zero(levels, levels)),
         transfer_(Eigen::MatrixXd::Zero(levels, levels)) {}
 
-  void add(const Jumps& found, const std::vector<double>& rate, const std::vector<double>& shift) {
-    for (std::size_t g = 0; g < found.jumps.size(); ++g) {
-      const Complex loss(0.5 * rate[g], shift[g]);
-      for (std::size_t p = found.jumps[g].first; p < found.jumps[g].last; ++p)
-        for (std::size_t q = found.jumps[g].first; q < found.jumps[g].last; ++q) {
-          const Entry &x = found.entries[p], &y = found.entries[q];
-          gain(x, y, rate[g]);
-          if (x.n == y.n) decay_(x.m, y.m) += std::conj(x.value) * y.value * loss;
+  template <class Scalar>
+  void add(const std::vector<Matrix<Scalar>>& elements, const std::vector<Jump>& jumps, const Spectra& spectra) {
+    for (std::size_t g = 0; g < jumps.size(); ++g)
+      for (const std::uint32_t p : jumps[g].pairs)
+        for (const std::uint32_t q : jumps[g].pairs) {
+          Complex gained = 0, lost = 0;
+          for (std::size_t c = 0; c < elements.size(); ++c) {
+            const Complex x = elements[c].data()[p], y = elements[c].data()[q];
+            gained += spectra.rate[c][g] * x * std::conj(y);
+            lost += Complex(0.5 * spectra.rate[c][g], spectra.shift[c][g]) * std::conj(x) * y;
+          }
+          const Eigen::Index n = p % levels_, m = p / levels_, k = q % levels_, l = q / levels_;
+          gain(n, m, k, l, gained);
+          if (n == k) decay_(m, l) += lost;
         }
-    }
   }
 
   DaviesTable finish() {
@@ -93,14 +100,14 @@ class Collector {
  private:
   std::uint32_t pair(Eigen::Index a, Eigen::Index b) const { return static_cast<std::uint32_t>(a + levels_ * b); }
 
-  void gain(const Entry& x, const Entry& y, double rate) {
-    const Complex value = rate * x.value * std::conj(y.value);
-    if (x.n == x.m && y.n == y.m) {
-      diagonal_(x.n, y.n) += value;
-    } else if (x.n == y.n && x.m == y.m) {
-      transfer_(x.n, x.m) += value.real();
-    } else {
-      terms_.push_back({pair(x.n, y.n), pair(x.m, y.m), value});
+  /// rho_ml feeds rho_nk.
+  void gain(Eigen::Index n, Eigen::Index m, Eigen::Index k, Eigen::Index l, Complex value) {
+    if (n == m && k == l) {
+      diagonal_(n, k) += value;
+    } else if (n == k && m == l) {
+      transfer_(n, m) += value.real();
+    } else if (value != 0.0) {
+      terms_.push_back({pair(n, k), pair(m, l), value});
     }
   }
 
@@ -173,15 +180,16 @@ template <class Scalar>
 DaviesTable davies_table(const LevelModel<Scalar>& model, const Frame<Scalar>& frame, const FrequencyGroups& groups,
                          std::span<const BathFunctions> baths) {
   TARN_CHECK(baths.size() == model.couplings);
-  Collector collector(frame.energies.size());
   Eigen::VectorXd outflow = Eigen::VectorXd::Zero(frame.energies.size());
+  std::vector<Matrix<Scalar>> elements;
   for (std::size_t c = 0; c < baths.size(); ++c) {
     const Matrix<Scalar> image = model.coupling(c, frame.s, frame.vectors);
-    const Matrix<Scalar> elements = frame.vectors.adjoint() * image;
-    const Jumps found = collect<Scalar>(elements, groups, frame.energies);
-    collector.add(found, evaluate(baths[c].rate, found.jumps), evaluate(baths[c].shift, found.jumps));
-    add_outflow<Scalar>(frame, image, elements, baths[c], outflow);
+    elements.push_back(product<Scalar>(frame.vectors.adjoint(), image));
+    add_outflow<Scalar>(frame, image, elements.back(), baths[c], outflow);
   }
+  Collector collector(frame.energies.size());
+  const std::vector<Jump> jumps = collect<Scalar>(elements, groups, frame.energies);
+  collector.add<Scalar>(elements, jumps, evaluate(baths, jumps));
   DaviesTable table = collector.finish();
   table.outflow = outflow;
   return table;

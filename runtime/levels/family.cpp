@@ -8,6 +8,7 @@
 #include <type_traits>
 
 #include "lang/support/check.h"
+#include "runtime/levels/product.h"
 
 namespace tarn::runtime {
 namespace {
@@ -94,7 +95,7 @@ Frame<Scalar> solve_dense(const Matrix<Scalar>& hamiltonian, double s, Eigen::In
   frame.vectors = solver.eigenvectors().leftCols(count);
   const bool all = count == hamiltonian.rows();
   frame.next = all ? std::numeric_limits<double>::infinity() : solver.eigenvalues()[count];
-  frame.residual = (hamiltonian * frame.vectors - frame.vectors * frame.energies.asDiagonal())
+  frame.residual = (product<Scalar>(hamiltonian, frame.vectors) - frame.vectors * frame.energies.asDiagonal())
                        .colwise()
                        .norm()
                        .maxCoeff();
@@ -135,10 +136,10 @@ LevelModel<Scalar> dense_levels(const HamiltonianFamily& family) {
     return solve_dense<Scalar>(dense->hamiltonian.at(dense->values(dense->coefficients, s), dense->dimension), s, count);
   };
   model.slope = [dense](double s, const Matrix<Scalar>& columns) -> Matrix<Scalar> {
-    return dense->hamiltonian.at(dense->values(dense->derivative, s), dense->dimension) * columns;
+    return product<Scalar>(dense->hamiltonian.at(dense->values(dense->derivative, s), dense->dimension), columns);
   };
   model.coupling = [dense](std::size_t c, double s, const Matrix<Scalar>& columns) -> Matrix<Scalar> {
-    return dense->couplings[c].at(dense->values(dense->coefficients, s), dense->dimension) * columns;
+    return product<Scalar>(dense->couplings[c].at(dense->values(dense->coefficients, s), dense->dimension), columns);
   };
   return model;
 }

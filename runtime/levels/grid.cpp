@@ -7,6 +7,7 @@
 #include <optional>
 
 #include "lang/support/check.h"
+#include "runtime/levels/product.h"
 
 namespace tarn::runtime {
 namespace {
@@ -113,7 +114,7 @@ class Builder {
                const std::vector<std::pair<Eigen::Index, Eigen::Index>>& pairs, double s) const {
     Matrix<Scalar> vectors = frame.vectors;
     if (basis.size() != 0) vectors = frame.vectors * basis;
-    const Matrix<Scalar> slope = vectors.adjoint() * model_.slope(s, vectors);
+    const Matrix<Scalar> slope = product<Scalar>(vectors.adjoint(), model_.slope(s, vectors));
     return std::any_of(pairs.begin(), pairs.end(), [&](const auto& pair) {
       const auto [a, b] = pair;
       const double approach = std::abs(std::real(slope(a, a)) - std::real(slope(b, b)));

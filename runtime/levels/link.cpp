@@ -6,9 +6,10 @@
 #include <complex>
 #include <numeric>
 #include <tuple>
-#include <type_traits>
 
 #include "lang/support/check.h"
+#include "runtime/levels/product.h"
+#include "runtime/levels/rotation.h"
 
 namespace tarn::runtime {
 namespace {
@@ -91,6 +92,29 @@ Matrix<Scalar> polar_factor(const Matrix<Scalar>& matrix) {
   return svd.matrixU() * svd.matrixV().adjoint();
 }
 
+/// The same, by hand for a single level.
+template <class Scalar>
+Matrix<Scalar> unit_factor(const Matrix<Scalar>& block) {
+  if (block.size() > 1) return polar_factor<Scalar>(block);
+  const double length = std::abs(block(0, 0));
+  return Matrix<Scalar>::Constant(1, 1, length == 0 ? Scalar(1) : block(0, 0) / length);
+}
+
+/// The same for a matrix close to unitary, by x <- x (3 - x^dagger x)/2 (Newton and Schulz).
+template <class Scalar>
+Matrix<Scalar> nearby_polar_factor(const Matrix<Scalar>& matrix) {
+  const Matrix<Scalar> one = Matrix<Scalar>::Identity(matrix.rows(), matrix.cols());
+  Matrix<Scalar> x = matrix;
+  for (int k = 0; k < 12; ++k) {
+    const Matrix<Scalar> defect = one - product<Scalar>(x.adjoint(), x);
+    const double size = defect.cwiseAbs().maxCoeff();
+    if (size < 1e-14) return x;
+    if (size > 0.5) break;
+    x += 0.5 * product<Scalar>(x, defect);
+  }
+  return polar_factor<Scalar>(matrix);
+}
+
 /// Turns the right labels within each pair of manifolds onto the left ones, where they are not
 /// already close: a small turn there is as well left to the rotation. Returns the basis turned.
 template <class Scalar>
@@ -100,7 +124,7 @@ void align(Matrix<Scalar>& overlap, Matrix<Scalar>& basis, const Labels& left, c
   for (std::size_t a = 0; a < left.size(); ++a) joint[a] = left[a] * stride + right[a];
   for (const Labels& group : members(joint)) {
     if (group.empty()) continue;
-    const Matrix<Scalar> turn = polar_factor<Scalar>(overlap(group, group));
+    const Matrix<Scalar> turn = unit_factor<Scalar>(overlap(group, group));
     const auto size = static_cast<Eigen::Index>(group.size());
     if ((turn - Matrix<Scalar>::Identity(size, size)).cwiseAbs().maxCoeff() < 0.1) continue;
     const Matrix<Scalar> rows = overlap(group, Eigen::all), columns = basis(Eigen::all, group);
@@ -139,20 +163,6 @@ void set_energies(Link<Scalar>& link, const LevelModel<Scalar>& model, const Fra
   link.mean_energies = 0.5 * (link.left_energies + link.right_energies) + ds / 12.0 * (link.left_slopes - link.right_slopes);
 }
 
-/// Series of asinh, S - S^3/6 + ..., for |S| small.
-template <class Scalar>
-Matrix<Scalar> asinh_series(const Matrix<Scalar>& sine) {
-  const Matrix<Scalar> square = sine * sine;
-  Matrix<Scalar> power = sine, sum = sine;
-  double coefficient = 1;
-  for (int k = 1; k < 12 && power.cwiseAbs().maxCoeff() > 1e-17; ++k) {
-    power = power * square;
-    coefficient *= -(2.0 * k - 1) / (2.0 * k);
-    sum += coefficient / (2.0 * k + 1) * power;
-  }
-  return sum;
-}
-
 }  // namespace
 
 std::vector<int> manifolds(const Eigen::VectorXd& energies, double tolerance) {
@@ -168,27 +178,12 @@ std::vector<int> manifolds(const Eigen::VectorXd& energies, double tolerance) {
 }
 
 template <class Scalar>
-Matrix<Scalar> rotation_logarithm(const Matrix<Scalar>& rotation) {
-  const Matrix<Scalar> sine = 0.5 * (rotation - rotation.adjoint());
-  if (sine.norm() < 0.2) return asinh_series<Scalar>(sine);
-  const Matrix<Complex> hermitian = Complex(0, -1) * sine.template cast<Complex>();
-  const Eigen::SelfAdjointEigenSolver<Matrix<Complex>> solver(hermitian);
-  const Eigen::VectorXd angle = solver.eigenvalues().unaryExpr([](double x) { return std::asin(std::clamp(x, -1.0, 1.0)); });
-  const Matrix<Complex> log = solver.eigenvectors() * (Complex(0, 1) * angle.cast<Complex>()).asDiagonal() * solver.eigenvectors().adjoint();
-  if constexpr (std::is_same_v<Scalar, double>) {
-    return log.real();
-  } else {
-    return log;
-  }
-}
-
-template <class Scalar>
 Link<Scalar> make_link(const LevelModel<Scalar>& model, const Frame<Scalar>& left, const Frame<Scalar>& right, double tolerance) {
   TARN_CHECK(left.energies.size() == right.energies.size());
   Link<Scalar> link;
   link.s_left = left.s;
   link.s_right = right.s;
-  Matrix<Scalar> overlap = right.vectors.adjoint() * left.vectors;
+  Matrix<Scalar> overlap = product<Scalar>(right.vectors.adjoint(), left.vectors);
   link.lost = (1.0 - overlap.cwiseAbs2().colwise().sum().array()).max(0.0).transpose();
   const Labels columns = manifolds(left.energies, tolerance), rows = manifolds(right.energies, tolerance);
   link.left_basis = adapt_columns<Scalar>(overlap, columns, rows);
@@ -203,7 +198,7 @@ Link<Scalar> make_link(const LevelModel<Scalar>& model, const Frame<Scalar>& lef
   for (std::size_t a = 0; a < partner.size(); ++a) matched[a] = rows[static_cast<std::size_t>(partner[a])];
   align<Scalar>(overlap, basis, columns, matched);
   if (!is_identity<Scalar>(basis)) link.right_basis = basis;
-  if (left.vectors.rows() != left.vectors.cols()) overlap = polar_factor<Scalar>(overlap);
+  if (left.vectors.rows() != left.vectors.cols()) overlap = nearby_polar_factor<Scalar>(overlap);
   link.rotation = rotation_logarithm<Scalar>(overlap);
   set_energies<Scalar>(link, model, left, right);
   return link;
@@ -217,8 +212,6 @@ void orient(Frame<Scalar>& right, Link<Scalar>& link) {
   link.right_basis.resize(0, 0);
 }
 
-template Matrix<double> rotation_logarithm<double>(const Matrix<double>&);
-template Matrix<Complex> rotation_logarithm<Complex>(const Matrix<Complex>&);
 template Link<double> make_link<double>(const LevelModel<double>&, const Frame<double>&, const Frame<double>&, double);
 template Link<Complex> make_link<Complex>(const LevelModel<Complex>&, const Frame<Complex>&, const Frame<Complex>&, double);
 template void orient<double>(Frame<double>&, Link<double>&);

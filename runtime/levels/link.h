@@ -41,8 +41,4 @@ Link<Scalar> make_link(const LevelModel<Scalar>& model, const Frame<Scalar>& lef
 template <class Scalar>
 void orient(Frame<Scalar>& right, Link<Scalar>& link);
 
-/// Antisymmetric logarithm of an orthogonal (unitary) matrix whose angles stay below pi/2.
-template <class Scalar>
-Matrix<Scalar> rotation_logarithm(const Matrix<Scalar>& rotation);
-
 }  // namespace tarn::runtime

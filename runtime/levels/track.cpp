@@ -7,6 +7,7 @@
 
 #include "lang/support/check.h"
 #include "runtime/levels/grid.h"
+#include "runtime/levels/product.h"
 
 namespace tarn::runtime {
 
@@ -21,7 +22,7 @@ struct Track<Scalar>::Refinements {
 
 template <class Scalar>
 Matrix<Scalar> coupling_elements(const LevelModel<Scalar>& model, std::size_t coupling, const Frame<Scalar>& frame) {
-  return frame.vectors.adjoint() * model.coupling(coupling, frame.s, frame.vectors);
+  return product<Scalar>(frame.vectors.adjoint(), model.coupling(coupling, frame.s, frame.vectors));
 }
 
 template <class Scalar>
