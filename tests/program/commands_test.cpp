@@ -1,0 +1,155 @@
+// Commands of the real program: exit statuses, folders, interruption, stages, layout.
+#include <signal.h>
+#include <unistd.h>
+
+#include <catch2/catch.hpp>
+#include <chrono>
+#include <nlohmann/json.hpp>
+#include <sstream>
+#include <thread>
+
+#include "tests/program/process.h"
+
+using namespace tarn::testing;
+namespace fs = std::filesystem;
+
+namespace {
+
+const fs::path kCrossing = source_root() / "examples/01_avoided_crossing/crossing.tarn";
+
+/// A qubit whose flips are claimed to stay below a limit; the limit is a parameter.
+const char* const kClaim =
+    "parameter limit : number = 0.9 in 0 .. 1\nparameter D = 1 GHz\nqubit site { energy -D/2*X }\n"
+    "chip one { qubit q : site }\nexperiment e {\n chip one\n begin state(\"0\")\n pace hold for 0.25 ns\n"
+    " equation schroedinger\n observe p = population(state(\"1\")) at end\n expect p <= limit\n}\n";
+
+/// Many points that take long together: driven qubits over a fine grid.
+const char* const kLong =
+    "parameter f = 5 GHz in 1 GHz .. 9 GHz\nqubit site { energy -5 GHz/2*Z + 50 MHz*cos(f*t)*X }\n"
+    "chip one { qubit q : site }\nexperiment e {\n chip one\n begin state(\"0\")\n pace hold for 20 us\n"
+    " equation schroedinger\n observe p = population(state(\"1\")) at end\n sweep f over linear(4 GHz, 6 GHz, 4000)\n}\n";
+
+std::vector<fs::path> models_of_the_checkout() {
+  std::vector<fs::path> models;
+  for (const char* folder : {"examples", "stdlib", "tests/program/models"}) {
+    for (const auto& entry : fs::recursive_directory_iterator(source_root() / folder)) {
+      if (entry.path().extension() == ".tarn") models.push_back(entry.path());
+    }
+  }
+  return models;
+}
+
+}  // namespace
+
+TEST_CASE("exit statuses tell what happened") {
+  const Scratch scratch;
+  scratch.write("m.tarn", kClaim);
+  CHECK(run_tarn({"run", "m.tarn", "--out", "a", "--set", "limit=1"}, scratch.path()).status == 0);
+  CHECK(run_tarn({"run", "m.tarn", "--out", "b", "--set", "limit=0.1"}, scratch.path()).status == 1);
+  CHECK(run_tarn({"run", "m.tarn", "--out", "c", "--set", "limit=2"}, scratch.path()).status == 2);
+  CHECK(run_tarn({"run", "m.tarn", "--set", "nothing=2"}, scratch.path()).status == 2);
+  CHECK(run_tarn({"run", "m.tarn", "--wrong"}, scratch.path()).status == 2);
+  CHECK(run_tarn({}, scratch.path()).status == 2);
+  CHECK(run_tarn({"--help"}, scratch.path()).status == 0);
+  CHECK(run_tarn({"--version"}, scratch.path()).out.find("tarn ") == 0);
+}
+
+TEST_CASE("a folder of the same key is continued, of another refused untouched") {
+  const Scratch scratch;
+  scratch.write("m.tarn", kClaim);
+  REQUIRE(run_tarn({"run", "m.tarn", "--out", "r", "--set", "limit=1"}, scratch.path()).status == 0);
+  const std::string before = read_file(scratch.path() / "r/e/results.csv");
+  CHECK(run_tarn({"run", "m.tarn", "--out", "r", "--set", "limit=1"}, scratch.path()).status == 0);
+  const Outcome other = run_tarn({"run", "m.tarn", "--out", "r", "--set", "D=2 GHz"}, scratch.path());
+  CHECK(other.status == 2);
+  CHECK(read_file(scratch.path() / "r/e/results.csv") == before);
+  scratch.write("f/e/notes.txt", "mine");
+  CHECK(run_tarn({"run", "m.tarn", "--out", "f"}, scratch.path()).status == 2);
+  CHECK(read_file(scratch.path() / "f/e/notes.txt") == "mine");
+}
+
+TEST_CASE("an interrupted run keeps its finished rows and is continued to the same bytes") {
+  const Scratch scratch;
+  scratch.write("m.tarn", kLong);
+  const Outcome cut = run_tarn_while({"run", "m.tarn", "--out", "r"}, scratch.path(), [](int pid) {
+    std::this_thread::sleep_for(std::chrono::milliseconds(1500));
+    kill(pid, SIGINT);
+  });
+  INFO(cut.err);
+  CHECK(cut.status == 3);
+  const Csv part = read_csv(scratch.path() / "r/e/results.csv");
+  CHECK(part.rows.size() < 4000);
+  const Outcome limited = run_tarn({"run", "m.tarn", "--out", "r", "--time-limit", "1s"}, scratch.path());
+  CHECK(limited.status == 3);
+  CHECK(limited.seconds < 10);
+  CHECK(read_csv(scratch.path() / "r/e/results.csv").rows.size() >= part.rows.size());
+}
+
+TEST_CASE("another value of a parameter compiles nothing") {
+  const Scratch scratch;
+  scratch.write("m.tarn", kClaim);
+  const std::vector<std::string> cache{"TARN_CACHE_DIR=" + (scratch.path() / "kernels").string()};
+  const Outcome first = run_tarn({"run", "m.tarn", "--out", "a", "--timings", "--set", "limit=1"}, scratch.path(), cache);
+  CHECK(first.err.find("1 compiled") != std::string::npos);
+  const Outcome second =
+      run_tarn({"run", "m.tarn", "--out", "b", "--timings", "--set", "limit=1", "--set", "D=1.5 GHz"}, scratch.path(), cache);
+  CHECK(second.err.find("0 compiled, 1 from the cache") != std::string::npos);
+}
+
+TEST_CASE("diagnostics as JSON lines are objects with place and kind") {
+  const Scratch scratch;
+  scratch.write("m.tarn", "parameter a : time = 3 GHz\nparameter b : frequency = 1 ns\n");
+  const Outcome outcome = run_tarn({"check", "m.tarn", "--diagnostics", "json"}, scratch.path());
+  CHECK(outcome.status == 2);
+  std::istringstream lines(outcome.err);
+  std::size_t count = 0;
+  for (std::string line; std::getline(lines, line); ++count) {
+    const auto object = nlohmann::json::parse(line);
+    CHECK(object.at("file") == "m.tarn");
+    CHECK(object.at("severity") == "error");
+    CHECK(object.at("line").get<std::size_t>() == count + 1);
+  }
+  CHECK(count == 2);
+}
+
+TEST_CASE("every stage of compilation is shown") {
+  for (const char* stage : {"syntax", "program", "instance", "plan", "ir", "llvm", "asm", "header", "object"}) {
+    const Outcome outcome = run_tarn({"emit", kCrossing.string(), "--stage", stage});
+    INFO(stage << ": " << outcome.err);
+    CHECK(outcome.status == 0);
+    CHECK(outcome.out.size() > 100);
+  }
+  CHECK(run_tarn({"emit", kCrossing.string(), "--stage", "soup"}).status == 2);
+}
+
+TEST_CASE("tidy changes layout only, and nothing the second time, on every model of the checkout") {
+  for (const fs::path& model : models_of_the_checkout()) {
+    INFO(model);
+    const Scratch scratch;
+    const Outcome once = run_tarn({"tidy", model.string()});
+    REQUIRE(once.status == 0);
+    const fs::path tidied = scratch.write("m.tarn", once.out);
+    CHECK(run_tarn({"tidy", tidied.string()}).out == once.out);
+    const fs::path original = scratch.write("n.tarn", read_file(model));
+    CHECK(run_tarn({"emit", tidied.string(), "--stage", "syntax"}).out ==
+          run_tarn({"emit", original.string(), "--stage", "syntax"}).out);
+    REQUIRE(run_tarn({"tidy", "--in-place", original.string()}).status == 0);
+    CHECK(read_file(original) == once.out);
+  }
+}
+
+TEST_CASE("explain shows terms, levels, gap and structure") {
+  const Outcome outcome = run_tarn({"explain", kCrossing.string()});
+  REQUIRE(outcome.status == 0);
+  for (const char* part : {"X(q)", "Z(q)", "smallest gap 0.1 GHz at s = 0.5", "real", "crossing"}) {
+    INFO(part << "\n" << outcome.out);
+    CHECK(outcome.out.find(part) != std::string::npos);
+  }
+}
+
+TEST_CASE("nothing is coloured or written over where no terminal looks") {
+  const Scratch scratch;
+  const Outcome outcome = run_tarn({"run", kCrossing.string(), "--out", "r"}, scratch.path());
+  CHECK(outcome.status == 0);
+  CHECK((outcome.out + outcome.err).find('\033') == std::string::npos);
+}
