@@ -27,8 +27,8 @@ void add(Moments& sum, const Moments& part) {
   sum.first_error += part.first_error;
 }
 
-/// Relative to the sums so far. C keeps its absolute, not its relative accuracy at long
-/// times, so the demand on a panel must not be relative to the panel.
+/// Relative to the sums so far. The C of a table keeps its absolute, not its relative
+/// accuracy at long times, so the demand on a panel must not be relative to the panel.
 constexpr double kZerothTolerance = 1e-12;
 constexpr double kFirstTolerance = 3e-11;
 constexpr int kDeepest = 10;
@@ -45,8 +45,9 @@ Moments moments(const Correlation& c, double a, double b, const Moments& before,
   double error = 0.0;
   const std::complex<double> value = Rule::integrate(integrand, -1.0, 1.0, 0, 0.0, &error);
   Moments part{value.real(), value.imag() * b, error, error * b};
-  const bool good = error <= kZerothTolerance * (before.zeroth + part.zeroth) && error * b <= kFirstTolerance * (before.first + part.first);
-  if (good || depth == kDeepest) return part;
+  const bool zeroth_good = error <= kZerothTolerance * (before.zeroth + part.zeroth);
+  const bool first_good = error * b <= kFirstTolerance * (before.first + part.first);
+  if ((zeroth_good && first_good) || depth == kDeepest) return part;
   const double middle = 0.5 * (a + b);
   part = moments(c, a, middle, before, depth + 1);
   add(part, moments(c, middle, b, before, depth + 1));
@@ -109,8 +110,10 @@ std::optional<std::size_t> row_with_jump(const ThermalBath& bath) {
       return bath.theta() > 0.0 ? j / std::tanh(w / (2.0 * bath.theta())) : j;
     };
     const double size = thermal(support(component).scale) + thermal(0.5 * support(component).scale);
-    for (const double w : places)
-      if (w > 0.0 && std::isfinite(w) && std::abs(thermal(w * (1.0 + kStep)) - thermal(w * (1.0 - kStep))) > kMatters * size) return row;
+    for (const double w : places) {
+      if (w <= 0.0 || !std::isfinite(w)) continue;
+      if (std::abs(thermal(w * (1.0 + kStep)) - thermal(w * (1.0 - kStep))) > kMatters * size) return row;
+    }
   }
   return std::nullopt;
 }

@@ -17,8 +17,9 @@ class CorrelationFunction {
  public:
   explicit CorrelationFunction(const ThermalBath& bath);
 
-  /// C(t), any real t [ns]. Closed forms: relative accuracy 1e-12; tables and functions:
-  /// 1e-12 C(0), uniform in t, the accuracy of the panels. A Drude part makes the real part
+  /// C(t), any real t [ns]. Closed forms: relative accuracy 1e-12 for t up to 1e6 ns (1e-9
+  /// next to the coincidences named in rational_density.h); tables and functions: 1e-12 of
+  /// int J coth, uniform in t. A Drude part makes the real part
   /// +infinity at t = 0.
   std::complex<double> at(double t) const;
 

@@ -4,6 +4,7 @@
 #include <array>
 #include <boost/math/quadrature/gauss.hpp>
 #include <cmath>
+#include <deque>
 
 #include "lang/support/check.h"
 
@@ -13,6 +14,7 @@ namespace {
 constexpr std::size_t kTerms = 20;
 constexpr std::size_t kTail = 3;  // terms whose size is the error estimate
 constexpr int kDeepest = 60;
+constexpr std::size_t kMostPieces = 500;  // of one panel between breaks
 using Row = std::array<double, kTerms>;
 
 /// Nodes on (-1, 1), and the matrix that takes values at the nodes to Legendre coefficients.
@@ -118,6 +120,10 @@ double sum_second_kind(std::span<const double> a, double u, double q0) {
   return sum / q * q0;
 }
 
+/// The logarithm of the distance to a panel's edge. Met from the two panels of an edge it is
+/// the same number, and cancels where f is continuous; at the edge itself both are dropped.
+double edge_log(double distance) { return distance == 0.0 ? 0.0 : std::log(std::abs(distance)); }
+
 /// Spherical Bessel functions j_0 .. j_(count-1) at k.
 Row spherical_bessel(double k, std::size_t count) {
   Row j{};
@@ -163,39 +169,67 @@ class PanelBuilder {
  public:
   PanelBuilder(const BatchFunction& f, PanelTolerance tolerance) : f_(f), tolerance_(tolerance) {}
 
-  /// Adds panels for [left, right], in order.
-  void add(double left, double right, int depth, PanelSeries& out) {
+  /// Adds panels for [left, right], in order of their left ends. Breadth first, so that
+  /// where f is too noisy for the tolerance the panels end up equally fine.
+  void add(double left, double right, PanelSeries& out) {
+    struct Piece {
+      double left;
+      double right;
+      int depth;
+    };
+    std::deque<Piece> pending = {{left, right, 0}};
+    const std::size_t first = out.panels_.size();
+    for (std::size_t seen = 0; !pending.empty(); ++seen) {
+      const Piece piece = pending.front();
+      pending.pop_front();
+      const bool last = piece.depth == kDeepest || seen >= kMostPieces;
+      if (settle(piece.left, piece.right, last, out)) continue;
+      const double centre = 0.5 * (piece.left + piece.right);
+      pending.push_back({piece.left, centre, piece.depth + 1});
+      pending.push_back({centre, piece.right, piece.depth + 1});
+    }
+    const auto by_left = [](const PanelSeries::Panel& p, const PanelSeries::Panel& q) { return p.left < q.left; };
+    std::sort(out.panels_.begin() + static_cast<std::ptrdiff_t>(first), out.panels_.end(), by_left);
+  }
+
+ private:
+  struct Projection {
+    Row coefficient{};
+    double largest = 0.0;  ///< |f| at the nodes.
+  };
+
+  /// Appends [left, right] as one panel if it is good enough, or `last`; else false.
+  bool settle(double left, double right, bool last, PanelSeries& out) const {
     const double half = 0.5 * (right - left);
     const double centre = 0.5 * (left + right);
+    const auto [a, largest] = project(centre, half);
+    out.evaluations_ += kTerms;
+    double tail = 0.0;
+    for (std::size_t n = kTerms - kTail; n < kTerms; ++n) tail = std::max(tail, std::abs(a[n]));
+    const double allowed = std::max(tolerance_.relative * largest, tolerance_.absolute);
+    if (tail > allowed && !last && half >= 1e-13 * std::abs(centre)) return false;
+    std::size_t count = kTerms;
+    while (count > 1 && std::abs(a[count - 1]) < 0.01 * allowed) --count;
+    out.panels_.push_back({left, right, out.coefficients_.size(), count});
+    for (std::size_t n = 0; n < count; ++n) out.coefficients_.push_back(a[n]);
+    out.error_ = std::max(out.error_, tail);
+    out.integral_error_ += 2.0 * half * tail;
+    return true;
+  }
+
+  Projection project(double centre, double half) const {
     Row x{};
     Row y{};
     for (std::size_t i = 0; i < kTerms; ++i) x[i] = centre + half * rule().node[i];
     f_(x, y.data());
-    out.evaluations_ += kTerms;
-    Row a{};
-    double largest = 0.0;
+    Projection p;
     for (std::size_t i = 0; i < kTerms; ++i) {
-      largest = std::max(largest, std::abs(y[i]));
-      for (std::size_t n = 0; n < kTerms; ++n) a[n] += rule().project[n][i] * y[i];
+      p.largest = std::max(p.largest, std::abs(y[i]));
+      for (std::size_t n = 0; n < kTerms; ++n) p.coefficient[n] += rule().project[n][i] * y[i];
     }
-    double tail = 0.0;
-    for (std::size_t n = kTerms - kTail; n < kTerms; ++n) tail = std::max(tail, std::abs(a[n]));
-    const double allowed = std::max(tolerance_.relative * largest, tolerance_.absolute);
-    const bool narrow = depth == kDeepest || half < 1e-13 * std::abs(centre);
-    if (tail > allowed && !narrow) {
-      add(left, centre, depth + 1, out);
-      add(centre, right, depth + 1, out);
-      return;
-    }
-    std::size_t count = kTerms;
-    while (count > 1 && std::abs(a[count - 1]) < 0.01 * allowed) --count;
-    out.panels_.push_back({left, right, out.coefficients_.size(), count});
-    out.coefficients_.insert(out.coefficients_.end(), a.begin(), a.begin() + static_cast<std::ptrdiff_t>(count));
-    out.error_ = std::max(out.error_, tail);
-    out.integral_error_ += 2.0 * half * tail;
+    return p;
   }
 
- private:
   const BatchFunction& f_;
   PanelTolerance tolerance_;
 };
@@ -205,15 +239,16 @@ PanelSeries PanelSeries::expand(const BatchFunction& f, std::span<const double> 
   TARN_CHECK(std::is_sorted(breaks.begin(), breaks.end()));
   PanelSeries out;
   PanelBuilder builder(f, tolerance);
-  for (std::size_t i = 0; i + 1 < breaks.size(); ++i) builder.add(breaks[i], breaks[i + 1], 0, out);
+  for (std::size_t i = 0; i + 1 < breaks.size(); ++i) builder.add(breaks[i], breaks[i + 1], out);
   return out;
 }
 
 double PanelSeries::value(double x) const {
   if (panels_.empty() || x < panels_.front().left || x > panels_.back().right) return 0.0;
-  auto panel = std::upper_bound(panels_.begin(), panels_.end(), x, [](double w, const Panel& p) { return w < p.right; });
+  const auto ends_after = [](double w, const Panel& p) { return w < p.right; };
+  auto panel = std::upper_bound(panels_.begin(), panels_.end(), x, ends_after);
   if (panel == panels_.end()) --panel;
-  const double u = (2.0 * x - panel->left - panel->right) / (panel->right - panel->left);
+  const double u = ((x - panel->left) - (panel->right - x)) / (panel->right - panel->left);
   return clenshaw(std::span(coefficients_).subspan(panel->first, panel->count), u);
 }
 
@@ -221,14 +256,12 @@ double PanelSeries::cauchy(double x) const {
   double sum = 0.0;
   for (const Panel& panel : panels_) {
     const double width = panel.right - panel.left;
-    const double u = (2.0 * x - panel.left - panel.right) / width;
-    // The two logarithms of one edge, met from its two panels, must be the same number:
-    // then they cancel where f is continuous. At the edge itself both are dropped.
-    const double from_left = std::abs(x - panel.left);
-    const double from_right = std::abs(x - panel.right);
-    const double q0 = from_left < 4.0 * width && from_right < 4.0 * width
-                          ? 0.5 * ((from_left > 0.0 ? std::log(from_left) : 0.0) - (from_right > 0.0 ? std::log(from_right) : 0.0))
-                          : 0.5 * std::log1p(2.0 / (u - 1.0));
+    // Differences to the edges first: next to a narrow panel far from 0 they are exact.
+    const double from_left = x - panel.left;
+    const double from_right = x - panel.right;
+    const double u = (from_left + from_right) / width;
+    const bool near = std::abs(u) < 8.0;
+    const double q0 = near ? 0.5 * (edge_log(from_left) - edge_log(from_right)) : 0.5 * std::log1p(2.0 / (u - 1.0));
     sum += 2.0 * sum_second_kind(std::span(coefficients_).subspan(panel.first, panel.count), u, q0);
   }
   return sum;

@@ -1,5 +1,6 @@
 #include "runtime/bath/power_law_bath.h"
 
+#include <algorithm>
 #include <cmath>
 #include <numbers>
 
@@ -11,8 +12,9 @@ namespace {
 using Complex = std::complex<double>;
 
 /// Step in log t. The integrand is analytic for |Im log t| < pi/4, so the error of the
-/// trapezoidal rule is about exp(-2 pi (pi/4)/step) = 7e-18.
-constexpr double kStep = 0.125;
+/// trapezoidal rule is about exp(-2 pi (pi/4)/step) = 7e-18, times what the singularity of
+/// order s + 1 on the edge of that strip adds: steps shrink with s.
+double step_for(double s) { return 0.125 / (1.0 + 0.15 * std::max(0.0, s - 1.0)); }
 /// Range of log(t cutoff): below, t C is under 1e-17 of its peak; above, the algebraic
 /// tail of C leaves less than 1e-18 of lambda.
 constexpr double kFirst = -40.0;
@@ -35,11 +37,12 @@ Complex power_law_correlation(const PowerLaw& law, double theta, Complex t) {
 
 PowerLawTransform::PowerLawTransform(const PowerLaw& law, double theta) {
   const Complex direction = std::polar(1.0, std::numbers::pi / 4);
-  for (double x = kFirst; x <= kLast; x += kStep) {
+  const double step = step_for(law.s);
+  for (double x = kFirst; x <= kLast; x += step) {
     const Complex t = std::exp(x) / law.cutoff * direction;
     time_.push_back(t);
-    emission_.push_back(kStep * t * power_law_correlation(law, theta, t));
-    absorption_.push_back(kStep * std::conj(t) * power_law_correlation(law, theta, std::conj(t)));
+    emission_.push_back(step * t * power_law_correlation(law, theta, t));
+    absorption_.push_back(step * std::conj(t) * power_law_correlation(law, theta, std::conj(t)));
   }
 }
 

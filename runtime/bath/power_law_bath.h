@@ -17,12 +17,12 @@ namespace tarn::runtime {
 /// C at complex t with |arg t| <= pi/4, in rad^2/ns^2. theta >= 0. Relative accuracy 1e-13.
 std::complex<double> power_law_correlation(const PowerLaw& law, double theta, std::complex<double> t);
 
-/// Gamma(w) at any number of w for one bath; construction costs about 700 evaluations of C.
+/// Gamma(w) at any number of w for one bath; construction costs 1400 to 3000 evaluations of C, some ms.
 class PowerLawTransform {
  public:
   PowerLawTransform(const PowerLaw& law, double theta);
 
-  /// Gamma(w) = gamma/2 + i S in rad/ns, any real w != 0. |error| below 1e-13 (lambda + gamma);
+  /// Gamma(w) = gamma/2 + i S in rad/ns, any real w != 0. |error| below 1e-12 (lambda + gamma);
   /// the real part repeats gamma/2 and so checks itself. About 10 us.
   std::complex<double> operator()(double w) const;
 

@@ -1,7 +1,6 @@
 #include "runtime/bath/rational_density.h"
 
 #include <algorithm>
-#include <array>
 #include <cmath>
 #include <limits>
 #include <numbers>
@@ -18,7 +17,7 @@ constexpr Complex kI{0.0, 1.0};
 
 /// Closer to a coincidence than this (in units of the spacing), the limit is interpolated:
 /// rounding costs 1e-16/kNear, interpolation kNear^4.
-constexpr double kNear = 1e-3;
+constexpr double kNear = 2e-4;
 
 Poles exact_poles(const Drude& d) { return {{d.cutoff, 0.5 * d.eta * d.cutoff * d.cutoff}}; }
 
@@ -49,24 +48,28 @@ double matsubara_index(const Poles& poles, double theta) {
 /// Cubic interpolation at the middle of four densities at distances -2, -1, 1, 2 steps.
 template <class Density>
 Poles interpolated(Density density, double Density::*parameter, double step) {
-  constexpr std::array<std::pair<double, double>, 4> kWeights = {{{-2.0, -1.0 / 6.0}, {-1.0, 2.0 / 3.0}, {1.0, 2.0 / 3.0}, {2.0, -1.0 / 6.0}}};
+  constexpr double kOuter = -1.0 / 6.0;
+  constexpr double kInner = 2.0 / 3.0;
   const double middle = density.*parameter;
   Poles all;
-  for (const auto& [steps, weight] : kWeights) {
+  for (const double steps : {-2.0, -1.0, 1.0, 2.0}) {
+    const double weight = std::abs(steps) > 1.0 ? kOuter : kInner;
     density.*parameter = middle * (1.0 + steps * step);
     for (const DensityPole& pole : exact_poles(density)) all.push_back({pole.rate, weight * pole.residue});
   }
   return all;
 }
 
-/// c_p = -2 pi i r / (1 - exp(i nu/theta)), written so that nothing overflows.
-Complex pole_amplitude(const DensityPole& pole, double theta) {
-  const Complex exponent = kI * pole.rate / theta;
-  if (exponent.real() > 0.0) {
-    const Complex decay = std::exp(-exponent);
-    return 2.0 * kPi * kI * pole.residue * decay / (1.0 - decay);
-  }
-  return -2.0 * kPi * kI * pole.residue / (1.0 - std::exp(exponent));
+/// c_p = -2 pi i r / (1 - exp(i nu/theta)) with nu/theta = 2 pi a. Written so that nothing
+/// overflows, and so that its pole at a whole number cancels that of the Matsubara sum, which
+/// is a function of the same rounded a.
+Complex pole_amplitude(const DensityPole& pole, Complex a) {
+  const Complex reduced = kPi * (a - std::round(a.real()));
+  if (std::abs(reduced.imag()) < 1.0) return kPi * pole.residue * std::exp(-kI * reduced) / std::sin(reduced);
+  const Complex exponent = 2.0 * kI * reduced;
+  if (exponent.real() < 0.0) return -2.0 * kPi * kI * pole.residue / (1.0 - std::exp(exponent));
+  const Complex decay = std::exp(-exponent);
+  return 2.0 * kPi * kI * pole.residue * decay / (1.0 - decay);
 }
 
 Complex residue_sum(const Poles& poles, double& size) {
@@ -129,7 +132,7 @@ Complex rational_correlation(const Poles& poles, double theta, double t) {
   Complex sum = 0.0;
   for (const DensityPole& pole : poles) {
     const Complex a = pole.rate / first;
-    sum += pole_amplitude(pole, theta) * std::exp(-pole.rate * t);
+    sum += pole_amplitude(pole, a) * std::exp(-pole.rate * t);
     sum += pole.residue * (lerch_sum(first * t, -a) + lerch_sum(first * t, a));
   }
   return sum;
@@ -146,7 +149,7 @@ Complex rational_transform(const Poles& poles, double theta, double w) {
     // sum over k of 1/((k + v)(k + y)) = [psi(1 + v) - psi(1 + y)]/(v - y)
     const Complex lower = (digamma(1.0 - a) - psi_w) / (-a - y);
     const Complex upper = (digamma(1.0 + a) - psi_w) / (a - y);
-    sum += pole_amplitude(pole, theta) / (pole.rate - kI * w) + pole.residue / first * (lower + upper);
+    sum += pole_amplitude(pole, a) / (pole.rate - kI * w) + pole.residue / first * (lower + upper);
   }
   return sum;
 }

@@ -107,12 +107,9 @@ ShiftTable::ShiftTable(ShiftFunction shift, double w_max, double tolerance)
   // logarithm at a panel's end; so the table is made finer than asked, then checked.
   constexpr double kMargin = 0.05;
   constexpr int kAttempts = 3;
-  const double allowed = tolerance * shift_.scale();
-  double aim = kMargin * allowed;
-  for (int attempt = 0; attempt < kAttempts; ++attempt, aim *= kMargin) {
-    build(aim);
-    if (error_ <= allowed) return;
-  }
+  double aim = kMargin * tolerance;
+  for (int attempt = 0; attempt < kAttempts; ++attempt, aim *= kMargin)
+    if (build(aim) <= tolerance) return;
 }
 
 double ShiftTable::singular_part(double w) const {
@@ -133,28 +130,38 @@ double ShiftTable::singular_part(double w) const {
   return sum == 0.0 ? 0.0 : sum * occupation_factor(w, shift_.theta());
 }
 
-void ShiftTable::build(double absolute_tolerance) {
+double ShiftTable::build(double tolerance) {
   const BatchFunction values = [this](std::span<const double> w, double* s) {
     for (std::size_t i = 0; i < w.size(); ++i) s[i] = shift_.at(w[i]) - singular_part(w[i]);
   };
-  series_ = PanelSeries::expand(values, edges_, {0.0, absolute_tolerance});
-  error_ = largest_error();
+  series_ = PanelSeries::expand(values, edges_, {tolerance, tolerance * shift_.scale()});
   evaluations_ += series_.evaluations() + kCheckPlaces.size() * series_.panel_count();
+  return check();
 }
 
-double ShiftTable::largest_error() const {
+double ShiftTable::check() {
   const std::vector<double> edges = series_.edges();
-  double error = 0.0;
-  for (std::size_t i = 0; i + 1 < edges.size(); ++i)
+  double relative = 0.0;
+  error_ = 0.0;
+  for (std::size_t i = 0; i + 1 < edges.size(); ++i) {
+    double size = shift_.scale();
+    double error = 0.0;
     for (const double place : kCheckPlaces) {
       const double w = (1.0 - place) * edges[i] + place * edges[i + 1];
-      error = std::max(error, std::abs(series_.value(w) + singular_part(w) - shift_.at(w)));
+      const double exact = shift_.at(w);
+      size = std::max(size, std::abs(exact));
+      error = std::max(error, std::abs(series_.value(w) + singular_part(w) - exact));
     }
-  return error;
+    error_ = std::max(error_, error);
+    if (error > 0.0) relative = std::max(relative, error / size);
+  }
+  return relative;
 }
 
 ArrayXd ShiftTable::operator()(const Eigen::Ref<const ArrayXd>& w) const {
-  return w.unaryExpr([this](double x) { return std::abs(x) <= w_max_ ? series_.value(x) + singular_part(x) : shift_.at(x); });
+  return w.unaryExpr([this](double x) {
+    return std::abs(x) <= w_max_ ? series_.value(x) + singular_part(x) : shift_.at(x);
+  });
 }
 
 }  // namespace tarn::runtime

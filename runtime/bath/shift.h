@@ -23,7 +23,7 @@ struct DensityKink {
 /// S(w) of a bath, one component at a time:
 /// power law: half-range transform of C along arg t = pi/4 (Ohmic at theta = 0: Ei);
 /// Drude, peaks: digamma functions of their poles; tables, functions: Legendre panels of J.
-/// |error| below 1e-11 lambda (closed forms: 1e-12), except within rounding of a jump of J,
+/// |error| below 1e-11 (lambda + gamma + |S|), for closed forms 1e-12, except within rounding of a jump of J,
 /// where S itself is infinite. Cost 1 to 100 us a value; for many w use ShiftTable.
 class ShiftFunction {
  public:
@@ -51,7 +51,8 @@ class ShiftFunction {
 /// rows of a tabulated J the logarithms of those two rows are kept apart, exactly.
 class ShiftTable {
  public:
-  /// w_max > 0 [rad/ns]; tolerance relative to lambda. Costs a few thousand values of S for
+  /// w_max > 0 [rad/ns]; tolerance relative to the larger of lambda and the largest |S| on a
+  /// polynomial's own panel (a narrow peak makes |S| large, and its rounding with it). Costs a few thousand values of S for
   /// smooth baths, about 50 more for each row of a table, 1000 for each break of a function.
   ShiftTable(ShiftFunction shift, double w_max, double tolerance = 1e-10);
 
@@ -60,7 +61,7 @@ class ShiftTable {
   Eigen::ArrayXd operator()(const Eigen::Ref<const Eigen::ArrayXd>& w) const;
 
   /// The largest error found at three points of each panel, both ends among them, that the
-  /// table was not made from [rad/ns]: above tolerance * lambda only next to a point where S
+  /// table was not made from [rad/ns]. It misses the tolerance only next to a point where S
   /// is infinite.
   double error() const { return error_; }
   /// Values of S that were computed to make the table.
@@ -69,8 +70,10 @@ class ShiftTable {
  private:
   /// The logarithms kept apart at w.
   double singular_part(double w) const;
-  void build(double absolute_tolerance);
-  double largest_error() const;
+  /// Makes the series; returns what check() does.
+  double build(double tolerance);
+  /// Sets error_; returns the largest error relative to the scale of its panel.
+  double check();
 
   ShiftFunction shift_;
   double w_max_;

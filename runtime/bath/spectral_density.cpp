@@ -145,22 +145,26 @@ Fault table_fault(std::size_t row, const Tabulated& table) {
     return BathError{BathErrorCode::bad_table, row, name, value, range};
   };
   if (table.w.size() < 2) return bad("rows", static_cast<double>(table.w.size()), ">= 2");
-  if (table.w.size() != table.j.size()) return bad("rows of j", static_cast<double>(table.j.size()), "as many as rows of w");
+  if (table.w.size() != table.j.size())
+    return bad("rows of j", static_cast<double>(table.j.size()), "as many as rows of w");
   const bool logarithmic = table.interpolation == Interpolation::log_log;
+  const std::string_view range = logarithmic ? "> 0" : ">= 0";
+  const auto outside = [logarithmic](double x) { return !std::isfinite(x) || (logarithmic ? x <= 0.0 : x < 0.0); };
   for (std::size_t i = 0; i < table.w.size(); ++i) {
     const double w = table.w[i];
     const double j = table.j[i];
-    if (!std::isfinite(w) || (logarithmic ? w <= 0.0 : w < 0.0)) return bad("w", w, logarithmic ? "> 0" : ">= 0");
+    if (outside(w)) return bad("w", w, range);
     if (i > 0 && w <= table.w[i - 1]) return bad("w", w, "strictly ascending");
     if (w == 0.0 && j != 0.0) return bad("j at w = 0", j, "0 (or start the table above w = 0)");
-    if (!std::isfinite(j) || (logarithmic ? j <= 0.0 : j < 0.0)) return bad("j", j, logarithmic ? "> 0" : ">= 0");
+    if (outside(j)) return bad("j", j, range);
   }
   return std::nullopt;
 }
 
 Fault sampled_fault(std::size_t row, const Sampled& sampled) {
   if (auto fault = not_negative(row, "low", sampled.low)) return fault;
-  if (!(sampled.high > sampled.low)) return BathError{BathErrorCode::out_of_range, row, "high", sampled.high, "> low"};
+  if (!(sampled.high > sampled.low))
+    return BathError{BathErrorCode::out_of_range, row, "high", sampled.high, "> low"};
   const Scan s = scan(sampled);
   for (Index i = 0; i < s.w.size(); ++i)
     if (!(s.j[i] >= 0.0) || !std::isfinite(s.j[i]))
@@ -200,17 +204,22 @@ Fault component_fault(std::size_t row, const Component& component) {
 }  // namespace
 
 std::string to_text(const BathError& e) {
+  const std::size_t part = e.component + 1;
   switch (e.code) {
     case BathErrorCode::out_of_range:
-      return fmt::format("`{}` of part {} of the bath is {:g}; give a value {}", e.parameter, e.component + 1, e.value, e.range);
+      return fmt::format("`{}` of part {} of the bath is {:g}; give a value {}", e.parameter, part, e.value, e.range);
     case BathErrorCode::bad_table:
-      return fmt::format("the table of part {} of the bath has {} = {:g}; it must be {}", e.component + 1, e.parameter, e.value, e.range);
+      return fmt::format("the table of part {} of the bath has {} = {:g}; it must be {}", part, e.parameter, e.value,
+                         e.range);
     case BathErrorCode::negative_density:
-      return fmt::format("the density of part {} of the bath is negative or not a number at {:g} rad/ns; limit its band or correct it", e.component + 1, e.value);
+      return fmt::format("the density of part {} of the bath is negative or not a number at {:g} rad/ns; limit its band "
+                         "or correct it", part, e.value);
     case BathErrorCode::zero_rate_diverges:
-      return fmt::format("part {} of the bath has an infinite rate at zero frequency ({} = {:g}); use slow-noise rates, or a band with a low end above zero", e.component + 1, e.parameter, e.value);
+      return fmt::format("part {} of the bath has an infinite rate at zero frequency ({} = {:g}); use slow-noise rates, "
+                         "or a band with a low end above zero", part, e.parameter, e.value);
     case BathErrorCode::times_diverge:
-      return fmt::format("the correlation function of part {} of the bath falls too slowly for a correlation time; smooth the edge of its band, or use slow-noise rates", e.component + 1);
+      return fmt::format("the correlation function of part {} of the bath falls too slowly for a correlation time; "
+                         "smooth the edge of its band, or use slow-noise rates", part);
   }
   return {};
 }
@@ -253,7 +262,10 @@ ArrayXd spectral_density(const Component& component, const ArrayRef& w) {
 
 Support support(const Component& component) {
   return std::visit(Overloaded{
-                        [](const PowerLaw& c) { return Support{0.0, 60.0 * c.cutoff * (1.0 + c.s), c.cutoff * (1.0 + c.s)}; },
+                        [](const PowerLaw& c) {
+                          const double scale = c.cutoff * (1.0 + c.s);
+                          return Support{0.0, 60.0 * scale, scale};
+                        },
                         [](const Drude& c) { return Support{0.0, kInfinity, c.cutoff}; },
                         [](const LorentzianPeak& c) { return Support{0.0, kInfinity, c.centre + c.width}; },
                         [](const Tabulated& c) { return Support{c.w.front(), c.w.back(), c.w.back()}; },

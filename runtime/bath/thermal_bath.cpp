@@ -36,13 +36,17 @@ ArrayXd downward_rate(const Component& component, double theta, const ArrayXd& s
 }  // namespace
 
 ThermalBath::ThermalBath(SpectralDensity density, double theta) : density_(std::move(density)), theta_(theta) {
-  for (const Component& component : density_)
-    panels_.push_back(has_closed_forms(component) ? nullptr : std::make_shared<const DensityPanels>(expand_density(component, theta)));
+  for (const Component& component : density_) {
+    std::shared_ptr<const DensityPanels> panels;
+    if (!has_closed_forms(component)) panels = std::make_shared<const DensityPanels>(expand_density(component, theta));
+    panels_.push_back(std::move(panels));
+  }
 }
 
 Result<ThermalBath, BathError> ThermalBath::make(SpectralDensity density, double theta) {
   if (auto fault = find_fault(density)) return Unexpected{*fault};
-  if (!std::isfinite(theta) || theta < 0.0) return Unexpected{BathError{BathErrorCode::out_of_range, 0, "temperature", theta, ">= 0"}};
+  if (!std::isfinite(theta) || theta < 0.0)
+    return Unexpected{BathError{BathErrorCode::out_of_range, 0, "temperature", theta, ">= 0"}};
   return ThermalBath(std::move(density), theta);
 }
 
@@ -67,7 +71,9 @@ Result<double, BathError> ThermalBath::zero_rate() const {
     const double rate = downward_rate(density_[row], theta_, zero)[0];
     if (!std::isfinite(rate)) {
       const auto* law = std::get_if<PowerLaw>(&density_[row]);
-      return Unexpected{BathError{BathErrorCode::zero_rate_diverges, row, law ? "s" : "j/w at w = 0", law ? law->s : rate, ">= 1"}};
+      const BathError slope{BathErrorCode::zero_rate_diverges, row, "j/w at w = 0", rate, "finite"};
+      const BathError exponent{BathErrorCode::zero_rate_diverges, row, "s", law ? law->s : 0.0, ">= 1"};
+      return Unexpected{law ? exponent : slope};
     }
     sum += rate;
   }

@@ -53,6 +53,17 @@ TEST_CASE("the Fourier transform keeps its absolute accuracy at any time") {
   CHECK(series.integral() == Approx(1.0).epsilon(1e-14));
 }
 
+TEST_CASE("noise in the function ends the bisection, and the error tells of it") {
+  const BatchFunction noisy = [](std::span<const double> x, double* y) {
+    for (std::size_t i = 0; i < x.size(); ++i) y[i] = 1.0 + 1e-6 * std::sin(1e9 * x[i] * x[i]);
+  };
+  const std::vector<double> breaks = {0.0, 1.0};
+  const PanelSeries series = PanelSeries::expand(noisy, breaks, {1e-12, 1e-12});
+  CHECK(series.evaluations() < 40000);
+  CHECK(series.error() > 1e-8);
+  CHECK(series.integral() == Approx(1.0).epsilon(1e-6));
+}
+
 TEST_CASE("a singular end is bisected until it is negligible, and the error is told") {
   const PanelSeries root = expand([](double y) { return std::sqrt(y); }, {0.0, 1.0});
   CHECK(root.integral() == Approx(2.0 / 3).epsilon(1e-13));
