@@ -177,6 +177,7 @@ struct Instance {
   std::vector<double> scan;              ///< s values; empty without `scan`.
   double tolerance = 1e-6;
   std::vector<std::string> remarks;
+  std::vector<std::string> counts;       ///< Names of the parameters that are counts and shaped it.
 };
 
 }  // namespace tarn

@@ -1,0 +1,57 @@
+#pragma once
+/// \file Experiments with their counts fixed.
+
+#include <optional>
+#include <vector>
+
+#include "lang/check/chip.h"
+#include "lang/check/readings.h"
+
+namespace tarn {
+
+/// The statements of an experiment by kind. A second one of those that stand once is reported.
+struct Statements {
+  const ast::ChipUse* chip = nullptr;
+  const ast::Begin* begin = nullptr;
+  const ast::Pace* pace = nullptr;
+  const ast::Equation* equation = nullptr;
+  const ast::Levels* levels = nullptr;
+  const ast::Scan* scan = nullptr;
+  const ast::Tolerance* tolerance = nullptr;
+  std::vector<const ast::Let*> lets;
+  std::vector<const ast::Observe*> observes;
+  std::vector<const ast::Sweep*> sweeps;
+  std::vector<const ast::Expect*> expects;
+};
+Statements sort_statements(Session& session, const ast::Experiment& experiment);
+
+/// A swept parameter: its values in internal units.
+struct SweptColumn {
+  std::uint32_t parameter = 0;  ///< Row of Program::parameters.
+  std::vector<double> values;
+  Span span;
+};
+using SweptAxis = std::vector<SweptColumn>;
+
+/// The axes of the grid, the first slowest; reports what is no parameter, not constant or out of range.
+std::vector<SweptAxis> elaborate_sweeps(Session& session, const Scope& scope, const Statements& statements);
+
+/// s values of `scan s over ...`.
+std::vector<double> elaborate_scan(Session& session, const Scope& scope, const ast::Scan& scan);
+
+// Each fills its part of the instance.
+void elaborate_begin(Session& session, const Scope& scope, const ast::Begin& begin, Instance& instance);
+void elaborate_pace(Session& session, const Scope& scope, const ast::Pace& pace, Instance& instance);
+void elaborate_equation(Session& session, const Scope& scope, const Statements& statements, Instance& instance);
+void elaborate_observables(Session& session, Scope& scope, const Statements& statements, Readings& readings, Instance& instance);
+void elaborate_claims(Session& session, Scope& scope, const Statements& statements, Readings& readings, Instance& instance);
+
+/// What can only be judged of the whole: statements that are missing, `target`, the memory.
+void check_whole(Session& session, const Statements& statements, const Readings& readings, Instance& instance);
+
+/// Parameters that change an answer: rows of Instance::parameters.
+std::vector<std::uint32_t> live_parameters(const Instance& instance);
+
+Shown shown_unit(Dimension dimension);
+
+}  // namespace tarn

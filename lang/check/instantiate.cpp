@@ -1,0 +1,231 @@
+#include <algorithm>
+#include <cmath>
+
+#include "lang/check/arguments.h"
+#include "lang/check/experiment.h"
+#include "lang/check/expression.h"
+#include "lang/check/instantiate.h"
+#include "lang/check/path.h"
+#include "lang/program/operators.h"
+
+namespace tarn {
+namespace {
+
+constexpr std::uint64_t kMaxPoints = 1'000'000;
+constexpr std::uint64_t kMaxInstances = 256;
+
+template <class Statement>
+void take_once(Session& session, const Statement*& slot, const Statement& statement, std::string_view word) {
+  if (slot != nullptr) {
+    session.report(statement.span, diag::statement_twice, std::string(word)).note(slot->span, "first here");
+    return;
+  }
+  slot = &statement;
+}
+
+void refuse(Session& session, Span span, std::string_view word, std::string_view now) {
+  session.report(span, diag::not_available, fmt::format("`{}`", word), std::string(now));
+}
+
+std::string_view word_of(ast::DrawKind kind) {
+  if (kind == ast::DrawKind::trajectories) return "trajectories";
+  return kind == ast::DrawKind::ensemble ? "ensemble" : "freeze";
+}
+
+struct Sorter {
+  Session& session;
+  Statements result{};
+
+  void operator()(const ast::Let& let) { result.lets.push_back(&let); }
+  void operator()(const ast::ChipUse& chip) { take_once(session, result.chip, chip, "chip"); }
+  void operator()(const ast::Begin& begin) { take_once(session, result.begin, begin, "begin"); }
+  void operator()(const ast::Pace& pace) { take_once(session, result.pace, pace, "pace"); }
+  void operator()(const ast::Equation& equation) { take_once(session, result.equation, equation, "equation"); }
+  void operator()(const ast::Levels& levels) { take_once(session, result.levels, levels, "levels"); }
+  void operator()(const ast::Scan& scan) { take_once(session, result.scan, scan, "scan"); }
+  void operator()(const ast::Tolerance& tolerance) { take_once(session, result.tolerance, tolerance, "tolerance"); }
+  void operator()(const ast::Observe& observe) { result.observes.push_back(&observe); }
+  void operator()(const ast::Sweep& sweep) { result.sweeps.push_back(&sweep); }
+  void operator()(const ast::Expect& expect) { result.expects.push_back(&expect); }
+  void operator()(const ast::Draws& draws) { refuse(session, draws.span, word_of(draws.kind), "a density matrix or one state, and `sweep`"); }
+  void operator()(const ast::Data& data) { refuse(session, data.span, "data", "`sweep` and `expect`"); }
+  void operator()(const ast::Compare& compare) { refuse(session, compare.span, "compare", "`sweep` and `expect`"); }
+  void operator()(const ast::Fit& fit) { refuse(session, fit.span, "fit", "`sweep` and `expect`"); }
+};
+
+/// The experiment's chip, unrolled into the instance.
+void elaborate_chip_use(Session& session, const Scope& scope, const ast::ChipUse& use, Unrolled& unrolled, Instance& instance) {
+  const auto chip = resolve_callable(session, scope, use.chip, {CallableKind::chip}, "a chip");
+  if (!chip) return;
+  instance.chip = callable_name(*chip);
+  unroll_chip(session, *chip, "", unrolled, use.chip.span);
+  instance.qubits = unrolled.qubits;
+}
+
+void finish_chip(const Unrolled& unrolled, Instance& instance) {
+  const auto qubits = static_cast<std::uint32_t>(unrolled.qubits.size());
+  instance.energy = unrolled.energy;
+  instance.noise = unrolled.noise;
+  instance.jumps = unrolled.jumps;
+  instance.baths = unrolled.baths;
+  for (EnergyTerm& term : instance.energy) term.op = most_significant_first(std::move(term.op), qubits);
+  for (NoiseTerm& term : instance.noise) term.op = most_significant_first(std::move(term.op), qubits);
+  for (JumpTerm& term : instance.jumps) term.op = most_significant_first(std::move(term.op), qubits);
+}
+
+void elaborate_tolerance(Session& session, const Scope& scope, const ast::Tolerance& tolerance, Instance& instance) {
+  const auto value = evaluate_constant(session, scope, tolerance.value, kNumber);
+  if (!value) return;
+  if (*value > 0 && *value < 1) {
+    instance.tolerance = *value;
+    return;
+  }
+  session.report(span_of(session, scope, tolerance.value), diag::tolerance_range, *value);
+}
+
+Scope experiment_scope(Session& session, const Statements& statements, const Site& site) {
+  Scope scope{nullptr, 0, &site, {}};
+  for (const ast::Let* let : statements.lets) declare_let(session, scope, *let);
+  return scope;
+}
+
+const ast::Experiment& experiment_of(const Program& program, std::uint32_t experiment) {
+  return std::get<ast::Experiment>(program.ast(0).items[program.experiments[experiment].item]);
+}
+
+Instance elaborate(Session& session, const Statements& statements, const ProgramExperiment& experiment) {
+  Instance instance;
+  instance.experiment = experiment.name;
+  instance.span = experiment.span;
+  Unrolled unrolled;
+  const ChipFrame frame{"", &unrolled, {}};
+  Site site{.where = "in an experiment"};
+  site.operators = true;
+  site.chip = &frame;
+  Scope scope = experiment_scope(session, statements, site);
+  elaborate_chip_use(session, scope, *statements.chip, unrolled, instance);
+  for (const ast::Let* let : statements.lets) look_up(session, scope, let->name);
+  if (unrolled.qubits.empty() && session.diagnostics.has_errors()) return instance;
+  finish_chip(unrolled, instance);
+  if (statements.begin != nullptr) elaborate_begin(session, scope, *statements.begin, instance);
+  if (statements.pace != nullptr) elaborate_pace(session, scope, *statements.pace, instance);
+  if (statements.scan != nullptr) instance.scan = elaborate_scan(session, scope, *statements.scan);
+  elaborate_equation(session, scope, statements, instance);
+  if (statements.tolerance != nullptr) elaborate_tolerance(session, scope, *statements.tolerance, instance);
+  Readings readings{&unrolled, &instance.readings, &instance.observables};
+  readings.scans = statements.scan != nullptr;
+  elaborate_observables(session, scope, statements, readings, instance);
+  elaborate_claims(session, scope, statements, readings, instance);
+  check_whole(session, statements, readings, instance);
+  return instance;
+}
+
+/// Rows of Instance::parameters for the axes; a swept parameter that changes nothing is an error.
+void attach_axes(Session& session, const std::vector<SweptAxis>& axes, Instance& instance) {
+  const auto live = live_parameters(instance);
+  for (const SweptAxis& axis : axes) {
+    AxisI made;
+    for (const SweptColumn& column : axis) {
+      const ProgramParameter& parameter = session.program.parameters[column.parameter];
+      AxisColumnI one{parameter.name, std::nullopt, parameter.unit, column.values};
+      const auto row = session.parameter_rows.find(column.parameter);
+      if (row != session.parameter_rows.end()) one.index = row->second;
+      const bool used = parameter.count ? session.counts_used.contains(parameter.name)
+                                        : one.index && std::binary_search(live.begin(), live.end(), *one.index);
+      if (!used) session.report(column.span, diag::changes_nothing, parameter.name).note(parameter.span, "declared here");
+      made.columns.push_back(std::move(one));
+    }
+    instance.axes.push_back(std::move(made));
+  }
+}
+
+void report_missing_values(Session& session, const Instance& instance) {
+  for (const ParameterUse& use : session.parameters) {
+    if (std::isnan(use.value)) session.report(instance.span, diag::no_value, use.name).note(use.span, "declared here");
+  }
+}
+
+/// Values of the swept counts at a grid index, and of swept parameters that have no default.
+Overrides at_point(const Program& program, const std::vector<SweptAxis>& axes, std::uint64_t point, bool counts) {
+  Overrides values;
+  for (auto axis = axes.rbegin(); axis != axes.rend(); ++axis) {
+    const std::uint64_t size = axis->front().values.size();
+    for (const SweptColumn& column : *axis) {
+      const ProgramParameter& parameter = program.parameters[column.parameter];
+      if (parameter.count == counts) values[parameter.name] = column.values[point % size];
+    }
+    point /= size;
+  }
+  return values;
+}
+
+}  // namespace
+
+Statements sort_statements(Session& session, const ast::Experiment& experiment) {
+  Sorter sorter{session};
+  for (const ast::Statement& statement : experiment.statements) std::visit(sorter, statement);
+  if (sorter.result.chip == nullptr) session.report(experiment.name.span, diag::statement_missing, "chip");
+  return sorter.result;
+}
+
+std::vector<Instance> elaborate_experiment(const Program& program, std::uint32_t experiment, const Overrides& overrides,
+                                           std::uint64_t& steps, Diagnostics& diagnostics) {
+  const std::size_t errors = diagnostics.error_count();
+  Graph scratch;
+  Session reading{program, scratch, diagnostics, overrides};
+  reading.steps = steps;
+  const Statements statements = sort_statements(reading, experiment_of(program, experiment));
+  const Site site{.where = "in an experiment"};
+  reading.constants_only = true;
+  const Scope scope = experiment_scope(reading, statements, site);
+  const auto axes = elaborate_sweeps(reading, scope, statements);
+  steps = reading.steps;
+  if (statements.chip == nullptr) return {};
+  std::uint64_t points = 1;
+  for (const SweptAxis& axis : axes) {
+    points *= axis.front().values.size();
+    if (points > kMaxPoints) {
+      diagnostics.report(statements.sweeps.front()->span, diag::grid_too_large, kMaxPoints);
+      return {};
+    }
+  }
+  std::map<Overrides, std::vector<std::uint64_t>> groups;
+  std::vector<Overrides> order;
+  for (std::uint64_t point = 0; point < points; ++point) {
+    const Overrides counts = at_point(program, axes, point, true);
+    auto& members = groups[counts];
+    if (members.empty()) order.push_back(counts);
+    members.push_back(point);
+    if (order.size() > kMaxInstances) {
+      diagnostics.report(statements.sweeps.front()->span, diag::grid_too_large, kMaxInstances);
+      return {};
+    }
+  }
+  std::vector<Instance> result;
+  for (const Overrides& counts : order) {
+    Overrides all = at_point(program, axes, 0, false);
+    for (const ProgramParameter& parameter : program.parameters) {
+      if (parameter.value) all.erase(parameter.name);
+    }
+    all.insert(overrides.begin(), overrides.end());
+    for (const auto& [name, value] : counts) all.insert_or_assign(name, value);
+    Graph graph;
+    Session session{program, graph, diagnostics, all};
+    session.steps = steps;
+    Instance instance = elaborate(session, statements, program.experiments[experiment]);
+    instance.graph = graph;
+    attach_axes(session, axes, instance);
+    if (!session.exhausted) report_missing_values(session, instance);
+    instance.parameters = session.parameters;
+    instance.points = groups[counts];
+    instance.remarks = session.remarks;
+    instance.counts.assign(session.counts_used.begin(), session.counts_used.end());
+    steps = session.steps;
+    result.push_back(std::move(instance));
+    if (session.exhausted) break;
+  }
+  if (diagnostics.error_count() != errors) result.clear();
+  return result;
+}
+
+}  // namespace tarn

@@ -1,0 +1,94 @@
+#include <algorithm>
+#include <cmath>
+
+#include "lang/check/arguments.h"
+#include "lang/check/check.h"
+#include "lang/check/experiment.h"
+#include "lang/check/expression.h"
+#include "lang/syntax/parse.h"
+
+namespace tarn {
+namespace {
+
+/// The text of one `--set` as a module of its own: `let value = TEXT`.
+std::optional<std::uint32_t> add_setting(Program& program, const std::string& name, const std::string& text, Diagnostics& diagnostics) {
+  const SourceFile& file = program.loaded->sources.add(fmt::format("--set {}", name), fmt::format("let value = {}", text));
+  const std::size_t errors = diagnostics.error_count();
+  Module module;
+  module.ast = parse(file, diagnostics);
+  if (diagnostics.error_count() != errors) return std::nullopt;
+  if (module.ast.items.size() != 1 || !std::holds_alternative<ast::Let>(module.ast.items.front())) {
+    diagnostics.report({file.id, 12, static_cast<std::uint32_t>(file.text.size())}, diag::setting_form, name);
+    return std::nullopt;
+  }
+  program.loaded->modules.push_back(std::move(module));
+  program.modules.emplace_back();
+  return static_cast<std::uint32_t>(program.modules.size() - 1);
+}
+
+const ProgramParameter* find_parameter(const Program& program, const std::string& name, Diagnostics& diagnostics) {
+  std::vector<std::string> known;
+  for (const ProgramParameter& parameter : program.parameters) {
+    if (parameter.name == name) return &parameter;
+    known.push_back(parameter.name);
+  }
+  const std::string near = nearest(name, known);
+  auto tail = diagnostics.report({program.ast(0).file, 0, 0}, diag::unknown_parameter, name);
+  if (!near.empty()) tail.remedy(fmt::format("did you mean `{}`?", near));
+  return nullptr;
+}
+
+std::optional<double> read_setting(Program& program, const ProgramParameter& parameter, const std::string& text, Diagnostics& diagnostics) {
+  const auto module = add_setting(program, parameter.name, text, diagnostics);
+  if (!module) return std::nullopt;
+  const Overrides none;
+  Graph graph;
+  Session session{program, graph, diagnostics, none};
+  session.constants_only = true;
+  const Scope scope{nullptr, *module, nullptr, {}};
+  const ast::ExprId id = std::get<ast::Let>(program.ast(*module).items.front()).value;
+  std::optional<double> value;
+  if (parameter.count) {
+    const auto count = evaluate_count(session, scope, id);
+    if (count) value = static_cast<double>(*count);
+  } else {
+    value = evaluate_constant(session, scope, id, parameter.dimension);
+  }
+  const bool below = value && parameter.lowest && *value < *parameter.lowest;
+  const bool above = value && parameter.highest && *value > *parameter.highest;
+  if (!below && !above) return value;
+  session.report(span_of(session, scope, id), diag::out_of_range, parameter.name, format_quantity(*value, parameter.dimension),
+                 format_quantity(parameter.lowest.value_or(-INFINITY), parameter.dimension),
+                 format_quantity(parameter.highest.value_or(INFINITY), parameter.dimension))
+      .note(parameter.span, "declared here");
+  return std::nullopt;
+}
+
+}  // namespace
+
+Overrides read_overrides(Program& program, const std::vector<std::pair<std::string, std::string>>& settings, Diagnostics& diagnostics) {
+  Overrides result;
+  for (const auto& [name, text] : settings) {
+    const ProgramParameter* found = find_parameter(program, name, diagnostics);
+    if (found == nullptr) continue;
+    const ProgramParameter parameter = *found;
+    const auto value = read_setting(program, parameter, text, diagnostics);
+    if (value) result[name] = *value;
+  }
+  return result;
+}
+
+void check_overrides_used(const Program& program, const std::vector<Instance>& all, const Overrides& overrides, Diagnostics& diagnostics) {
+  for (const auto& [name, value] : overrides) {
+    const bool used = std::any_of(all.begin(), all.end(), [&, &parameter = name](const Instance& instance) {
+      if (std::find(instance.counts.begin(), instance.counts.end(), parameter) != instance.counts.end()) return true;
+      const auto live = live_parameters(instance);
+      return std::any_of(live.begin(), live.end(), [&](std::uint32_t row) { return instance.parameters[row].name == parameter; });
+    });
+    const auto declared = std::find_if(program.parameters.begin(), program.parameters.end(),
+                                       [&, &parameter = name](const ProgramParameter& p) { return p.name == parameter; });
+    if (!used && declared != program.parameters.end()) diagnostics.report(declared->span, diag::changes_nothing, name);
+  }
+}
+
+}  // namespace tarn

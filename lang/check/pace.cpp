@@ -1,0 +1,183 @@
+#include <algorithm>
+#include <cmath>
+#include <numeric>
+
+#include "lang/check/experiment.h"
+#include "lang/check/expression.h"
+#include "lang/check/samples.h"
+#include "lang/check/tables.h"
+
+namespace tarn {
+namespace {
+
+constexpr std::string_view kBegins = "`begin` available: ground, thermal, thermal(T), plus, state(\"01+-\"), populations(...)";
+constexpr std::string_view kEquations = "equations available: schroedinger, lindblad, davies";
+
+std::optional<BeginI> begin_populations(Session& session, const Scope& scope, const ast::Path& path, std::size_t qubits) {
+  BeginPopulationsI begin;
+  double total = 0;
+  for (const ast::Given& given : path.given) {
+    const auto weight = evaluate_quantity(session, scope, given.value, kNumber);
+    if (!weight) return std::nullopt;
+    begin.weights.push_back(*weight);
+    const double value = value_at_defaults(session, *weight).value_or(NAN);
+    if (value < 0) session.report(given.span, diag::negative_population, value);
+    total += value;
+  }
+  const bool too_many = qubits < 32 && begin.weights.size() > (std::size_t{1} << qubits);
+  if (too_many) session.report(path.span, diag::unknown_level, static_cast<std::int64_t>(begin.weights.size() - 1), std::exp2(qubits));
+  if (begin.weights.empty() || std::abs(total - 1) > 1e-9) session.report(path.span, diag::populations_sum, total);
+  return begin;
+}
+
+std::optional<BeginI> begin_of(Session& session, const Scope& scope, const ast::Path& path, std::size_t qubits) {
+  const std::string& word = path.steps.front().name.text;
+  if (word == "ground" && !path.call) return BeginGroundI{};
+  if (word == "plus" && !path.call) return BeginPlusI{};
+  if (word == "thermal" && path.given.empty()) return BeginThermalI{};
+  if (word == "thermal" && path.given.size() == 1) {
+    const auto temperature = evaluate_quantity(session, scope, path.given.front().value, kTemperature);
+    if (!temperature) return std::nullopt;
+    const auto value = value_at_defaults(session, *temperature);
+    if (value && !(*value > 0)) {
+      session.report(path.given.front().span, diag::not_positive, "a temperature", format_quantity(*value, kTemperature));
+    }
+    return BeginThermalI{*temperature};
+  }
+  if (word == "state" && path.call) {
+    const auto letters = state_letters(session, scope, path, qubits, "01+-");
+    return letters ? std::optional<BeginI>(BeginStateI{*letters}) : std::nullopt;
+  }
+  if (word == "populations" && path.call) return begin_populations(session, scope, path, qubits);
+  session.report(path.span, diag::not_available, fmt::format("`begin {}`", excerpt(session, path.span)), std::string(kBegins));
+  return std::nullopt;
+}
+
+class PaceReader {
+ public:
+  PaceReader(Session& session, const Scope& scope, Instance& instance)
+      : session_(session), scope_(scope), instance_(instance) {}
+
+  void read(const ast::Piece& piece, bool first) {
+    const auto& kind = piece.piece;
+    if (const auto* start = std::get_if<ast::StartPiece>(&kind)) {
+      if (!first) session_.report(piece.span, diag::start_first);
+      if (const auto s = position(start->s)) instance_.pace.push_back(PaceStartI{*s});
+    }
+    if (const auto* ramp = std::get_if<ast::RampPiece>(&kind)) {
+      const auto to = position(ramp->s);
+      const auto over = duration(ramp->duration);
+      if (to && over) instance_.pace.push_back(PaceRampI{*to, *over});
+    }
+    if (const auto* hold = std::get_if<ast::HoldPiece>(&kind)) {
+      if (const auto time = duration(hold->duration)) instance_.pace.push_back(PaceHoldI{*time});
+    }
+    if (const auto* step = std::get_if<ast::StepPiece>(&kind)) {
+      if (const auto to = position(step->s)) instance_.pace.push_back(PaceStepI{*to});
+    }
+    if (const auto* follow = std::get_if<ast::FollowPiece>(&kind)) read_follow(follow->waveform);
+  }
+
+ private:
+  std::optional<NodeId> position(ast::ExprId id) {
+    const auto s = evaluate_quantity(session_, scope_, id, kNumber);
+    if (!s) return std::nullopt;
+    const auto value = value_at_defaults(session_, *s);
+    if (value && !(*value >= 0 && *value <= 1)) session_.report(span_of(session_, scope_, id), diag::pace_outside, *value);
+    return s;
+  }
+
+  std::optional<NodeId> duration(ast::ExprId id) {
+    const auto time = evaluate_quantity(session_, scope_, id, kTime);
+    if (!time) return std::nullopt;
+    const auto value = value_at_defaults(session_, *time);
+    const Span span = span_of(session_, scope_, id);
+    if (value && !(*value > 0)) {
+      session_.report(span, diag::not_positive, "a duration", format_quantity(*value, kTime)).remedy("`step to` is sudden");
+    }
+    return time;
+  }
+
+  void read_follow(const ast::Path& path) {
+    const auto table = read_waveform(session_, scope_, path);
+    if (!table) return;
+    PaceFollowI follow{table->x, table->y, path.span};
+    for (double& t : follow.t) t -= table->x.front();
+    const auto outside = std::find_if(follow.s.begin(), follow.s.end(), [](double s) { return !(s >= 0 && s <= 1); });
+    if (outside != follow.s.end()) session_.report(path.span, diag::pace_outside, *outside);
+    instance_.pace.push_back(std::move(follow));
+  }
+
+  Session& session_;
+  const Scope& scope_;
+  Instance& instance_;
+};
+
+void read_davies_options(Session& session, const Scope& scope, const ast::Path& path, Instance& instance) {
+  for (const ast::Given& given : path.given) {
+    const auto* use = std::get_if<ast::Use>(&session.ast(scope).expr(given.value).node);
+    const std::string value = use == nullptr ? "" : use->path.steps.front().name.text;
+    if (given.name && given.name->text == "shift" && (value == "off" || value == "on")) {
+      instance.lamb_shift = value == "on";
+    } else {
+      session.report(given.span, diag::unknown_argument, "davies", excerpt(session, given.span))
+          .remedy("`davies` or `davies(shift = off)`");
+    }
+  }
+}
+
+}  // namespace
+
+void elaborate_begin(Session& session, const Scope& scope, const ast::Begin& begin, Instance& instance) {
+  const auto* use = std::get_if<ast::Use>(&session.ast(scope).expr(begin.state).node);
+  const Span span = span_of(session, scope, begin.state);
+  const bool plain = use != nullptr && use->held.empty() && !use->under && use->path.steps.size() == 1;
+  if (!plain) {
+    session.report(span, diag::not_available, fmt::format("`begin {}`", excerpt(session, span)), std::string(kBegins));
+    return;
+  }
+  instance.begin = begin_of(session, scope, use->path, instance.qubits.size());
+}
+
+void elaborate_pace(Session& session, const Scope& scope, const ast::Pace& pace, Instance& instance) {
+  PaceReader reader(session, scope, instance);
+  for (const ast::Piece& piece : pace.pieces) reader.read(piece, &piece == &pace.pieces.front());
+}
+
+void elaborate_equation(Session& session, const Scope& scope, const Statements& statements, Instance& instance) {
+  if (statements.equation != nullptr) {
+    const ast::Equation& equation = *statements.equation;
+    if (equation.each || equation.choices.size() != 1) {
+      session.report(equation.span, diag::not_available, "`each of`", "one equation in an experiment");
+      return;
+    }
+    const ast::Path& path = equation.choices.front().equation;
+    const std::string& word = path.steps.front().name.text;
+    const bool plain = path.steps.size() == 1 && !path.steps.front().index;
+    if (plain && word == "schroedinger" && path.given.empty()) {
+      instance.equation = EquationKind::schroedinger;
+    } else if (plain && word == "lindblad" && path.given.empty()) {
+      instance.equation = EquationKind::lindblad;
+    } else if (plain && word == "davies") {
+      instance.equation = EquationKind::davies;
+      read_davies_options(session, scope, path, instance);
+    } else {
+      session.report(path.span, diag::not_available, fmt::format("`{}`", excerpt(session, path.span)), std::string(kEquations));
+    }
+  }
+  if (statements.levels == nullptr) return;
+  if (!statements.levels->count) {
+    session.report(statements.levels->span, diag::not_available, "`levels auto`", "`levels K` with a number K");
+    return;
+  }
+  const auto count = evaluate_count(session, scope, *statements.levels->count);
+  if (!count) return;
+  if (*count < 1) {
+    session.report(span_of(session, scope, *statements.levels->count), diag::count_too_small, "the number of levels", 1);
+    return;
+  }
+  const double all = std::exp2(static_cast<double>(instance.qubits.size()));
+  instance.levels = static_cast<std::uint32_t>(std::min({static_cast<double>(*count), all, 4294967295.0}));
+}
+
+}  // namespace tarn

@@ -1,0 +1,238 @@
+#include "lang/check/readings.h"
+
+#include <algorithm>
+#include <array>
+
+#include "lang/check/expression.h"
+#include "lang/program/operators.h"
+
+namespace tarn {
+namespace {
+
+constexpr std::string_view kObservables =
+    "observables available: population, mean, E, gap, purity, coherence, fidelity, lowest, highest, final";
+constexpr std::string_view kSets = "state sets available: ground, level(k), state(\"01\"), any, target";
+
+constexpr std::array kAvailable = std::to_array<std::string_view>(
+    {"population", "mean", "E", "gap", "purity", "coherence", "fidelity", "lowest", "highest", "final"});
+constexpr std::array kLater = std::to_array<std::string_view>(
+    {"rate", "T1", "T2", "effective_temperature", "verdict", "within", "marginal", "outside", "quantile", "fraction"});
+
+/// The one argument of a reading as it is written.
+const ast::Path* only_path(Session& session, const Scope& scope, const ast::Path& path) {
+  if (!path.call || path.given.size() != 1 || path.given.front().name) {
+    session.report(path.span, diag::argument_count, path.steps.front().name.text, "1", path.given.size());
+    return nullptr;
+  }
+  const auto* use = std::get_if<ast::Use>(&session.ast(scope).expr(path.given.front().value).node);
+  if (use == nullptr) {
+    session.report(path.given.front().span, diag::wrong_kind, "a name", excerpt(session, path.given.front().span));
+    return nullptr;
+  }
+  if (!use->held.empty()) {
+    session.report(use->held.front().span, diag::not_available, "`when`", std::string(kSets));
+    return nullptr;
+  }
+  return &use->path;
+}
+
+Value add_reading(Session& session, const Scope& scope, ReadingI reading, Dimension dimension, Span span) {
+  Readings& readings = *scope.site->readings;
+  const auto row = static_cast<std::uint32_t>(readings.rows->size());
+  readings.rows->push_back(std::move(reading));
+  return number_value(session.graph.add({.op = NodeOp::reading, .index = row, .dimension = dimension, .span = span}));
+}
+
+std::optional<std::uint32_t> level_number(Session& session, const Scope& scope, ast::ExprId id) {
+  const auto level = evaluate_count(session, scope, id);
+  if (!level) return std::nullopt;
+  const std::size_t qubits = scope.site->readings->unrolled->qubits.size();
+  const double levels = qubits < 63 ? static_cast<double>(std::uint64_t{1} << qubits) : 9e18;
+  if (*level >= 0 && static_cast<double>(*level) < levels && *level < INT32_MAX) return static_cast<std::uint32_t>(*level);
+  session.report(span_of(session, scope, id), diag::unknown_level, *level, levels);
+  return std::nullopt;
+}
+
+std::optional<NodeId> within_of(Session& session, const Scope& scope, const ast::Path& path) {
+  const ast::Given& given = path.given.front();
+  const bool named = given.name && given.name->text == "within";
+  if (path.given.size() == 1 && named) return evaluate_quantity(session, scope, given.value, kFrequency);
+  session.report(path.span, diag::wrong_use, "ground").remedy("`ground` or `ground(within = 5 MHz)`");
+  return std::nullopt;
+}
+
+std::optional<StateSetI> state_set(Session& session, const Scope& scope, const ast::Path& path) {
+  const std::string& word = path.steps.front().name.text;
+  const bool bare = !path.call && path.steps.size() == 1 && !path.steps.front().index;
+  StateSetI set;
+  if (word == "any" && bare) return set;
+  if (word == "target" && bare) {
+    set.kind = SetKind::target;
+    return set;
+  }
+  if (word == "ground") {
+    set.kind = SetKind::ground;
+    if (path.call && !path.given.empty()) {
+      set.within = within_of(session, scope, path);
+      if (!set.within) return std::nullopt;
+    }
+    return set;
+  }
+  if (word == "level" && path.given.size() == 1) {
+    set.kind = SetKind::level;
+    const auto level = level_number(session, scope, path.given.front().value);
+    if (!level) return std::nullopt;
+    set.level = *level;
+    return set;
+  }
+  if (word == "state" && path.call) {
+    set.kind = SetKind::state;
+    const auto letters = state_letters(session, scope, path, scope.site->readings->unrolled->qubits.size(), "01");
+    if (!letters) return std::nullopt;
+    set.letters = *letters;
+    return set;
+  }
+  session.report(path.span, diag::unknown_state_set, excerpt(session, path.span)).remedy(std::string(kSets));
+  return std::nullopt;
+}
+
+Value read_population(Session& session, const Scope& scope, const ast::Path& path) {
+  const ast::Path* argument = only_path(session, scope, path);
+  const auto set = argument == nullptr ? std::nullopt : state_set(session, scope, *argument);
+  if (!set) return {};
+  scope.site->readings->reads_state = true;
+  return add_reading(session, scope, PopulationI{*set}, kNumber, path.span);
+}
+
+Value read_mean(Session& session, const Scope& scope, const ast::Path& path) {
+  if (path.given.size() != 1 || path.given.front().name) {
+    session.report(path.span, diag::argument_count, "mean", "1", path.given.size());
+    return {};
+  }
+  scope.site->readings->reads_state = true;
+  const ast::ExprId id = path.given.front().value;
+  const auto* use = std::get_if<ast::Use>(&session.ast(scope).expr(id).node);
+  const bool energy = use != nullptr && use->path.steps.size() == 1 && use->path.steps.front().name.text == "H" && !use->path.call;
+  if (energy) return add_reading(session, scope, MeanEnergyI{}, kFrequency, path.span);
+  const Value value = evaluate(session, scope, id);
+  if (value.unknown()) return {};
+  const auto* op = value.get<OperatorValue>();
+  const Span span = span_of(session, scope, id);
+  if (op == nullptr) {
+    session.report(span, diag::wrong_kind, "an operator", describe(value));
+    return {};
+  }
+  if (!is_hermitian(op->terms)) {
+    session.report(span, diag::not_hermitian, excerpt(session, span));
+    return {};
+  }
+  const auto qubits = static_cast<std::uint32_t>(scope.site->readings->unrolled->qubits.size());
+  return add_reading(session, scope, MeanI{most_significant_first(op->terms, qubits)}, op->dimension, path.span);
+}
+
+Value read_levels(Session& session, const Scope& scope, const ast::Path& path, const std::string& word) {
+  const std::size_t wanted = word == "coherence" ? 2 : word == "E" ? 1 : 0;
+  if (path.given.size() != wanted) {
+    session.report(path.span, diag::argument_count, word, fmt::format("{}", wanted), path.given.size());
+    return {};
+  }
+  std::vector<std::uint32_t> levels;
+  for (const ast::Given& given : path.given) {
+    const auto level = level_number(session, scope, given.value);
+    if (!level) return {};
+    levels.push_back(*level);
+  }
+  Readings& readings = *scope.site->readings;
+  (word == "E" || word == "gap" ? readings.reads_levels : readings.reads_state) = true;
+  if (word == "E") return add_reading(session, scope, LevelI{levels[0]}, kFrequency, path.span);
+  if (word == "gap") return add_reading(session, scope, GapI{}, kFrequency, path.span);
+  if (word == "purity") return add_reading(session, scope, PurityI{}, kNumber, path.span);
+  return add_reading(session, scope, CoherenceI{levels[0], levels[1]}, kNumber, path.span);
+}
+
+Value read_fidelity(Session& session, const Scope& scope, const ast::Path& path) {
+  const ast::Path* argument = only_path(session, scope, path);
+  if (argument == nullptr) return {};
+  if (argument->steps.front().name.text != "state" || !argument->call) {
+    session.report(argument->span, diag::wrong_use, "fidelity").remedy("`fidelity(state(\"01+-\"))` names a state by letters");
+    return {};
+  }
+  const auto letters = state_letters(session, scope, *argument, scope.site->readings->unrolled->qubits.size(), "01+-");
+  if (!letters) return {};
+  scope.site->readings->reads_state = true;
+  return add_reading(session, scope, FidelityI{*letters}, kNumber, path.span);
+}
+
+/// lowest(x), highest(x), final(x) of an observable with a trace or a scan.
+Value read_reduction(Session& session, const Scope& scope, const ast::Path& path, const std::string& word) {
+  const ast::Path* argument = only_path(session, scope, path);
+  if (argument == nullptr) return {};
+  Readings& readings = *scope.site->readings;
+  const std::string& name = argument->steps.front().name.text;
+  const auto found = readings.by_name.find(name);
+  const bool plain = argument->steps.size() == 1 && !argument->call;
+  if (found == readings.by_name.end() || !plain) {
+    session.report(argument->span, diag::not_observed, excerpt(session, argument->span))
+        .remedy(fmt::format("`observe {} along 101` or a scan before it", name));
+    return {};
+  }
+  const ObservableI observed = (*readings.observables)[found->second];
+  const bool trace = std::holds_alternative<AlongI>(observed.moment) || readings.scans;
+  if (!trace) {
+    session.report(argument->span, diag::no_trace, word, name).note(observed.span, "observed here");
+    return {};
+  }
+  readings.reduces = true;
+  const ReductionI over = word == "lowest" ? ReductionI::lowest : word == "highest" ? ReductionI::highest : ReductionI::final;
+  const Dimension dimension = session.graph[observed.value].dimension;
+  const Value reading = add_reading(session, scope, ReduceI{over, found->second}, dimension, path.span);
+  if (!readings.claims) return reading;
+  const auto row = static_cast<std::uint32_t>(readings.observables->size());
+  readings.observables->push_back({excerpt(session, path.span), observed.unit, StaticI{}, reading.get<NumberValue>()->node, path.span, false});
+  return number_value(session.graph.add({.op = NodeOp::observable, .index = row, .dimension = dimension, .span = path.span}));
+}
+
+}  // namespace
+
+bool is_reading_word(std::string_view name) {
+  return std::find(kAvailable.begin(), kAvailable.end(), name) != kAvailable.end() ||
+         std::find(kLater.begin(), kLater.end(), name) != kLater.end();
+}
+
+Value evaluate_reading(Session& session, const Scope& scope, const ast::Path& path) {
+  const std::string& word = path.steps.front().name.text;
+  if (std::find(kLater.begin(), kLater.end(), word) != kLater.end()) {
+    session.report(path.span, diag::not_available, fmt::format("`{}`", word), std::string(kObservables));
+    return {};
+  }
+  if (word == "lowest" || word == "highest" || word == "final") return read_reduction(session, scope, path, word);
+  if (scope.site->readings->claims) {
+    session.report(path.span, diag::not_observed, excerpt(session, path.span))
+        .remedy("`observe` it under a name and use the name");
+    return {};
+  }
+  if (word == "population") return read_population(session, scope, path);
+  if (word == "mean") return read_mean(session, scope, path);
+  if (word == "fidelity") return read_fidelity(session, scope, path);
+  return read_levels(session, scope, path, word);
+}
+
+std::optional<std::string> state_letters(Session& session, const Scope& scope, const ast::Path& path,
+                                         std::size_t qubits, std::string_view allowed) {
+  if (path.given.size() != 1 || path.given.front().name) {
+    session.report(path.span, diag::argument_count, "state", "1", path.given.size());
+    return std::nullopt;
+  }
+  const auto text = evaluate_text(session, scope, path.given.front().value);
+  if (!text) return std::nullopt;
+  const Span span = path.given.front().span;
+  if (text->find_first_not_of(allowed) != std::string::npos) {
+    session.report(span, diag::state_letters, *text, std::string(allowed));
+    return std::nullopt;
+  }
+  if (text->size() == qubits) return text;
+  session.report(span, diag::state_length, *text, text->size(), qubits);
+  return std::nullopt;
+}
+
+}  // namespace tarn
