@@ -6,6 +6,8 @@
 #include <cmath>
 
 #include "runtime/bath/correlation.h"
+#include "runtime/bath/power_law_bath.h"
+#include "runtime/bath/rational_density.h"
 #include "runtime/bath/shift.h"
 #include "runtime/bath/thermal_bath.h"
 
@@ -94,7 +96,28 @@ TEST_CASE("C agrees both ways") {
     }
 }
 
-TEST_CASE("the closed transforms repeat gamma/2 in their real parts, S(0) = -lambda") {
+TEST_CASE("C(0) agrees both ways where it exists; a Drude bath has none") {
+  for (const double theta : kTemperatures)
+    for (const Component& component : {Component(PowerLaw{0.02, 30.0, 1.7}), Component(LorentzianPeak{0.4, 6.0, 0.3}), Component(LorentzianPeak{0.4, 6.0, 40.0})}) {
+      CAPTURE(theta, component.index());
+      const double closed = CorrelationFunction(bath_of(component, theta)).at(0.0).real();
+      CHECK(CorrelationFunction(bath_of(hidden(component), theta)).at(0.0).real() == Approx(closed).epsilon(1e-9));
+    }
+  CHECK(std::isinf(CorrelationFunction(bath_of(Drude{0.003, 8.0}, 1.5)).at(0.0).real()));
+}
+
+TEST_CASE("the logarithms of a table's rows are not resolved by polynomials") {
+  Tabulated table;
+  for (int i = 0; i <= 30; ++i) {
+    table.w.push_back(2.0 * i);
+    table.j.push_back(i < 30 ? 0.02 * i * std::exp(-0.25 * i) : 0.0);
+  }
+  const ShiftTable fast(ShiftFunction(bath_of(table, 1.5)), 60.0);
+  // By bisection alone it took 51000 values of S; with the logarithms apart 3300.
+  CHECK(fast.evaluations() < 5000);
+}
+
+TEST_CASE("S(0) = -lambda at every temperature") {
   for (const Family& family : families())
     for (const double theta : kTemperatures) {
       CAPTURE(family.name, theta);
@@ -102,6 +125,20 @@ TEST_CASE("the closed transforms repeat gamma/2 in their real parts, S(0) = -lam
       const ShiftFunction shift(bath);
       CHECK(shift.at(0.0) == Approx(-bath.reorganisation()).epsilon(1e-11));
       CHECK(ShiftFunction(bath_of(hidden(family.component), theta)).at(0.0) == Approx(-bath.reorganisation()).epsilon(1e-11));
+    }
+}
+
+TEST_CASE("the half-range transforms have gamma/2 as their real parts") {
+  for (const double theta : {0.01, 1.5, 40.0})
+    for (const double w : {-9.0, -0.2, 1e-4, 3.0, 20.0}) {
+      CAPTURE(theta, w);
+      const auto half_rate = [&](const Component& c) { return 0.5 * bath_of(c, theta).rate(ArrayXd::Constant(1, w))[0]; };
+      const PowerLaw law{0.02, 30.0, 1.7};
+      const Drude drude{0.003, 8.0};
+      const LorentzianPeak peak{0.4, 6.0, 0.3};
+      CHECK(PowerLawTransform(law, theta)(w).real() == Approx(half_rate(law)).epsilon(1e-11).margin(1e-12));
+      CHECK(rational_transform(poles_of(drude, theta), theta, w).real() == Approx(half_rate(drude)).epsilon(1e-11).margin(1e-13));
+      CHECK(rational_transform(poles_of(peak, theta), theta, w).real() == Approx(half_rate(peak)).epsilon(1e-11).margin(1e-13));
     }
 }
 
