@@ -48,7 +48,7 @@ std::vector<Diagnostic> in_text_order(const Diagnostics& diagnostics) {
 
 const std::vector<KindInfo>& all_kinds() {
   static const std::vector<KindInfo> kinds = {
-#define TARN_DIAG(name, severity, message, ...) {#name, Severity::severity},
+#define TARN_DIAG(name, severity, message, ...) {#name, Severity::severity, message},
 #include "lang/diagnostics/kinds.def"
 #undef TARN_DIAG
   };

@@ -95,11 +95,13 @@ class Diagnostics {
 /// A copy in reading order: by file, then place, then order of report.
 std::vector<Diagnostic> in_text_order(const Diagnostics& diagnostics);
 
-/// Name and severity of every kind, in the order of kinds.def.
+/// A row of kinds.def.
 struct KindInfo {
   std::string_view name;
   Severity severity;
+  std::string_view message;  ///< With `{}` for what a report fills in.
 };
+/// In the order of kinds.def.
 const std::vector<KindInfo>& all_kinds();
 
 }  // namespace tarn

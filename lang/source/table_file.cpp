@@ -133,7 +133,7 @@ std::optional<NamedUnit> column_unit(const Table& table, const std::string& head
 }
 
 std::optional<double> number_of(std::string_view cell) {
-  if (cell.starts_with('+')) cell.remove_prefix(1);
+  if (cell.starts_with('+') && !cell.starts_with("+-")) cell.remove_prefix(1);
   double value = 0;
   const auto [end, error] = std::from_chars(cell.data(), cell.data() + cell.size(), value);
   if (error != std::errc() || end != cell.data() + cell.size() || !std::isfinite(value)) return std::nullopt;

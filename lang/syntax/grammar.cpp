@@ -37,7 +37,12 @@ struct State {
     furthest = {};
     return length;
   }
+  /// Nodes past the place where the input stands are left over from a branch that failed.
+  void drop_beyond(std::uint32_t token) {
+    while (!result.nodes.empty() && result.nodes.back().end > token) result.nodes.pop_back();
+  }
   void enter(std::uint32_t token) {
+    drop_beyond(token);
     frames.push_back({result.nodes.size(), token, furthest.token == token ? furthest.expected.size() : 0});
   }
 };
@@ -81,6 +86,7 @@ struct Control : peg::normal<Rule> {
     if constexpr (kHasFrame) {
       const State::Frame frame = state.frames.back();
       state.frames.pop_back();
+      state.drop_beyond(token_at(in));
       if constexpr (Tagged<Rule>) leave_node(state, Rule::tag, frame.token, token_at(in), frame.nodes);
     }
     if constexpr (std::is_same_v<Rule, grammar::open_block>) state.open_blocks.push_back(token_at(in) - 1);
