@@ -4,15 +4,13 @@
 #include <bit>
 #include <map>
 
-#include "lang/support/check.h"
+#include "compiler/codegen/tile.h"
 
 namespace tarn::compiler {
 
 using llvm::Value;
 
 namespace {
-
-constexpr std::uint64_t kMostVectorOps = 4096;  ///< Of one block's code; beyond it blocks shrink.
 
 /// Flips that share one linear form.
 using FlipsByForm = std::map<LinearForm, std::vector<std::uint64_t>>;
@@ -21,7 +19,8 @@ class ApplyEmitter {
  public:
   ApplyEmitter(Unit& unit, const SweepPlan& plan)
       : unit_(unit), build_(unit.build), plan_(plan), width_(sweep_width(unit, plan.bits)),
-        lane_bits_(static_cast<std::uint32_t>(std::countr_zero(width_)) - 1), block_bits_(choose_block_bits()) {
+        lane_bits_(static_cast<std::uint32_t>(std::countr_zero(width_)) - 1),
+        tile_(choose_tile(plan.bits, lane_bits_, unit.lanes == 8 ? 3 : 2, plan.flips.size())) {
     for (const Flip& flip : plan.flips) {
       if (!flip.real.empty()) real_forms_[flip.real].push_back(flip.mask);
       if (!flip.imaginary.empty()) imaginary_forms_[flip.imaginary].push_back(flip.mask);
@@ -37,27 +36,20 @@ class ApplyEmitter {
     y_ = function->getArg(3);
     function->getArg(3)->addAttr(llvm::Attribute::NoAlias);
     load_coefficients();
-    const std::uint64_t blocks = std::uint64_t{1} << (plan_.bits - lane_bits_ - block_bits_);
-    if (blocks == 1) {
-      emit_block(build_.getInt64(0));
+    if (tile_.bases() == 1) {
+      emit_tile(build_.getInt64(0));
     } else {
-      loop(unit_, build_.getInt64(0), build_.getInt64(blocks), build_.getInt64(1), [&](Value* block) { emit_block(block); });
+      loop(unit_, build_.getInt64(0), build_.getInt64(tile_.bases()), build_.getInt64(1), [&](Value* k) { emit_tile(k); });
     }
     build_.CreateRet(build_.getInt32(0));
     return function;
   }
 
  private:
-  /// The vectors of one block.
-  using Block = std::vector<Value*>;
+  /// One number for each vector of a tile.
+  using Vectors = std::vector<Value*>;
 
-  std::uint32_t choose_block_bits() const {
-    std::uint32_t bits = std::min(unit_.lanes == 8 ? 3u : 2u, plan_.bits - lane_bits_);
-    while (bits > 0 && (plan_.flips.size() << bits) > kMostVectorOps) --bits;
-    return bits;
-  }
-
-  std::uint64_t vectors() const { return std::uint64_t{1} << block_bits_; }
+  std::uint64_t vectors() const { return tile_.vectors(); }
 
   Value* scalar_form(const LinearForm& form) {
     Value* sum = nullptr;
@@ -76,37 +68,66 @@ class ApplyEmitter {
     for (const Flip& flip : plan_.flips)
       for (const auto* terms : {&flip.prepared_real, &flip.prepared_imaginary})
         for (const PreparedTerm& term : *terms)
-          if (!halves_.contains(term.row))
-            halves_[term.row] = build_.CreateVectorSplat(width_ / 2, load(unit_, unit_.real(), coefficients_, build_.getInt64(term.row), 8));
+          if (!weights_.contains(term.row))
+            weights_[term.row] = build_.CreateVectorSplat(numbers_at_once(), load(unit_, unit_.real(), coefficients_, build_.getInt64(term.row), 8));
   }
 
-  void emit_block(Value* block) {
-    block_ = block;
+  void emit_tile(Value* number) {
+    base_ = build_.CreateShl(number, tile_.base_shift());
     own_.assign(vectors(), nullptr);
-    Block real = sum_part(real_forms_, false);
-    Block imaginary = sum_part(imaginary_forms_, true);
-    for (std::uint64_t v = 0; v < vectors(); ++v) store(unit_, combine(real[v], imaginary[v]), y_, place_in(block, v), alignment());
+    Vectors real = sum_part(real_forms_, false);
+    Vectors imaginary = sum_part(imaginary_forms_, true);
+    for (std::uint64_t v = 0; v < vectors(); ++v) store(unit_, combine(real[v], imaginary[v]), y_, place(0, v, 2), alignment());
   }
 
-  Block sum_part(const FlipsByForm& forms, bool imaginary) {
-    Block sum(vectors(), nullptr);
+  Vectors sum_part(const FlipsByForm& forms, bool imaginary) {
+    Vectors sum(vectors(), nullptr);
     for (const Flip& flip : plan_.flips) {
       const auto& terms = imaginary ? flip.prepared_imaginary : flip.prepared_real;
       if (terms.empty()) continue;
-      for (std::uint64_t v = 0; v < vectors(); ++v) add_product(sum[v], expanded(terms, v), flipped(flip.mask, v));
+      Vectors signs(vectors(), nullptr);
+      for (std::uint64_t v = 0; v < vectors(); ++v) add_product(sum[v], expanded(terms, v, signs), flipped(flip.mask, v));
     }
     for (const auto& [form, masks] : forms) add_form(sum, scalars_.at(form), masks);
     return sum;
   }
 
-  void add_form(Block& sum, Value* scalar, const std::vector<std::uint64_t>& masks) {
-    Block plain(vectors(), nullptr);
-    for (const std::uint64_t mask : masks)
+  /// Adds scalar * (sum over masks of x flipped). What comes from other tiles goes in turns by
+  /// addition, to be multiplied once, and by multiply-add: the two have ports of their own.
+  void add_form(Vectors& sum, Value* scalar, const std::vector<std::uint64_t>& masks) {
+    Vectors plain(vectors(), nullptr);
+    std::map<std::uint64_t, std::vector<std::uint64_t>> by_rest;
+    for (const std::uint64_t mask : masks) by_rest[tile_.flipped(mask, 0).rest].push_back(mask);
+    bool multiply = false;
+    for (const auto& [rest, same] : by_rest) {
+      if (rest != 0) multiply = !multiply;
+      const Vectors flips = sum_of_flips(same);
       for (std::uint64_t v = 0; v < vectors(); ++v) {
-        Value* x = flipped(mask, v);
-        plain[v] = plain[v] ? build_.CreateFAdd(plain[v], x) : x;
+        if (rest != 0 && multiply) {
+          add_product(sum[v], scalar, flips[v]);
+        } else {
+          plain[v] = plain[v] ? build_.CreateFAdd(plain[v], flips[v]) : flips[v];
+        }
       }
-    for (std::uint64_t v = 0; v < vectors(); ++v) add_product(sum[v], scalar, plain[v]);
+    }
+    for (std::uint64_t v = 0; v < vectors(); ++v)
+      if (plain[v]) add_product(sum[v], scalar, plain[v]);
+  }
+
+  /// Sum over masks with one rest. Two vectors that see the same pair of others share their sum.
+  Vectors sum_of_flips(const std::vector<std::uint64_t>& masks) {
+    Vectors sums(vectors(), nullptr);
+    std::map<std::vector<Value*>, Value*> made;
+    for (std::uint64_t v = 0; v < vectors(); ++v) {
+      std::vector<Value*> parts;
+      for (const std::uint64_t mask : masks) parts.push_back(flipped(mask, v));
+      std::sort(parts.begin(), parts.end());
+      Value*& sum = made[parts];
+      if (!sum)
+        for (const std::uint64_t mask : masks) sum = sum ? build_.CreateFAdd(sum, flipped(mask, v)) : flipped(mask, v);
+      sums[v] = sum;
+    }
+    return sums;
   }
 
   void add_product(Value*& sum, Value* a, Value* b) { sum = sum ? multiply_add(unit_, a, b, sum) : build_.CreateFMul(a, b); }
@@ -127,18 +148,17 @@ class ApplyEmitter {
 
   unsigned alignment() const { return width_ * 8; }
 
-  /// Offset [doubles] of vector v of a block.
-  Value* place_in(Value* block, std::uint64_t v) {
-    Value* first = build_.CreateShl(block, lane_bits_ + block_bits_ + 1);
-    return build_.CreateAdd(first, build_.getInt64(v * width_));
+  /// Offset of vector v of the tile that lies `rest` away, with so many numbers an amplitude.
+  Value* place(std::uint64_t rest, std::uint64_t v, std::uint64_t numbers) {
+    Value* far = build_.CreateXor(base_, build_.getInt64(rest ^ tile_.far_offset(v)));
+    return build_.CreateAdd(build_.CreateMul(far, build_.getInt64(numbers)), build_.getInt64(tile_.near_offset(v) * numbers));
   }
 
-  /// Vector v of the block as it stands in x ^ mask.
+  /// Vector v of the tile as it stands in x ^ mask. Shuffles and loads are made once.
   Value* flipped(std::uint64_t mask, std::uint64_t v) {
     const std::uint64_t low = mask & ((std::uint64_t{1} << lane_bits_) - 1);
-    const std::uint64_t middle = mask >> lane_bits_ & (vectors() - 1);
-    const std::uint64_t high = mask >> (lane_bits_ + block_bits_);
-    Value* whole = high == 0 ? own(v ^ middle) : far(high, v ^ middle);
+    const Place where = tile_.flipped(mask, v);
+    Value* whole = where.rest == 0 ? own(where.vector) : far(where);
     if (low == 0) return whole;
     std::vector<int> order;
     for (std::uint64_t k = 0; k < width_; ++k) order.push_back(static_cast<int>(k ^ (low << 1)));
@@ -146,40 +166,60 @@ class ApplyEmitter {
   }
 
   Value* own(std::uint64_t v) {
-    if (!own_[v]) own_[v] = load(unit_, unit_.vector(width_), x_, place_in(block_, v), alignment());
+    if (!own_[v]) own_[v] = load(unit_, unit_.vector(width_), x_, place(0, v, 2), alignment());
     return own_[v];
   }
 
-  Value* far(std::uint64_t high, std::uint64_t v) {
-    Value* other = build_.CreateXor(block_, build_.getInt64(high));
-    return load(unit_, unit_.vector(width_), x_, place_in(other, v), alignment());
+  /// The rest read last is kept: flips that share it follow one another.
+  Value* far(const Place& where) {
+    if (where.rest != kept_rest_ || kept_base_ != base_) {
+      kept_.assign(vectors(), nullptr);
+      kept_rest_ = where.rest;
+      kept_base_ = base_;
+    }
+    Value*& vector = kept_[where.vector];
+    if (!vector) vector = load(unit_, unit_.vector(width_), x_, place(where.rest, where.vector, 2), alignment());
+    return vector;
   }
 
   /// Sum of coefficients times sign vectors at vector v, each number twice: for both parts of x.
-  Value* expanded(const std::vector<PreparedTerm>& terms, std::uint64_t v) {
-    Value* sum = nullptr;
-    const unsigned half = width_ / 2;
-    for (const PreparedTerm& term : terms) {
-      Value* first = build_.CreateShl(block_, lane_bits_ + block_bits_);
-      Value* offset = build_.CreateAdd(first, build_.getInt64((std::uint64_t{term.vector} << plan_.bits) + v * half));
-      add_product(sum, load(unit_, unit_.vector(half), prepared_, offset, half * 8), halves_.at(term.row));
-    }
+  /// `sums` keeps what one load gives: the numbers of two neighbours, or of one if there are none.
+  Value* expanded(const std::vector<PreparedTerm>& terms, std::uint64_t v, Vectors& sums) {
+    const std::uint64_t first = numbers_at_once() == width_ ? v & ~std::uint64_t{1} : v;
+    if (!sums[first]) sums[first] = weighted_signs(terms, first);
     std::vector<int> twice;
-    for (unsigned k = 0; k < width_; ++k) twice.push_back(static_cast<int>(k / 2));
-    return build_.CreateShuffleVector(sum, twice);
+    const std::uint64_t offset = (v - first) * (width_ / 2);
+    for (unsigned k = 0; k < width_; ++k) twice.push_back(static_cast<int>(offset + k / 2));
+    return build_.CreateShuffleVector(sums[first], twice);
+  }
+
+  unsigned numbers_at_once() const { return tile_.vectors() == 1 ? width_ / 2 : width_; }
+
+  /// The sum itself, from vector v of the tile on.
+  Value* weighted_signs(const std::vector<PreparedTerm>& terms, std::uint64_t v) {
+    Value* sum = nullptr;
+    const unsigned numbers = numbers_at_once();
+    for (const PreparedTerm& term : terms) {
+      Value* offset = build_.CreateAdd(place(0, v, 1), build_.getInt64(std::uint64_t{term.vector} << plan_.bits));
+      add_product(sum, load(unit_, unit_.vector(numbers), prepared_, offset, numbers * 8), weights_.at(term.row));
+    }
+    return sum;
   }
 
   Unit& unit_;
   llvm::IRBuilder<>& build_;
   const SweepPlan& plan_;
   unsigned width_;
-  std::uint32_t lane_bits_, block_bits_;
+  std::uint32_t lane_bits_;
+  Tile tile_;
   FlipsByForm real_forms_, imaginary_forms_;
   Value *coefficients_ = nullptr, *prepared_ = nullptr, *x_ = nullptr, *y_ = nullptr;
-  Value* block_ = nullptr;
-  Block own_;
+  Value* base_ = nullptr;  ///< First amplitude of the tile.
+  Vectors own_, kept_;
+  std::uint64_t kept_rest_ = 0;
+  Value* kept_base_ = nullptr;
   std::map<LinearForm, Value*> scalars_;
-  std::map<std::uint32_t, Value*> halves_;
+  std::map<std::uint32_t, Value*> weights_;  ///< Coefficients beside sign vectors.
 };
 
 /// The spectra of all sign vectors as two arrays: where each factor goes in `prepared`, and the factor.
