@@ -33,17 +33,20 @@ Occurrence occurrence_of(const Plan& plan, const Observable& observable);
 /// True if the observable reads lowest(), highest() or final() of another.
 bool reads_reduction(const Plan& plan, const Observable& observable);
 
-/// The status of a point that went well, and of one whose error stayed above the tolerance.
+/// The status of a point that went well, of one whose error stayed above the tolerance, and of one
+/// where an observable is no finite number.
 inline constexpr const char* kStatusOk = "ok";
 inline constexpr const char* kStatusLoose = "tolerance not reached";
+inline constexpr const char* kStatusNotFinite = "answer not finite";
 
 struct PointOutcome {
   std::uint64_t index = 0;                   ///< In the grid, first axis slowest.
-  std::string status = kStatusOk;            ///< Or kStatusLoose, or `KIND: message` of a failed point.
+  std::string status = kStatusOk;            ///< Or another of the above, or `KIND: message` of a failed point.
   std::optional<RunError> error;             ///< Set if the point failed; then there are no answers.
   std::vector<std::vector<Sample>> series;   ///< For each observable of the plan.
   std::vector<Answer> distribution;          ///< Of every bit string, if asked.
   std::vector<std::string> remarks;          ///< To be shown with the run, once each.
+  double leakage = 0;                        ///< Population that left the levels kept, an upper estimate.
   Counters counters;
 };
 

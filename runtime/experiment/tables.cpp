@@ -228,13 +228,25 @@ bool read_distribution(Rows rows, std::size_t keys, PointOutcome& outcome) {
 }
 
 void restore_error(PointOutcome& outcome) {
-  if (outcome.status == kStatusOk || outcome.status == kStatusLoose) return;
+  for (const char* answered : {kStatusOk, kStatusLoose, kStatusNotFinite}) {
+    if (outcome.status == answered) return;
+  }
   const std::size_t colon = outcome.status.find(": ");
   outcome.error = colon == std::string::npos
                       ? RunError{outcome.status, ""}
                       : RunError{outcome.status.substr(0, colon), outcome.status.substr(colon + 2)};
   outcome.series.clear();
   outcome.distribution.clear();
+}
+
+/// The value that its own text reads back as: the division and the product undo each other.
+double as_read_back(double value, double factor) {
+  for (int i = 0; i < 8 && std::isfinite(value); ++i) {
+    const double again = value / factor * factor;
+    if (again == value) break;
+    value = again;
+  }
+  return value;
 }
 
 struct Cursors {
@@ -284,9 +296,10 @@ std::string parameter_text(double value, const DisplayUnit& unit) {
   return number_text(means_the_same ? *tidy : exact);
 }
 
-ResultTables make_tables(std::span<const PointOutcome* const> outcomes, std::span<const Plan* const> plan_of) {
-  TARN_CHECK(outcomes.size() == plan_of.size() && !plan_of.empty());
-  ResultTables tables = empty_tables(*plan_of.front());
+ResultTables make_tables(std::span<const PointOutcome* const> outcomes, std::span<const Plan* const> plan_of,
+                         const Plan& plan) {
+  TARN_CHECK(outcomes.size() == plan_of.size());
+  ResultTables tables = empty_tables(plan);
   for (std::size_t i = 0; i < outcomes.size(); ++i) {
     add_results(tables["results.csv"], *plan_of[i], *outcomes[i]);
     if (tables.contains("traces.csv")) add_traces(tables["traces.csv"], *plan_of[i], *outcomes[i]);
@@ -322,8 +335,8 @@ void round_to_shown(const Plan& plan, PointOutcome& outcome) {
   for (std::size_t o = 0; o < outcome.series.size(); ++o) {
     const double factor = plan.observables[o].unit.factor;
     for (Sample& sample : outcome.series[o]) {
-      sample.answer.value = sample.answer.value / factor * factor;
-      sample.answer.error = sample.answer.error / factor * factor;
+      sample.answer.value = as_read_back(sample.answer.value, factor);
+      sample.answer.error = as_read_back(sample.answer.error, factor);
     }
   }
 }

@@ -27,8 +27,9 @@ std::string column_name(const std::string& name, const DisplayUnit& unit);
 std::string parameter_text(double value, const DisplayUnit& unit);
 
 /// The tables of `outcomes`, which are in grid order; plan_of[i] is the plan outcome i was run by.
-/// All plans belong to one experiment: they differ by counts only.
-ResultTables make_tables(std::span<const PointOutcome* const> outcomes, std::span<const Plan* const> plan_of);
+/// `plan` gives the columns: all plans belong to one experiment and differ by counts only.
+ResultTables make_tables(std::span<const PointOutcome* const> outcomes, std::span<const Plan* const> plan_of,
+                         const Plan& plan);
 
 /// What make_tables wrote for the points `indices` (ascending; plan_of as above), by grid index.
 /// Points whose rows are missing are left out. Observables that read reductions or are not shown

@@ -98,7 +98,7 @@ TEST_CASE("tables have the keys, answers, errors and the status") {
   failed.status = "not_finite: the state is not finite";
   const std::vector<const PointOutcome*> points = {&first, &failed};
   const std::vector<const Plan*> plans = {&plan, &plan};
-  const ResultTables tables = make_tables(points, plans);
+  const ResultTables tables = make_tables(points, plans, plan);
   REQUIRE(tables.size() == 3);
   const CsvTable& results = tables.at("results.csv");
   CHECK(results.header == std::vector<std::string>{"ta [ns]", "f [GHz]", "n", "e, \"low\" [GHz]",
@@ -122,7 +122,7 @@ TEST_CASE("points read back from their tables are the points, bit by bit") {
   for (PointOutcome& point : all) round_to_shown(plan, point);
   const std::vector<const PointOutcome*> points = {&all[0], &all[1], &all[2]};
   const std::vector<const Plan*> plans(4, &plan);
-  const ResultTables tables = make_tables(points, std::span(plans).first(3));
+  const ResultTables tables = make_tables(points, std::span(plans).first(3), plan);
   const auto back = read_tables(tables, plan.points, plans);
   REQUIRE(back);
   REQUIRE(back->size() == 3);

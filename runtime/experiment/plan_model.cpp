@@ -1,0 +1,73 @@
+#include "runtime/experiment/plan_model.h"
+
+#include <array>
+
+#include "lang/support/check.h"
+#include "runtime/equation/propagate_linear.h"
+#include "runtime/experiment/grid.h"
+
+namespace tarn::runtime {
+namespace {
+
+/// True if some coefficient of the jumps changes with t at fixed s.
+bool jumps_read_t(const Plan& plan, const Functions& functions) {
+  constexpr std::array<double, 4> kTimes = {0.37, 1.9, 23.1, 1234.5};
+  for (const double s : {0.11, 0.53, 0.89}) {
+    const std::vector<double> first = functions.values(kCoefficients, s, 0);
+    for (const double t : kTimes) {
+      const std::vector<double> later = functions.values(kCoefficients, s, t);
+      for (const Jump& jump : plan.chip.jumps) {
+        for (const OperatorGroup& group : jump.op.groups) {
+          if (later[group.coefficient] != first[group.coefficient]) return true;
+        }
+      }
+    }
+  }
+  return false;
+}
+
+}  // namespace
+
+PlanModel::PlanModel(const Plan& plan, const Kernel& kernel, std::span<const TableNumbers> tables)
+    : plan_(plan), kernel_(kernel), tables_(tables),
+      generator_(plan.equation == Equation::lindblad ? kLiouvillian : kSchroedinger) {
+  const bool integrates = plan.equation == Equation::schroedinger || plan.equation == Equation::lindblad;
+  if (!integrates) return;
+  TARN_CHECK(kernel.generators() > generator_);
+  prepared_ = AlignedArray(std::max<std::size_t>(1, kernel.prepared_doubles(generator_)));
+  TARN_CHECK(kernel.prepare(generator_)(prepared_.data()) == TARN_OK);
+  if (kernel.lane_apply(generator_) && kernel.lane_stage(generator_)) lanes_ = kernel.lanes();
+  reads_t_ = !plan.chip.drive.groups.empty();
+  if (!reads_t_ && plan.equation == Equation::lindblad) {
+    reads_t_ = jumps_read_t(plan, Functions(kernel, tables, plan));
+  }
+}
+
+Functions PlanModel::functions_at(std::uint64_t index) const {
+  Functions functions(kernel_, tables_, plan_);
+  const std::vector<double> values = grid_values(plan_.axes, index);
+  std::size_t next = 0;
+  for (const Axis& axis : plan_.axes) {
+    for (const AxisColumn& column : axis.columns) {
+      if (column.slot) functions.set_input(*column.slot, values[next]);
+      ++next;
+    }
+  }
+  return functions;
+}
+
+Entries PlanModel::entries() const {
+  Entries entries;
+  const bool wide = lanes_ > 1;
+  entries.values = kernel_.values(kCoefficients);
+  entries.stage = wide ? kernel_.lane_stage(generator_) : kernel_.stage(generator_);
+  entries.apply = wide ? kernel_.lane_apply(generator_) : kernel_.apply(generator_);
+  entries.prepared = prepared_.data();
+  entries.rows = kernel_.rows(kCoefficients);
+  entries.bits = kernel_.bits(generator_);
+  entries.lanes = static_cast<std::uint32_t>(lanes_);
+  entries.reads_t = reads_t_;
+  return entries;
+}
+
+}  // namespace tarn::runtime

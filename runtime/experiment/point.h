@@ -1,0 +1,94 @@
+#pragma once
+/// \file One grid point from its parameters to its answers. The propagation itself is done by
+/// others (advance.h), at the tolerance this asks for, as often as it asks.
+
+#include <memory>
+#include <optional>
+#include <span>
+#include <vector>
+
+#include "runtime/experiment/accuracy.h"
+#include "runtime/experiment/begin.h"
+#include "runtime/experiment/observations.h"
+#include "runtime/experiment/plan_model.h"
+
+namespace tarn::runtime {
+
+class PointTask {
+ public:
+  /// Works out pace, observations, levels and the state at the beginning. What fails is in the
+  /// outcome.
+  PointTask(const PlanModel& model, std::uint64_t index, Interrupted interrupted);
+  PointTask(const PointTask&) = delete;
+  PointTask& operator=(const PointTask&) = delete;
+
+  /// True while another propagation is wanted, at tolerance().
+  bool wants_run() const { return wants_run_; }
+  double tolerance() const { return tolerance_; }
+
+  const PlanModel& model() const { return model_; }
+  Functions& functions() { return functions_; }
+  double input(std::uint32_t slot) const { return functions_.input(slot); }
+  std::span<const double> settings() const { return settings_; }
+  const Timeline& timeline() const { return timeline_; }
+  std::span<const double> breaks() const { return breaks_; }       ///< [ns], ascending.
+  std::span<const double> positions() const { return positions_; } ///< The same kinks in s.
+  std::span<const double> times() const { return times_; }         ///< [ns], ascending.
+  const Mixture& begin() const { return begin_; }
+
+  /// A run: begin_run(), then visit() for every ket of the mixture or for the density matrix
+  /// (weight 1), then end_run(). `index` counts times().
+  void begin_run();
+  void visit(std::size_t index, const State& state, double weight);
+  void end_run(const Counters& counters);
+
+  /// As end_run(), for a run that knows its own error: that of its populations. `loose`: the run
+  /// could not reach its tolerance, and another would not either.
+  void end_run_with_error(const Counters& counters, double error, bool loose);
+
+  void fail(RunError error);
+  /// Population that left the levels kept, an upper estimate.
+  void note_leakage(double leakage) { outcome_.leakage = leakage; }
+  void remark(std::string text) { outcome_.remarks.push_back(std::move(text)); }
+
+  /// Precondition: no run is wanted. The task is used up.
+  PointOutcome take_outcome();
+
+ private:
+  Result<Done, RunError> prepare();
+  Result<Done, RunError> prepare_observations();
+  void note_held_offsets();
+  Result<InstantReadings, RunError> make_readings(const Observation& observation);
+  const InstantReadings* readings_of(std::size_t observation);
+  void collect_answers(double error);
+  Answer answer_of(std::size_t observation, std::uint32_t observable, double error);
+  double worst_excess() const;
+  double limit_of(std::uint32_t observable, std::size_t sample) const;
+  Result<double, RunError> find_width(const Observation& observation);
+  void finish(const char* status);
+
+  const PlanModel& model_;
+  const Plan& plan_;
+  Functions functions_;
+  ChipLevels levels_;
+  std::vector<double> settings_;
+  Timeline timeline_;
+  std::vector<double> positions_, breaks_, times_;
+  std::vector<Observation> observations_;
+  std::vector<std::vector<std::size_t>> at_time_;  ///< Observations at each of times_.
+  std::vector<std::optional<InstantReadings>> readings_;
+  std::vector<std::vector<double>> norms_;         ///< Of the readings, at each observation.
+  std::vector<double> widths_;                     ///< Of the spectrum, where a tolerance asks for it.
+  std::vector<std::vector<std::size_t>> places_;   ///< Observations of each observable.
+  std::optional<Target> target_;
+  Mixture begin_;
+
+  std::vector<ReadingSums> sums_;
+  std::vector<Snapshot> coarse_, fine_;
+  int runs_ = 0;
+  double tolerance_ = 0;
+  bool wants_run_ = false;
+  PointOutcome outcome_;
+};
+
+}  // namespace tarn::runtime

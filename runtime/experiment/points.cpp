@@ -1,0 +1,130 @@
+#include "runtime/experiment/points.h"
+
+#include <algorithm>
+#include <atomic>
+#include <exception>
+#include <map>
+#include <memory>
+#include <mutex>
+#include <optional>
+#include <thread>
+
+#include "runtime/experiment/advance.h"
+#include "runtime/experiment/davies_points.h"
+
+namespace tarn::runtime {
+namespace {
+
+constexpr std::size_t kMostGroup = 8;
+
+/// Points that run together, by their position in the list.
+using Group = std::vector<std::size_t>;
+
+class Pool {
+ public:
+  Pool(std::span<const PointItem> items, const PointsOptions& options) : items_(items), options_(options) {
+    for (const PointItem& item : items) {
+      const bool davies = item.model->plan().equation == Equation::davies;
+      if (davies && !davies_[item.model]) davies_[item.model] = std::make_unique<DaviesPoints>(*item.model, options.jobs + 1);
+    }
+    make_groups();
+    outcomes_.resize(items.size());
+  }
+
+  std::vector<PointOutcome> run() {
+    std::vector<std::thread> helpers;
+    const std::size_t threads = std::min(options_.jobs, groups_.size());
+    for (std::size_t j = 1; j < threads; ++j) helpers.emplace_back([this] { work(); });
+    work();
+    for (std::thread& helper : helpers) helper.join();
+    if (failure_) std::rethrow_exception(failure_);
+    std::vector<PointOutcome> finished;
+    for (auto& outcome : outcomes_) {
+      if (outcome) finished.push_back(std::move(*outcome));
+    }
+    return finished;
+  }
+
+ private:
+  void make_groups();
+  void work();
+  void run_group(const Group& group);
+  bool stopped() const { return stop_ || (options_.interrupted && options_.interrupted()); }
+
+  std::span<const PointItem> items_;
+  const PointsOptions& options_;
+  std::map<const PlanModel*, std::unique_ptr<DaviesPoints>> davies_;
+  std::vector<Group> groups_;
+  std::vector<std::optional<PointOutcome>> outcomes_;
+  std::atomic<std::size_t> next_ = 0;
+  std::atomic<bool> stop_ = false;
+  std::mutex reporting_;
+  std::size_t done_ = 0;
+  std::exception_ptr failure_;
+};
+
+/// Consecutive points of one plan share the lanes. Points with Davies' equation are put in an order
+/// in which those of one track follow each other, whatever the axes are.
+void Pool::make_groups() {
+  std::map<std::pair<const PlanModel*, std::vector<double>>, std::vector<Group>> by_track;
+  std::vector<std::pair<const PlanModel*, std::vector<double>>> order;
+  for (std::size_t i = 0; i < items_.size(); ++i) {
+    const PlanModel* model = items_[i].model;
+    if (const auto found = davies_.find(model); found != davies_.end()) {
+      const std::pair key(model, found->second->track_key(model->functions_at(items_[i].index)));
+      if (!by_track.contains(key)) order.push_back(key);
+      by_track[key].push_back({i});
+      continue;
+    }
+    const std::size_t most = std::min(model->lanes(), kMostGroup);
+    const bool joins = !groups_.empty() && groups_.back().size() < most && items_[groups_.back().front()].model == model;
+    if (joins) groups_.back().push_back(i);
+    else groups_.push_back({i});
+  }
+  for (const auto& key : order) {
+    for (Group& group : by_track[key]) groups_.push_back(std::move(group));
+  }
+}
+
+void Pool::work() {
+  try {
+    for (;;) {
+      const std::size_t group = next_++;
+      if (group >= groups_.size() || stopped()) return;
+      run_group(groups_[group]);
+    }
+  } catch (...) {
+    const std::scoped_lock lock(reporting_);
+    if (!failure_) failure_ = std::current_exception();
+    stop_ = true;
+  }
+}
+
+void Pool::run_group(const Group& group) {
+  const Interrupted interrupted = [this] { return stopped(); };
+  const PlanModel& model = *items_[group.front()].model;
+  std::vector<std::unique_ptr<PointTask>> owned;
+  std::vector<PointTask*> tasks;
+  for (const std::size_t i : group) {
+    owned.push_back(std::make_unique<PointTask>(model, items_[i].index, interrupted));
+    tasks.push_back(owned.back().get());
+  }
+  if (model.plan().equation == Equation::davies) davies_.at(&model)->advance(*tasks.front(), interrupted);
+  else advance(model, tasks, interrupted);
+  const std::scoped_lock lock(reporting_);
+  for (std::size_t k = 0; k < group.size(); ++k) {
+    PointOutcome outcome = tasks[k]->take_outcome();
+    if (outcome.error && outcome.error->kind == "interrupted") continue;
+    outcomes_[group[k]] = std::move(outcome);
+    ++done_;
+  }
+  if (options_.progress) options_.progress(done_);
+}
+
+}  // namespace
+
+std::vector<PointOutcome> run_points(std::span<const PointItem> items, const PointsOptions& options) {
+  return Pool(items, options).run();
+}
+
+}  // namespace tarn::runtime

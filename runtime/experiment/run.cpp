@@ -1,0 +1,226 @@
+#include "runtime/experiment/run.h"
+
+#include <algorithm>
+#include <chrono>
+#include <cmath>
+#include <map>
+#include <memory>
+#include <nlohmann/json.hpp>
+#include <set>
+
+#include "lang/support/check.h"
+#include "runtime/experiment/grid.h"
+#include "runtime/experiment/points.h"
+#include "runtime/experiment/reductions.h"
+#include "runtime/experiment/run_record.h"
+#include "runtime/experiment/tables.h"
+
+namespace tarn::runtime {
+namespace {
+
+using Clock = std::chrono::steady_clock;
+
+double seconds_since(Clock::time_point start) { return std::chrono::duration<double>(Clock::now() - start).count(); }
+
+/// One experiment while it is run.
+class Experiment {
+ public:
+  Experiment(std::span<const PlanAndKernel> plans, const RunOptions& options) : plans_(plans), options_(options) {
+    report_.experiment = plans.front().plan.experiment;
+    report_.any_plan = &plans.front().plan;
+    for (const PlanAndKernel& each : plans) {
+      models_.push_back(std::make_unique<PlanModel>(each.plan, each.kernel, each.tables));
+      for (const std::uint64_t index : each.plan.points) items_.push_back({index, models_.back().get()});
+    }
+    std::sort(items_.begin(), items_.end(), [](const PointItem& a, const PointItem& b) { return a.index < b.index; });
+    if (options.sample && !items_.empty()) take_sample();
+    report_.total = items_.size();
+  }
+
+  Result<Done, FolderError> open_folder();
+  void restore();
+  void run();
+  void judge_claims();
+  Result<Done, FolderError> write();
+  RunReport take_report() { return std::move(report_); }
+
+ private:
+  void take_sample();
+  void keep(std::vector<PointOutcome> fresh);
+  bool out_of_time() const { return options_.time_limit && seconds_since(start_) > *options_.time_limit; }
+  std::filesystem::path folder() const { return *options_.out / report_.experiment; }
+  ClaimRows claim_rows(const Plan& plan, std::shared_ptr<Functions> functions) const;
+
+  std::span<const PlanAndKernel> plans_;
+  const RunOptions& options_;
+  Clock::time_point start_ = Clock::now();
+  std::vector<std::unique_ptr<PlanModel>> models_;
+  std::vector<PointItem> items_;  ///< In grid order.
+  nlohmann::ordered_json key_;
+  FolderContents contents_;
+  std::map<std::uint64_t, PointOutcome> restored_;
+  std::set<std::string> point_remarks_;
+  RunReport report_;
+};
+
+void Experiment::take_sample() {
+  std::vector<PointItem> chosen;
+  for (const std::uint64_t i : sample_of_grid(items_.size(), std::max<std::uint64_t>(1, *options_.sample))) {
+    chosen.push_back(items_[i]);
+  }
+  items_ = std::move(chosen);
+}
+
+Result<Done, FolderError> Experiment::open_folder() {
+  if (!options_.out) return Done{};
+  key_ = run_key(plans_, options_);
+  auto contents = inspect_folder(folder(), key_);
+  if (!contents) return Unexpected{contents.error()};
+  contents_ = std::move(contents).value();
+  return Done{};
+}
+
+/// Points that an earlier run left in the folder; tables that cannot be read are computed anew.
+void Experiment::restore() {
+  if (!contents_.contains("run.json")) return;
+  ResultTables tables;
+  for (const auto& [name, text] : contents_) {
+    if (name == "run.json") continue;
+    auto table = parse_csv(text);
+    if (table) tables[name] = std::move(table).value();
+  }
+  std::vector<std::uint64_t> indices;
+  std::vector<const Plan*> plan_of;
+  for (const PointItem& item : items_) {
+    indices.push_back(item.index);
+    plan_of.push_back(&item.model->plan());
+  }
+  auto read = read_tables(tables, indices, plan_of);
+  if (!read) return;
+  restored_ = std::move(read).value();
+  for (const PointItem& item : items_) {
+    const auto found = restored_.find(item.index);
+    if (found == restored_.end()) continue;
+    Functions functions = item.model->functions_at(item.index);
+    if (!complete_unlisted(item.model->plan(), functions, found->second)) restored_.erase(found);
+  }
+  if (restored_.empty()) return;
+  const Recorded recorded = read_record(contents_.at("run.json"));
+  report_.counters = recorded.counters;
+  report_.leakage = recorded.leakage;
+  point_remarks_.insert(recorded.remarks.begin(), recorded.remarks.end());
+  report_.reused = restored_.size();
+}
+
+void Experiment::run() {
+  std::vector<PointItem> missing;
+  for (const PointItem& item : items_) {
+    if (!restored_.contains(item.index)) missing.push_back(item);
+  }
+  PointsOptions points;
+  points.jobs = std::max<std::size_t>(1, options_.jobs);
+  points.interrupted = [this] { return (options_.interrupted && options_.interrupted()) || out_of_time(); };
+  const Clock::time_point begun = Clock::now();
+  points.progress = [&, this](std::size_t done) {
+    if (!options_.progress) return;
+    const double left = done == 0 ? NAN
+                                  : seconds_since(begun) / static_cast<double>(done) *
+                                        static_cast<double>(missing.size() - done);
+    options_.progress(report_.reused + done, report_.total, left);
+  };
+  std::vector<PointOutcome> fresh = run_points(missing, points);
+  if (fresh.size() < missing.size()) {
+    report_.ending = options_.interrupted && options_.interrupted() ? Ending::interrupted : Ending::out_of_time;
+  }
+  keep(std::move(fresh));
+}
+
+void Experiment::keep(std::vector<PointOutcome> fresh) {
+  for (PointOutcome& outcome : fresh) {
+    report_.counters += outcome.counters;
+    report_.leakage = std::max(report_.leakage, outcome.leakage);
+    point_remarks_.insert(outcome.remarks.begin(), outcome.remarks.end());
+    restored_.emplace(outcome.index, std::move(outcome));
+  }
+  for (const PointItem& item : items_) {
+    const auto found = restored_.find(item.index);
+    if (found == restored_.end()) continue;
+    if (found->second.error) ++report_.failed;
+    else if (found->second.status != kStatusOk) ++report_.loose;
+    report_.points.push_back(std::move(found->second));
+    report_.plan_of.push_back(&item.model->plan());
+  }
+  std::set<std::string> known;
+  const auto add = [&](std::vector<std::string>& list, const std::string& text) {
+    if (known.insert(text).second) list.push_back(text);
+  };
+  for (const PlanAndKernel& each : plans_) {
+    for (const std::string& text : each.plan.left_out) add(report_.left_out, text);
+    for (const std::string& text : each.plan.remarks) add(report_.remarks, text);
+  }
+  for (const std::string& text : point_remarks_) add(report_.remarks, text);
+}
+
+ClaimRows Experiment::claim_rows(const Plan& plan, std::shared_ptr<Functions> functions) const {
+  return [&plan, functions](std::span<const double> observables, Instant at) {
+    for (std::size_t o = 0; o < observables.size(); ++o) {
+      functions->set_input(plan.observable_slot + static_cast<std::uint32_t>(o), observables[o]);
+    }
+    return Result<std::vector<double>, RunError>(functions->values(kClaims, at.s, at.t));
+  };
+}
+
+void Experiment::judge_claims() {
+  const std::vector<Claim>& claims = plans_.front().plan.claims;
+  std::vector<ClaimTally> tallies(claims.size());
+  std::map<const Plan*, const PlanModel*> model_of;
+  for (const auto& model : models_) model_of[&model->plan()] = model.get();
+  for (std::size_t i = 0; i < report_.points.size(); ++i) {
+    const Plan& plan = *report_.plan_of[i];
+    const auto functions = std::make_shared<Functions>(model_of.at(&plan)->functions_at(report_.points[i].index));
+    const ClaimRows rows = claim_rows(plan, functions);
+    for (std::size_t c = 0; c < claims.size(); ++c) {
+      TARN_CHECK(tally_point(plan, plan.claims[c], rows, report_.points[i], tallies[c]));
+    }
+  }
+  const bool sampled = options_.sample && report_.total < grid_size(plans_.front().plan.axes);
+  for (std::size_t c = 0; c < claims.size(); ++c) {
+    report_.claims.push_back(conclude(claims[c], tallies[c], sampled, report_.ending != Ending::finished));
+  }
+}
+
+Result<Done, FolderError> Experiment::write() {
+  report_.seconds = seconds_since(start_);
+  if (!options_.out) return Done{};
+  std::vector<const PointOutcome*> points;
+  for (const PointOutcome& point : report_.points) points.push_back(&point);
+  FolderContents files;
+  for (const auto& [name, table] : make_tables(points, report_.plan_of, *report_.any_plan)) files[name] = to_csv(table);
+  files["run.json"] = run_record(report_, key_, options_);
+  return write_folder(folder(), files);
+}
+
+}  // namespace
+
+Result<RunReport, FolderError> run_experiment(std::span<const PlanAndKernel> plans, const RunOptions& options) {
+  TARN_CHECK(!plans.empty());
+  Experiment experiment(plans, options);
+  const auto opened = experiment.open_folder();
+  if (!opened) return Unexpected{opened.error()};
+  experiment.restore();
+  experiment.run();
+  experiment.judge_claims();
+  const auto written = experiment.write();
+  if (!written) return Unexpected{written.error()};
+  return experiment.take_report();
+}
+
+int exit_status(const RunReport& report) {
+  if (report.failed > 0 || report.ending != Ending::finished) return 3;
+  const bool claim_failed = std::any_of(report.claims.begin(), report.claims.end(), [](const ClaimReport& claim) {
+    return claim.verdict == Verdict::fails;
+  });
+  return claim_failed ? 1 : 0;
+}
+
+}  // namespace tarn::runtime

@@ -1,0 +1,80 @@
+#pragma once
+/// \file One experiment from its plans to its files and its report.
+
+#include <cstdint>
+#include <filesystem>
+#include <functional>
+#include <optional>
+#include <span>
+#include <string>
+#include <vector>
+
+#include "lang/support/result.h"
+#include "runtime/experiment/claims.h"
+#include "runtime/experiment/folder.h"
+#include "runtime/experiment/outcome.h"
+#include "runtime/kernel/input_block.h"
+#include "runtime/kernel/kernel.h"
+#include "runtime/plan/plan.h"
+
+namespace tarn::runtime {
+
+/// A plan, the kernel compiled for it, and the numbers of the kernel's tables.
+struct PlanAndKernel {
+  Plan plan;
+  Kernel kernel;
+  std::vector<TableNumbers> tables;
+};
+
+/// What the answers depend on beside plan and kernel: part of a folder's key.
+struct Provenance {
+  struct Text {
+    std::string name;
+    std::string sha256;
+  };
+  std::string version;      ///< Of the program.
+  std::vector<Text> texts;  ///< Models, tables and the library.
+  std::string host;         ///< Stands under `machine`: no part of the key.
+};
+
+/// Points that are done, of how many, and the seconds that the rest may take (NaN: unknown yet).
+using Progress = std::function<void(std::uint64_t done, std::uint64_t total, double seconds_left)>;
+
+struct RunOptions {
+  std::size_t jobs = 1;                       ///< Threads, >= 1.
+  std::optional<std::uint64_t> sample;        ///< So many grid points only, spread evenly.
+  std::optional<std::filesystem::path> out;   ///< DIR: results go to DIR/EXPERIMENT. None: no files.
+  std::function<bool()> interrupted;          ///< Asked often, from several threads.
+  Progress progress;                          ///< Called from one thread at a time.
+  Provenance provenance;
+  std::optional<double> time_limit;           ///< Seconds from the call.
+};
+
+enum class Ending : std::uint8_t { finished, interrupted, out_of_time };
+
+struct RunReport {
+  std::string experiment;
+  Ending ending = Ending::finished;
+  std::uint64_t total = 0;                    ///< Points asked for: the grid's, or the sample's.
+  std::vector<PointOutcome> points;           ///< Those finished, in grid order.
+  std::vector<const Plan*> plan_of;           ///< The plan of each; points into the argument of run_experiment.
+  const Plan* any_plan = nullptr;             ///< The first plan: names and axes are those of all.
+  std::uint64_t reused = 0;                   ///< Read from the folder.
+  std::uint64_t failed = 0, loose = 0;        ///< Failed points; answers that are marked.
+  std::vector<ClaimReport> claims;
+  std::vector<std::string> left_out, remarks;
+  double leakage = 0;                         ///< The most that left the levels kept, an upper estimate.
+  Counters counters;
+  double seconds = 0;
+};
+
+/// Runs the grid. Every bit of points, claims and files, what stands under `machine` in run.json
+/// excepted, is the same for any number of jobs, and for a run that was interrupted and continued.
+/// Errors: those of the folder, found before anything is computed or written.
+Result<RunReport, FolderError> run_experiment(std::span<const PlanAndKernel> plans, const RunOptions& options);
+
+/// The exit status of the command line: 3 if a point failed or the run did not finish, else 1 if a
+/// claim failed, else 0.
+int exit_status(const RunReport& report);
+
+}  // namespace tarn::runtime
