@@ -9,13 +9,14 @@
 /// e5^2 / sqrt(e5^2 + e3^2 / 100), in the plain 2-norm of the state. It may be tolerance x
 /// min(1, 128 x step / duration), and 1/256 of the tolerance at least, so that the errors of all steps
 /// together stay within a few tolerances up to 3e4 steps and grow with their number beyond, as long
-/// as f does not blow errors up. On oscillations over 1 to 1000 periods the error at the end is 0.001
-/// to 7 tolerances and follows the tolerance; rounding adds about 1e-15 a step.
+/// as f does not blow errors up. On 48 random anneals over 1 to 1000 periods the error at the end was
+/// at most 9 tolerances, for tolerances from 1e-4 to 1e-9; rounding adds about 1e-15 a step.
 /// Source of the estimate: Solving Ordinary Differential Equations I (Springer, 1993), II.10.
 
+#include <complex>
 #include <cstddef>
+#include <cstdint>
 #include <functional>
-#include <limits>
 #include <optional>
 #include <span>
 #include <vector>
@@ -60,10 +61,15 @@ struct LaneTask {
 /// Called with a lane, the index of a requested time, and an array whose lane holds the state there.
 using OnTime = std::function<void(std::size_t lane, std::size_t index, const double* state)>;
 
+/// comoving: for dy/dt = -i H y with Hermitian H and pairs of real and imaginary part. Every step is
+/// taken on exp(i theta) y with theta' the mean energy at its start, which is exact and lets steps be
+/// as long as the spread of the energies allows: two to five times longer near the ground state.
+enum class Frame : std::uint8_t { fixed, comoving };
+
 class ExplicitIntegrator {
  public:
   /// `size` doubles a lane; `lanes` divides 8.
-  ExplicitIntegrator(std::size_t size, std::size_t lanes);
+  ExplicitIntegrator(std::size_t size, std::size_t lanes, Frame frame = Frame::fixed);
 
   /// The states, interleaved by lanes: set before run(), at the end times after it. A lane that
   /// failed holds its state at the last good step.
@@ -87,6 +93,8 @@ class ExplicitIntegrator {
     double last_ratio = 1e-4;  ///< Error over tolerance of the last accepted step.
     bool just_rejected = false;
     std::size_t piece = 0, next_time = 0;
+    double energy = 0;                ///< Taken out of the derivatives of this step [rad/ns].
+    std::complex<double> phase = 1;   ///< The solution is phase times the state.
     std::optional<Failure> failure;
     Counters counters;
   };
@@ -100,6 +108,9 @@ class ExplicitIntegrator {
   void announce(const RightHandSide& f, std::span<const double> c);
   void evaluate(const RightHandSide& f, std::size_t stage, std::size_t node, double* argument);
   void refresh(const RightHandSide& f, std::span<const LaneTask> tasks);
+  void follow_energy();
+  const double* solution();
+  void settle_phases(std::span<const LaneTask> tasks);
   void choose_steps(std::span<const LaneTask> tasks);
   void attempt(const RightHandSide& f);
   void judge(std::span<const LaneTask> tasks);
@@ -110,6 +121,7 @@ class ExplicitIntegrator {
   void report_until(std::size_t l, const LaneTask& task, const OnTime& on_time);
 
   std::size_t size_, width_, length_;
+  Frame frame_;
   std::vector<AlignedArray> vectors_;  ///< y, k0..k15, next y, argument.
   std::vector<Lane> lanes_;
   std::vector<double> node_times_, weights_;

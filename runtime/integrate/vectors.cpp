@@ -79,7 +79,7 @@ void fold(const Pack& sums, std::size_t lanes, double* squares) {
 }  // namespace
 
 AlignedArray::AlignedArray(std::size_t count)
-    : size_((std::max<std::size_t>(count, 1) + kPackWidth - 1) / kPackWidth * kPackWidth) {
+    : size_((std::max<std::size_t>(count, 1) + 2 * kPackWidth - 1) / (2 * kPackWidth) * (2 * kPackWidth)) {
   void* memory = std::aligned_alloc(64, size_ * sizeof(double));
   if (memory == nullptr) throw std::bad_alloc();
   std::memset(memory, 0, size_ * sizeof(double));

@@ -3,7 +3,7 @@
 ///
 /// An array of `lanes` interleaved vectors holds component i of lane l at i lanes + l (see
 /// runtime/abi/kernel.h); one plain vector is the case lanes = 1. `lanes` divides 8.
-/// Lengths of arrays are multiples of 8, the rest beyond the vectors being zero.
+/// Lengths of arrays are multiples of 16, the rest beyond the vectors being zero.
 
 #include <cstddef>
 #include <cstdlib>
@@ -12,7 +12,7 @@
 
 namespace tarn::runtime {
 
-/// Zeroed doubles on a 64-byte boundary; the length is rounded up to a multiple of 8.
+/// Zeroed doubles on a 64-byte boundary; the length is rounded up to a multiple of 16.
 class AlignedArray {
  public:
   AlignedArray() = default;
