@@ -100,6 +100,7 @@ void check_declarations(Program& program, std::uint64_t& steps, Diagnostics& dia
   steps = session.steps;
   program.graph = std::move(graph);
   program.opaque = session.opaque;
+  for (const ParameterUse& use : session.parameters) program.graph_parameters.push_back(use.name);
 }
 
 /// A chip that needs no arguments is unrolled, so that its places are checked too.

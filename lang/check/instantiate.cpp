@@ -105,7 +105,6 @@ Instance elaborate(Session& session, const Statements& statements, const Program
   Scope scope = experiment_scope(session, statements, site);
   elaborate_chip_use(session, scope, *statements.chip, unrolled, instance);
   for (const ast::Let* let : statements.lets) look_up(session, scope, let->name);
-  if (unrolled.qubits.empty() && session.diagnostics.has_errors()) return instance;
   finish_chip(unrolled, instance);
   if (statements.begin != nullptr) elaborate_begin(session, scope, *statements.begin, instance);
   if (statements.pace != nullptr) elaborate_pace(session, scope, *statements.pace, instance);
@@ -145,18 +144,78 @@ void report_missing_values(Session& session, const Instance& instance) {
   }
 }
 
-/// Values of the swept counts at a grid index, and of swept parameters that have no default.
-Overrides at_point(const Program& program, const std::vector<SweptAxis>& axes, std::uint64_t point, bool counts) {
+/// Values of the swept counts at a grid index; the last axis is the fastest.
+Overrides counts_at(const Program& program, const std::vector<SweptAxis>& axes, std::uint64_t point) {
   Overrides values;
   for (auto axis = axes.rbegin(); axis != axes.rend(); ++axis) {
     const std::uint64_t size = axis->front().values.size();
     for (const SweptColumn& column : *axis) {
       const ProgramParameter& parameter = program.parameters[column.parameter];
-      if (parameter.count == counts) values[parameter.name] = column.values[point % size];
+      if (parameter.count) values[parameter.name] = column.values[point % size];
     }
     point /= size;
   }
   return values;
+}
+
+/// A swept parameter without default takes its first value where one point must stand for all.
+Overrides values_without_default(const Program& program, const std::vector<SweptAxis>& axes) {
+  Overrides values;
+  for (const SweptAxis& axis : axes) {
+    for (const SweptColumn& column : axis) {
+      const ProgramParameter& parameter = program.parameters[column.parameter];
+      if (!parameter.value) values[parameter.name] = column.values.front();
+    }
+  }
+  return values;
+}
+
+/// Grid points that share their counts.
+struct PointGroup {
+  Overrides counts;
+  std::vector<std::uint64_t> points;
+};
+
+/// In the order of their first points; nothing if the grid is too large.
+std::optional<std::vector<PointGroup>> group_points(Session& session, const std::vector<SweptAxis>& axes,
+                                                    const Statements& statements) {
+  std::uint64_t points = 1;
+  for (const SweptAxis& axis : axes) {
+    points *= axis.front().values.size();
+    if (points <= kMaxPoints) continue;
+    session.report(statements.sweeps.front()->span, diag::grid_too_large, kMaxPoints);
+    return std::nullopt;
+  }
+  std::map<Overrides, std::size_t> rows;
+  std::vector<PointGroup> groups;
+  for (std::uint64_t point = 0; point < points; ++point) {
+    Overrides counts = counts_at(session.program, axes, point);
+    const auto [row, is_new] = rows.try_emplace(counts, groups.size());
+    if (is_new) groups.push_back({std::move(counts), {}});
+    groups[row->second].points.push_back(point);
+    if (groups.size() <= kMaxInstances) continue;
+    session.report(statements.sweeps.front()->span, diag::grid_too_large, kMaxInstances);
+    return std::nullopt;
+  }
+  return groups;
+}
+
+Instance elaborate_group(const Program& program, std::uint32_t experiment, const Statements& statements,
+                         const std::vector<SweptAxis>& axes, const PointGroup& group, const Overrides& values,
+                         std::uint64_t& steps, Diagnostics& diagnostics) {
+  Graph graph;
+  Session session{program, graph, diagnostics, values};
+  session.steps = steps;
+  Instance instance = elaborate(session, statements, program.experiments[experiment]);
+  instance.graph = graph;
+  attach_axes(session, axes, instance);
+  if (!session.exhausted) report_missing_values(session, instance);
+  instance.parameters = session.parameters;
+  instance.points = group.points;
+  instance.remarks = session.remarks;
+  instance.counts.assign(session.counts_used.begin(), session.counts_used.end());
+  steps = session.steps;
+  return instance;
 }
 
 }  // namespace
@@ -174,55 +233,21 @@ std::vector<Instance> elaborate_experiment(const Program& program, std::uint32_t
   Graph scratch;
   Session reading{program, scratch, diagnostics, overrides};
   reading.steps = steps;
+  reading.constants_only = true;
   const Statements statements = sort_statements(reading, experiment_of(program, experiment));
   const Site site{.where = "in an experiment"};
-  reading.constants_only = true;
   const Scope scope = experiment_scope(reading, statements, site);
   const auto axes = elaborate_sweeps(reading, scope, statements);
   steps = reading.steps;
-  if (statements.chip == nullptr) return {};
-  std::uint64_t points = 1;
-  for (const SweptAxis& axis : axes) {
-    points *= axis.front().values.size();
-    if (points > kMaxPoints) {
-      diagnostics.report(statements.sweeps.front()->span, diag::grid_too_large, kMaxPoints);
-      return {};
-    }
-  }
-  std::map<Overrides, std::vector<std::uint64_t>> groups;
-  std::vector<Overrides> order;
-  for (std::uint64_t point = 0; point < points; ++point) {
-    const Overrides counts = at_point(program, axes, point, true);
-    auto& members = groups[counts];
-    if (members.empty()) order.push_back(counts);
-    members.push_back(point);
-    if (order.size() > kMaxInstances) {
-      diagnostics.report(statements.sweeps.front()->span, diag::grid_too_large, kMaxInstances);
-      return {};
-    }
-  }
+  const auto groups = statements.chip == nullptr ? std::nullopt : group_points(reading, axes, statements);
   std::vector<Instance> result;
-  for (const Overrides& counts : order) {
-    Overrides all = at_point(program, axes, 0, false);
-    for (const ProgramParameter& parameter : program.parameters) {
-      if (parameter.value) all.erase(parameter.name);
-    }
-    all.insert(overrides.begin(), overrides.end());
-    for (const auto& [name, value] : counts) all.insert_or_assign(name, value);
-    Graph graph;
-    Session session{program, graph, diagnostics, all};
-    session.steps = steps;
-    Instance instance = elaborate(session, statements, program.experiments[experiment]);
-    instance.graph = graph;
-    attach_axes(session, axes, instance);
-    if (!session.exhausted) report_missing_values(session, instance);
-    instance.parameters = session.parameters;
-    instance.points = groups[counts];
-    instance.remarks = session.remarks;
-    instance.counts.assign(session.counts_used.begin(), session.counts_used.end());
-    steps = session.steps;
-    result.push_back(std::move(instance));
-    if (session.exhausted) break;
+  if (!groups) return result;
+  for (const PointGroup& group : *groups) {
+    Overrides values = values_without_default(program, axes);
+    values.insert(overrides.begin(), overrides.end());
+    for (const auto& [name, value] : group.counts) values.insert_or_assign(name, value);
+    result.push_back(elaborate_group(program, experiment, statements, axes, group, values, steps, diagnostics));
+    if (steps > kMaxSteps) break;
   }
   if (diagnostics.error_count() != errors) result.clear();
   return result;

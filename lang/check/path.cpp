@@ -182,6 +182,11 @@ Value evaluate_word(Session& session, const Scope& scope, const ast::Path& path)
     if (scope.site == nullptr || scope.site->readings == nullptr) return not_here(session, scope, step.name);
     return evaluate_reading(session, scope, path);
   }
+  const Readings* readings = scope.site != nullptr ? scope.site->readings : nullptr;
+  if (readings != nullptr && readings->by_name.contains(name)) {
+    session.report(path.span, diag::other_moment, name);
+    return {};
+  }
   if (is_predefined(name)) {
     session.report(path.span, diag::wrong_use, name);
     return {};

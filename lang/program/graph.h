@@ -14,6 +14,8 @@
 #include "lang/source/span.h"
 
 namespace tarn {
+/// The syntax has nodes of its own; an inline namespace keeps the two apart for the linker.
+inline namespace expressions {
 
 struct NodeId {
   std::uint32_t row = 0;
@@ -44,9 +46,6 @@ struct Node {
   bool truth = false;
   Span span{};  ///< Where it was first written.
 };
-
-/// How many of a, b, c the operation reads.
-int operand_count(NodeOp op);
 
 /// How a table is read between its points.
 enum class Interpolation : std::uint8_t { linear, monotone, spline, loglog };
@@ -79,6 +78,11 @@ struct Graph {
   NodeId add(Node node);
   NodeId constant(double number, Dimension dimension, Span span);
 };
+
+}  // namespace expressions
+
+/// How many of a, b, c the operation reads.
+int operand_count(NodeOp op);
 
 /// What a node depends on, through all of its operands.
 struct Dependence {

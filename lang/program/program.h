@@ -73,6 +73,7 @@ struct Program {
   std::vector<ProgramPart> parts;
   std::vector<ProgramExperiment> experiments;  ///< Of the main file, in its order.
   Graph graph;                                 ///< Of the laws.
+  std::vector<std::string> graph_parameters;   ///< Names of its parameter nodes.
   std::vector<std::string> opaque;             ///< Names of arguments: parameter node kOpaque + k.
 
   const Ast& ast(std::uint32_t module) const { return loaded->modules[module].ast; }
