@@ -124,7 +124,7 @@ std::string digits_allowed(double value, double error) {
   return fmt::format("{:.{}g}", value, digits);
 }
 
-std::string render_summary(const RunReport& report, std::size_t most_rows) {
+std::string summary(const RunReport& report, std::size_t most_rows) {
   std::vector<const PointOutcome*> points;
   for (const PointOutcome& point : report.points) points.push_back(&point);
   const ResultTables tables = make_tables(points, report.plan_of, *report.any_plan);

@@ -261,7 +261,7 @@ TEST_CASE("a scan of the gap, its lowest value and a claim on it") {
   CHECK(report.claims[0].verdict == Verdict::holds);
   CHECK(report.claims[0].tally.weakest->margin == Approx(0.3));
   CHECK(exit_status(report) == 0);
-  const std::string text = render_summary(report);
+  const std::string text = summary(report);
   CHECK(text.find("holds      lowest(gap) >= 0.5") != std::string::npos);
   CHECK(text.find("low ") == std::string::npos);
 }
@@ -372,7 +372,7 @@ TEST_CASE("failed points keep a row, the others are not touched") {
   alone.axes = {axis("ta", hand::kTa, {8})};
   alone.points = {0};
   CHECK(answer(run(alone, hand::one_qubit(true)), 0).value == answer(report, 0, 2).value);
-  const std::string text = render_summary(report);
+  const std::string text = summary(report);
   CHECK(text.find("negative_time") != std::string::npos);
   CHECK(text.find("1 of 3 points failed") != std::string::npos);
 }
@@ -433,7 +433,7 @@ TEST_CASE("the short table leaves out the middle and shows the digits that are k
   }
   plan.points.erase(plan.points.begin());
   observe(plan, "p", ReadPopulation{kind(StateSetKind::ground)}, AtEnd{});
-  const std::string text = render_summary(run(plan, hand::one_qubit(true)), 7);
+  const std::string text = summary(run(plan, hand::one_qubit(true)), 7);
   CHECK(std::count(text.begin(), text.end(), '\n') == 8);
   CHECK(text.find("... 24 more") != std::string::npos);
   CHECK(digits_allowed(0.123456789, 1e-4) == "0.12346");
