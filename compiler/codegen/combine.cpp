@@ -22,6 +22,7 @@ class CombineEmitter {
     weight_data_ = function->getArg(2);
     vectors_ = function->getArg(3);
     argument_ = function->getArg(4);
+    function->getArg(4)->addAttr(llvm::Attribute::NoAlias);
     auto* many = BasicBlock::Create(build_.getContext(), "many", function);
     auto* choice = build_.CreateSwitch(count, many, kMostAtOnce);
     for (unsigned m = 1; m <= kMostAtOnce; ++m) {

@@ -4,6 +4,7 @@
 #include <map>
 
 #include "compiler/codegen/combine.h"
+#include "compiler/codegen/diagonal.h"
 #include "compiler/codegen/lanes.h"
 #include "compiler/codegen/scalar.h"
 #include "compiler/codegen/sweep.h"
@@ -67,7 +68,7 @@ class KernelEmitter {
     const std::uint64_t doubles = std::uint64_t{2} << generator.bits;
     llvm::Function* combine = combine_of(sweep_width(unit_, generator.bits), Weights::one_each);
     add(TARN_STAGE, index, emit_stage(unit_, combine, apply, doubles, "tarn_stage" + tail));
-    if (generator.lanes) lane_entries(index, plan, doubles);
+    if (generator.lanes) lane_entries(index, plan_elements(generator), doubles);
   }
 
   void lane_entries(std::uint32_t index, const SweepPlan& plan, std::uint64_t doubles) {

@@ -4,6 +4,7 @@
 #include <bit>
 #include <map>
 
+#include "compiler/codegen/diagonal.h"
 #include "compiler/codegen/tile.h"
 
 namespace tarn::compiler {
@@ -20,14 +21,15 @@ class ApplyEmitter {
   ApplyEmitter(Unit& unit, const SweepPlan& plan)
       : unit_(unit), build_(unit.build), plan_(plan), width_(sweep_width(unit, plan.bits)),
         lane_bits_(static_cast<std::uint32_t>(std::countr_zero(width_)) - 1),
-        tile_(choose_tile(plan.bits, lane_bits_, unit.lanes == 8 ? 3 : 2, plan.flips.size())) {
+        tile_(choose_tile(plan.bits, lane_bits_, unit.lanes == 8 ? 3 : 2, plan.flips.size(), !plan.diagonal)) {
     for (const Flip& flip : plan.flips) {
       if (!flip.real.empty()) real_forms_[flip.real].push_back(flip.mask);
       if (!flip.imaginary.empty()) imaginary_forms_[flip.imaginary].push_back(flip.mask);
     }
   }
 
-  llvm::Function* run(const std::string& name) {
+  /// `summed` fills the summed diagonal, if the plan has one.
+  llvm::Function* run(const std::string& name, llvm::Function* summed) {
     auto* p = unit_.pointer();
     auto* function = add_function(unit_, name, {p, p, p, p}, true);
     coefficients_ = function->getArg(0);
@@ -36,6 +38,7 @@ class ApplyEmitter {
     y_ = function->getArg(3);
     function->getArg(3)->addAttr(llvm::Attribute::NoAlias);
     load_coefficients();
+    if (summed) build_.CreateCall(summed, {coefficients_, summed_diagonal()});
     if (tile_.bases() == 1) {
       emit_tile(build_.getInt64(0));
     } else {
@@ -50,6 +53,10 @@ class ApplyEmitter {
   using Vectors = std::vector<Value*>;
 
   std::uint64_t vectors() const { return tile_.vectors(); }
+
+  /// The summed diagonal lies in the upper half of y. Tiles go upwards, and a tile reads its part
+  /// before it writes: amplitude j covers doubles 2j and 2j + 1, and 2j + 1 < 2^bits + j + 1.
+  Value* summed_diagonal() { return build_.CreateConstGEP1_64(unit_.real(), y_, std::uint64_t{1} << plan_.bits); }
 
   Value* scalar_form(const LinearForm& form) {
     Value* sum = nullptr;
@@ -87,6 +94,10 @@ class ApplyEmitter {
       if (terms.empty()) continue;
       Vectors signs(vectors(), nullptr);
       for (std::uint64_t v = 0; v < vectors(); ++v) add_product(sum[v], expanded(terms, v, signs), flipped(flip.mask, v));
+    }
+    if (plan_.diagonal && plan_.diagonal->imaginary == imaginary) {
+      Vectors signs(vectors(), nullptr);
+      for (std::uint64_t v = 0; v < vectors(); ++v) add_product(sum[v], expanded({}, v, signs), own(v));
     }
     for (const auto& [form, masks] : forms) add_form(sum, scalars_.at(form), masks);
     return sum;
@@ -183,6 +194,7 @@ class ApplyEmitter {
   }
 
   /// Sum of coefficients times sign vectors at vector v, each number twice: for both parts of x.
+  /// No terms stand for the summed diagonal.
   /// `sums` keeps what one load gives: the numbers of two neighbours, or of one if there are none.
   Value* expanded(const std::vector<PreparedTerm>& terms, std::uint64_t v, Vectors& sums) {
     const std::uint64_t first = numbers_at_once() == width_ ? v & ~std::uint64_t{1} : v;
@@ -199,6 +211,7 @@ class ApplyEmitter {
   Value* weighted_signs(const std::vector<PreparedTerm>& terms, std::uint64_t v) {
     Value* sum = nullptr;
     const unsigned numbers = numbers_at_once();
+    if (terms.empty()) return load(unit_, unit_.vector(numbers), summed_diagonal(), place(0, v, 1), numbers * 8);
     for (const PreparedTerm& term : terms) {
       Value* offset = build_.CreateAdd(place(0, v, 1), build_.getInt64(std::uint64_t{term.vector} << plan_.bits));
       add_product(sum, load(unit_, unit_.vector(numbers), prepared_, offset, numbers * 8), weights_.at(term.row));
@@ -222,35 +235,6 @@ class ApplyEmitter {
   std::map<std::uint32_t, Value*> weights_;  ///< Coefficients beside sign vectors.
 };
 
-/// The spectra of all sign vectors as two arrays: where each factor goes in `prepared`, and the factor.
-std::pair<llvm::Constant*, llvm::Constant*> spectrum_arrays(Unit& unit, const SweepPlan& plan) {
-  std::vector<std::uint64_t> places;
-  std::vector<double> factors;
-  for (std::size_t k = 0; k < plan.vectors.size(); ++k) {
-    for (const auto& [z, factor] : plan.vectors[k].spectrum) {
-      places.push_back((static_cast<std::uint64_t>(k) << plan.bits) + z);
-      factors.push_back(factor);
-    }
-  }
-  auto& context = unit.module.getContext();
-  return {llvm::ConstantDataArray::get(context, places), llvm::ConstantDataArray::get(context, factors)};
-}
-
-/// One level of the Walsh transform for pairs `distance` apart, over all of `prepared`.
-void emit_butterflies(Unit& unit, Value* prepared, Value* total, std::uint64_t distance) {
-  auto& build = unit.build;
-  const unsigned width = static_cast<unsigned>(std::min<std::uint64_t>(distance, unit.lanes));
-  llvm::Type* type = width == 1 ? unit.real() : unit.vector(width);
-  loop(unit, build.getInt64(0), total, build.getInt64(2 * distance), [&](Value* first) {
-    loop(unit, first, build.CreateAdd(first, build.getInt64(distance)), build.getInt64(width), [&](Value* i) {
-      Value* j = build.CreateAdd(i, build.getInt64(distance));
-      Value *a = load(unit, type, prepared, i, 8), *b = load(unit, type, prepared, j, 8);
-      store(unit, build.CreateFAdd(a, b), prepared, i, 8);
-      store(unit, build.CreateFSub(a, b), prepared, j, 8);
-    });
-  });
-}
-
 }  // namespace
 
 unsigned sweep_width(const Unit& unit, std::uint32_t bits) {
@@ -258,27 +242,8 @@ unsigned sweep_width(const Unit& unit, std::uint32_t bits) {
 }
 
 llvm::Function* emit_apply(Unit& unit, const SweepPlan& plan, const std::string& name) {
-  return ApplyEmitter(unit, plan).run(name);
-}
-
-llvm::Function* emit_prepare(Unit& unit, const SweepPlan& plan, const std::string& name) {
-  auto& build = unit.build;
-  auto* function = add_function(unit, name, {unit.pointer()}, true);
-  Value* prepared = function->getArg(0);
-  if (!plan.vectors.empty()) {
-    const auto [places, factors] = spectrum_arrays(unit, plan);
-    const std::uint64_t count = llvm::cast<llvm::ArrayType>(places->getType())->getNumElements();
-    Value *place_data = constant_data(unit, "places", places), *factor_data = constant_data(unit, "factors", factors);
-    Value* total = build.getInt64(plan.prepared_doubles());
-    build.CreateMemSet(prepared, build.getInt8(0), plan.prepared_doubles() * 8, llvm::MaybeAlign(8));
-    loop(unit, build.getInt64(0), build.getInt64(count), build.getInt64(1), [&](Value* k) {
-      Value* place = build.CreateLoad(unit.index(), build.CreateGEP(unit.index(), place_data, k));
-      store(unit, load(unit, unit.real(), factor_data, k, 8), prepared, place, 8);
-    });
-    for (std::uint32_t bit = 0; bit < plan.bits; ++bit) emit_butterflies(unit, prepared, total, std::uint64_t{1} << bit);
-  }
-  build.CreateRet(build.getInt32(0));
-  return function;
+  llvm::Function* summed = plan.diagonal ? emit_summed_diagonal(unit, plan, name + "_diagonal") : nullptr;
+  return ApplyEmitter(unit, plan).run(name, summed);
 }
 
 }  // namespace tarn::compiler

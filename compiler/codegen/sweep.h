@@ -1,5 +1,5 @@
 #pragma once
-/// \file Compiled generators on plain vectors: prepare, apply, stage.
+/// \file Compiled generators on plain vectors: apply.
 ///
 /// apply walks the output in register blocks of up to 8 vectors. Flips of the lowest bits are
 /// shuffles of a register, of the next ones another register of the block, of the rest a load from
@@ -11,9 +11,6 @@
 #include "compiler/codegen/unit.h"
 
 namespace tarn::compiler {
-
-/// A tarn_prepare_fn: one fast Walsh transform a sign vector.
-llvm::Function* emit_prepare(Unit& unit, const SweepPlan& plan, const std::string& name);
 
 /// A tarn_apply_fn on 2^bits interleaved complex amplitudes.
 llvm::Function* emit_apply(Unit& unit, const SweepPlan& plan, const std::string& name);

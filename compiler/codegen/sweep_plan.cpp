@@ -8,6 +8,9 @@
 namespace tarn::compiler {
 namespace {
 
+constexpr std::size_t kMostPrepared = 5;      ///< Sign vectors of a diagonal; more are summed anew.
+constexpr std::uint32_t kSummedFromBits = 7;  ///< Smaller diagonals stay in the first-level cache.
+
 /// Factors of (-1)^popcount(z & j) by z, for one flip and one coefficient.
 using Spectrum = std::map<std::uint64_t, double>;
 struct Parts {
@@ -27,7 +30,7 @@ std::complex<double> output_factor(const runtime::WordTerm& term) {
 
 class Planner {
  public:
-  explicit Planner(const ir::Generator& generator) {
+  Planner(const ir::Generator& generator, bool may_sum) : may_sum_(may_sum && generator.bits >= kSummedFromBits) {
     plan_.bits = generator.bits;
     for (const auto& group : generator.sum.groups) {
       for (const auto& term : group.terms) {
@@ -40,6 +43,7 @@ class Planner {
   }
 
   SweepPlan run() {
+    if (may_sum_ && parts_.contains(0) && !take_diagonal(false)) take_diagonal(true);
     for (const auto& [mask, rows] : parts_) {
       Flip flip;
       flip.mask = mask;
@@ -54,6 +58,22 @@ class Planner {
   }
 
  private:
+  /// Moves one part of the diagonal out if it has too many coefficients. False if it has not.
+  bool take_diagonal(bool imaginary) {
+    std::map<std::uint64_t, LinearForm> forms;
+    std::size_t vectors = 0;
+    for (auto& [row, parts] : parts_.at(0)) {
+      const Spectrum& spectrum = imaginary ? parts.imaginary : parts.real;
+      vectors += spectrum.size() > 1 || (spectrum.size() == 1 && spectrum.begin()->first != 0) ? 1u : 0u;
+      for (const auto& [z, factor] : spectrum)
+        if (factor != 0) forms[z].emplace_back(row, factor);
+    }
+    if (vectors <= kMostPrepared) return false;
+    for (auto& [row, parts] : parts_.at(0)) (imaginary ? parts.imaginary : parts.real).clear();
+    plan_.diagonal = SummedDiagonal{imaginary, {forms.begin(), forms.end()}};
+    return true;
+  }
+
   void place(std::uint32_t row, const Spectrum& spectrum, LinearForm& form, std::vector<PreparedTerm>& prepared) {
     SignVector vector;
     for (const auto& [z, factor] : spectrum)
@@ -72,6 +92,7 @@ class Planner {
     return place->second;
   }
 
+  bool may_sum_;
   SweepPlan plan_;
   std::map<std::uint64_t, std::map<std::uint32_t, Parts>> parts_;
   std::map<std::vector<std::pair<std::uint64_t, double>>, std::uint32_t> numbers_;
@@ -90,7 +111,9 @@ LinearForm at(const SweepPlan& plan, const LinearForm& uniform, const std::vecto
 
 }  // namespace
 
-SweepPlan plan_sweep(const ir::Generator& generator) { return Planner(generator).run(); }
+SweepPlan plan_sweep(const ir::Generator& generator) { return Planner(generator, true).run(); }
+
+SweepPlan plan_elements(const ir::Generator& generator) { return Planner(generator, false).run(); }
 
 std::vector<Element> row_elements(const SweepPlan& plan, std::uint64_t j) {
   std::vector<Element> elements;

@@ -6,6 +6,7 @@
 /// +-factors that `prepare` computes once.
 
 #include <cstdint>
+#include <optional>
 #include <utility>
 #include <vector>
 
@@ -34,15 +35,27 @@ struct Flip {
   std::vector<PreparedTerm> prepared_real, prepared_imaginary;
 };
 
+/// A diagonal with so many coefficients that its sign vectors would cost more to read than to sum
+/// anew: d(j) = sum of forms * (-1)^popcount(z & j), transformed before each sweep.
+struct SummedDiagonal {
+  bool imaginary = false;
+  std::vector<std::pair<std::uint64_t, LinearForm>> spectrum;  ///< (z, form), z increasing.
+};
+
 struct SweepPlan {
   std::uint32_t bits = 0;
   std::vector<Flip> flips;           ///< Masks increase; none is empty.
   std::vector<SignVector> vectors;   ///< No two equal.
+  std::optional<SummedDiagonal> diagonal;
   /// Doubles that `prepare` fills: 2^bits a sign vector, one after another.
   std::uint64_t prepared_doubles() const { return static_cast<std::uint64_t>(vectors.size()) << bits; }
 };
 
+/// The plan of a sweep over a whole vector.
 SweepPlan plan_sweep(const ir::Generator& generator);
+
+/// The same without a summed diagonal: what row_elements() takes.
+SweepPlan plan_elements(const ir::Generator& generator);
 
 /// One matrix element as a complex linear form: G(j, j ^ mask).
 struct Element {
@@ -50,7 +63,8 @@ struct Element {
   LinearForm real, imaginary;
 };
 
-/// The elements of row j that are not zero identically, by mask. For small generators.
+/// The elements of row j that are not zero identically, by mask. For small generators, from
+/// plan_elements().
 std::vector<Element> row_elements(const SweepPlan& plan, std::uint64_t j);
 
 }  // namespace tarn::compiler

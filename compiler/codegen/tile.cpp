@@ -47,10 +47,10 @@ Place Tile::flipped(std::uint64_t mask, std::uint64_t v) const {
   return {mask >> base_shift() << base_shift(), v};
 }
 
-Tile choose_tile(std::uint32_t bits, std::uint32_t lane_bits, std::uint32_t register_bits, std::uint64_t flips) {
+Tile choose_tile(std::uint32_t bits, std::uint32_t lane_bits, std::uint32_t register_bits, std::uint64_t flips, bool may_join) {
   std::uint32_t size = std::min(register_bits, bits - lane_bits);
   while (size > 0 && (flips << size) > kMostVectorOps) --size;
-  const bool scattered = bits <= kPairsUpTo && size >= 3 && bits >= lane_bits + size + 2;
+  const bool scattered = may_join && bits <= kPairsUpTo && size >= 3 && bits >= lane_bits + size + 2;
   const std::uint32_t joined = scattered ? 2 : 0;
   return Tile(bits, lane_bits, size - joined, joined);
 }

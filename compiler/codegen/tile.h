@@ -45,7 +45,7 @@ class Tile {
 };
 
 /// The tile for vectors of 2^lane_bits amplitudes: 2^register_bits vectors, fewer for small systems
-/// or very many flips.
-Tile choose_tile(std::uint32_t bits, std::uint32_t lane_bits, std::uint32_t register_bits, std::uint64_t flips);
+/// or very many flips. Tiles without joined pairs are contiguous and go upwards.
+Tile choose_tile(std::uint32_t bits, std::uint32_t lane_bits, std::uint32_t register_bits, std::uint64_t flips, bool may_join);
 
 }  // namespace tarn::compiler

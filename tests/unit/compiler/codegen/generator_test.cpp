@@ -111,7 +111,7 @@ TEST_CASE("apply handles every word of three bits at once", "[codegen]") {
 }
 
 TEST_CASE("structured generators: annealing chains, -i times them, diagonal ones, nothing at all", "[codegen]") {
-  const std::uint32_t bits = GENERATE(1u, 2u, 4u, 6u, 9u);
+  const std::uint32_t bits = GENERATE(1u, 2u, 4u, 6u, 8u);
   Module module = simple_coefficients(3);
   Generator chain{"chain", bits, {}, {}, false};
   chain.sum.groups = {{0, {}}, {1, {}}};
@@ -160,4 +160,24 @@ TEST_CASE("stage combines any number of vectors and applies the generator", "[co
     CHECK(y == expected);
   }
   CHECK(kernel.stage(0)(coefficients.data(), data.data(), 0, nullptr, nullptr, nullptr, nullptr) == TARN_BAD_ARGUMENT);
+}
+
+TEST_CASE("a diagonal with a coefficient for each word is summed anew", "[codegen]") {
+  const std::uint32_t bits = GENERATE(6u, 7u, 8u);
+  const std::uint32_t lanes = GENERATE(2u, 8u);
+  Module module = simple_coefficients(3 * bits);
+  Generator spread{"spread", bits, {}, {}, false};
+  for (std::uint32_t q = 0; q < bits; ++q) {
+    const std::uint64_t here = std::uint64_t{1} << q, next = std::uint64_t{1} << (q + 1) % bits;
+    spread.sum.groups.push_back({3 * q, {{0.3 + 0.1 * q, {0, here}}}});
+    spread.sum.groups.push_back({3 * q + 1, {{-0.8, {0, here ^ next}}}});
+    spread.sum.groups.push_back({3 * q + 2, {{-0.5, {here, 0}}}});
+  }
+  Generator turned = spread, both = spread;
+  for (auto& group : turned.sum.groups)
+    for (auto& term : group.terms) term.factor *= Complex(0, -1);
+  for (auto& group : both.sum.groups)
+    for (auto& term : group.terms) term.factor *= Complex(0.6, -1.1);
+  module.generators = {spread, turned, both};
+  check_apply(module, lanes);
 }

@@ -11,7 +11,7 @@ TEST_CASE("tiles cover every amplitude once, and flips lead where they should", 
   const std::uint32_t bits = GENERATE(range(2u, 13u));
   const std::uint32_t lane_bits = GENERATE(0u, 1u, 2u);
   const std::uint32_t register_bits = GENERATE(0u, 2u, 3u);
-  const Tile tile = choose_tile(bits, lane_bits, register_bits, bits);
+  const Tile tile = choose_tile(bits, lane_bits, register_bits, bits, GENERATE(false, true));
   const auto position = [&](std::uint64_t base, std::uint64_t v) { return (base ^ tile.far_offset(v)) + tile.near_offset(v); };
   std::set<std::uint64_t> seen;
   std::size_t wrong = 0;
