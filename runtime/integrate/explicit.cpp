@@ -45,7 +45,7 @@ ExplicitIntegrator::ExplicitIntegrator(std::size_t size, std::size_t lanes, Fram
   vectors_[kState] = AlignedArray(size_ * width_);
   length_ = vectors_[kState].size();
   node_times_.resize(pair853::kStages * width_);
-  weights_.resize(kMostVectors * width_);
+  weights_ = AlignedArray(kMostVectors * width_);
 }
 
 double* ExplicitIntegrator::row(std::size_t index) {
@@ -131,7 +131,7 @@ void ExplicitIntegrator::evaluate(const RightHandSide& f, std::size_t stage, std
   const auto add = [&](const double* vector, double factor, bool times_step) {
     vectors[count] = vector;
     for (std::size_t l = 0; l < width_; ++l)
-      weights_[count * width_ + l] = times_step ? factor * lanes_[l].trial : factor;
+      weights_.data()[count * width_ + l] = times_step ? factor * lanes_[l].trial : factor;
     ++count;
   };
   add(row(kState), 1, false);
@@ -158,9 +158,9 @@ void ExplicitIntegrator::refresh(const RightHandSide& f, std::span<const LaneTas
   constexpr std::array<double, 1> here = {0};
   announce(f, here);
   const double* y = row(kState);
-  const std::vector<double> ones(width_, 1.0);
+  std::fill_n(weights_.data(), width_, 1.0);
   double* derivative = width_ == 1 ? stage_row(0) : row(kNext);
-  f.stage(0, 1, ones.data(), &y, row(kArgument), derivative);
+  f.stage(0, 1, weights_.data(), &y, row(kArgument), derivative);
   if (width_ > 1) copy_lanes(length_, width_, take.data(), derivative, stage_row(0));
   std::array<double, 8> state_squares{}, slope_squares{};
   squares(length_, width_, y, state_squares.data());
@@ -306,14 +306,14 @@ void ExplicitIntegrator::interpolate(const RightHandSide& f, std::span<const Lan
 /// argument = the interpolant at t + x trial, each lane at its own x.
 void ExplicitIntegrator::combine_interpolant(const double* x) {
   std::array<const double*, kMostVectors> vectors;
-  std::fill_n(weights_.begin(), width_, 1.0);
+  std::fill_n(weights_.data(), width_, 1.0);
   vectors[0] = row(kState);
   std::size_t count = 1;
   for (std::size_t j = 0; j < pair853::kStages; ++j) {
     if (j >= 1 && j <= 4) continue;  // The interpolant does not use them.
     vectors[count] = stage_row(j);
     for (std::size_t l = 0; l < width_; ++l)
-      weights_[count * width_ + l] = lanes_[l].trial * pair853::interpolant_weights(x[l])[j];
+      weights_.data()[count * width_ + l] = lanes_[l].trial * pair853::interpolant_weights(x[l])[j];
     ++count;
   }
   combine(length_, width_, std::span(vectors).first(count), weights_.data(), row(kArgument));

@@ -40,7 +40,7 @@ struct RightHandSide {
   /// f has no finite value.
   std::function<void(const Nodes& nodes, bool* bad)> nodes;
   /// argument = sum_j weights[j W + lane] vectors[j] for j < count, derivative = f(t[node], argument).
-  /// The outputs overlap nothing.
+  /// The outputs overlap nothing; every array starts at a multiple of 64 bytes.
   std::function<void(std::size_t node, std::size_t count, const double* weights,
                      const double* const* vectors, double* argument, double* derivative)>
       stage;
@@ -124,7 +124,8 @@ class ExplicitIntegrator {
   Frame frame_;
   std::vector<AlignedArray> vectors_;  ///< y, k0..k15, next y, argument.
   std::vector<Lane> lanes_;
-  std::vector<double> node_times_, weights_;
+  std::vector<double> node_times_;
+  AlignedArray weights_;
   std::vector<std::size_t> pieces_;
 };
 
