@@ -22,6 +22,7 @@ struct Reading {
   std::vector<std::string> row;
   std::vector<std::uint32_t> row_lines;
   std::uint32_t line = 0;
+  std::uint32_t row_begin = 1;  ///< Line where the row at hand begins.
   bool row_ended = true;
   std::optional<std::uint32_t> ragged_line;
   std::size_t ragged_cells = 0;
@@ -76,6 +77,7 @@ bool read_lines(const SourceFile& file, Reading& reading) {
     const bool between_rows = reading.row_ended;
     if (between_rows && (content.starts_with('#') || content.find_first_not_of(" \t") == std::string_view::npos)) continue;
     reading.line = line;
+    if (between_rows) reading.row_begin = line;
     reading.row_ended = false;
     const std::uint32_t begin = file.line_starts[line - 1];
     const std::size_t end = line < file.line_starts.size() ? file.line_starts[line] : text.size();
@@ -147,8 +149,8 @@ std::optional<Table> parse_table(const SourceFile& file, Span asked, Diagnostics
   reading.table.file = file.id;
   reading.table.name = file.name;
   if (!read_lines(file, reading)) {
-    diagnostics.report(asked, diag::table_quotes, std::size_t{reading.line}, file.name)
-        .note(line_span(file, std::max(reading.line, 1U)), "here");
+    diagnostics.report(asked, diag::table_quotes, std::size_t{reading.row_begin}, file.name)
+        .note(line_span(file, reading.row_begin), "this row");
     return std::nullopt;
   }
   const Table& table = reading.table;
