@@ -103,7 +103,9 @@ class ParameterReader {
       return false;
     }
     if (!arg.type) {
-      const auto node = evaluate_number(session_, scope_, *arg.value);
+      const Value value = evaluate(session_, scope_, *arg.value);
+      made.count = value.get<CountValue>() != nullptr;
+      const auto node = to_number(session_, value, span_of(session_, scope_, *arg.value));
       if (node) made.dimension = session_.graph[*node].dimension;
       return node.has_value();
     }

@@ -57,11 +57,12 @@ bool depends_on_t(const Session& session, const OperatorValue& op) {
   return false;
 }
 
-std::optional<OperatorValue> noise_operator(Session& session, const Scope& scope, ast::ExprId id) {
+/// A bath that is not known may want a lever: then the dimension is left open.
+std::optional<OperatorValue> noise_operator(Session& session, const Scope& scope, ast::ExprId id, bool known_bath) {
   const auto op = term_operator(session, scope, id);
   const Span span = span_of(session, scope, id);
   if (!op || !require_hermitian(session, *op, span)) return std::nullopt;
-  if (!require_operator_dimension(session, *op, kNumber, span)) return std::nullopt;
+  if (known_bath && !require_operator_dimension(session, *op, kNumber, span)) return std::nullopt;
   if (!depends_on_t(session, *op)) return op;
   session.report(span, diag::name_not_here, "t", "in `noise`");
   return std::nullopt;
@@ -76,7 +77,7 @@ struct NoiseSink {
   /// Without a bath the operators are checked only.
   void add(const Scope& scope, std::optional<std::uint32_t> bath, const std::string& bath_text) {
     for (const ast::ExprId id : term.operators) {
-      const auto op = noise_operator(session, scope, id);
+      const auto op = noise_operator(session, scope, id, bath.has_value());
       if (!op || !bath) continue;
       const std::string text = placed_text(session, scope, id, place.where);
       if (!term.shared) {

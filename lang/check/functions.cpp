@@ -44,7 +44,7 @@ const Elementary* find_unary(std::string_view name) {
 bool arguments_fit(Session& session, std::string_view name, std::size_t fewest, std::size_t most, std::size_t given,
                    Span span) {
   if (given >= fewest && given <= most) return true;
-  const std::string wanted = fewest == most ? fmt::format("{}", fewest) : fmt::format("at least {}", fewest);
+  const std::string wanted = fewest == most ? fmt::format("{} argument{}", fewest, fewest == 1 ? "" : "s") : fmt::format("at least {} arguments", fewest);
   session.report(span, diag::argument_count, std::string(name), wanted, given);
   return false;
 }

@@ -105,6 +105,7 @@ Instance elaborate(Session& session, const Statements& statements, const Program
   Scope scope = experiment_scope(session, statements, site);
   elaborate_chip_use(session, scope, *statements.chip, unrolled, instance);
   for (const ast::Let* let : statements.lets) look_up(session, scope, let->name);
+  if (unrolled.qubits.empty() && session.diagnostics.has_errors()) return instance;
   finish_chip(unrolled, instance);
   if (statements.begin != nullptr) elaborate_begin(session, scope, *statements.begin, instance);
   if (statements.pace != nullptr) elaborate_pace(session, scope, *statements.pace, instance);
@@ -131,7 +132,7 @@ void attach_axes(Session& session, const std::vector<SweptAxis>& axes, Instance&
       if (row != session.parameter_rows.end()) one.index = row->second;
       const bool used = parameter.count ? session.counts_used.contains(parameter.name)
                                         : one.index && std::binary_search(live.begin(), live.end(), *one.index);
-      if (!used) session.report(column.span, diag::changes_nothing, parameter.name).note(parameter.span, "declared here");
+      if (!used && !session.diagnostics.has_errors()) session.report(column.span, diag::changes_nothing, parameter.name).note(parameter.span, "declared here");
       made.columns.push_back(std::move(one));
     }
     instance.axes.push_back(std::move(made));

@@ -73,6 +73,13 @@ bool same_moment(const MomentI& a, const MomentI& b) {
   return true;
 }
 
+/// What has an error already is unknown, without further messages.
+void declare_broken(const Readings& readings, Scope& scope) {
+  for (const auto& [name, span] : readings.broken) {
+    scope.names.insert_or_assign(name, Binding{Value{}, nullptr, false, span});
+  }
+}
+
 class ObserveReader {
  public:
   ObserveReader(Session& session, const Scope& scope, Readings& readings, Instance& instance)
@@ -80,24 +87,31 @@ class ObserveReader {
 
   void read(const ast::Observe& observe) {
     const auto moment = moment_of(session_, scope_, observe);
-    if (!moment) return;
-    if (observe.name.text == "distribution" && !observe.value) return read_distribution(observe, *moment);
+    if (observe.name.text == "distribution" && !observe.value) {
+      if (moment) read_distribution(observe, *moment);
+      return;
+    }
     if (!check_name(observe)) return;
+    if (!moment || !read_named(observe, *moment)) readings_.broken.emplace(observe.name.text, observe.name.span);
+  }
+
+ private:
+  bool read_named(const ast::Observe& observe, const MomentI& moment) {
     readings_.reduces = false;
     const std::size_t before = instance_.readings.size();
-    const auto value = evaluate_value(observe, *moment);
-    if (!value) return;
+    const auto value = evaluate_value(observe, moment);
+    if (!value) return false;
     const Dimension dimension = session_.graph[*value].dimension;
     const auto unit = unit_of(session_, observe, dimension);
     const Dependence reads = dependence(session_.graph, *value);
     const bool reduces_only = std::all_of(instance_.readings.begin() + static_cast<std::ptrdiff_t>(before), instance_.readings.end(),
                                           [](const ReadingI& reading) { return std::holds_alternative<ReduceI>(reading); });
-    if (!unit || !moment_fits(session_, observe, *moment, instance_, reads, readings_.reduces && reduces_only)) return;
+    if (!unit || !moment_fits(session_, observe, moment, instance_, reads, readings_.reduces && reduces_only)) return false;
     readings_.by_name.emplace(observe.name.text, static_cast<std::uint32_t>(instance_.observables.size()));
-    instance_.observables.push_back({observe.name.text, *unit, *moment, *value, observe.name.span});
+    instance_.observables.push_back({observe.name.text, *unit, moment, *value, observe.name.span});
+    return true;
   }
 
- private:
   void read_distribution(const ast::Observe& observe, const MomentI& moment) {
     if (!std::holds_alternative<AtEndI>(moment) || observe.unit) {
       session_.report(observe.span, diag::distribution_form);
@@ -138,6 +152,7 @@ class ObserveReader {
       if (!same_moment(earlier.moment, moment)) continue;
       inner.names.insert_or_assign(name, Binding{number_value(earlier.value), nullptr, false, earlier.span});
     }
+    declare_broken(readings_, inner);
     if (observe.value) return evaluate_number(session_, inner, *observe.value);
     const ast::Path path{observe.name.span, {{observe.name, std::nullopt}}, false, {}};
     return to_number(session_, evaluate_reading(session_, inner, path), observe.name.span);
@@ -175,6 +190,7 @@ void elaborate_claims(Session& session, Scope& scope, const Statements& statemen
     const NodeId node = session.graph.add({.op = NodeOp::observable, .index = row, .dimension = dimension, .span = observable.span});
     inner.names.insert_or_assign(name, Binding{number_value(node), nullptr, false, observable.span});
   }
+  declare_broken(readings, inner);
   for (const ast::Expect* expect : statements.expects) {
     const auto holds = evaluate_truth(session, inner, expect->claim);
     const auto where = expect->where ? evaluate_truth(session, inner, *expect->where) : std::nullopt;

@@ -21,7 +21,7 @@ constexpr std::array kLater = std::to_array<std::string_view>(
 /// The one argument of a reading as it is written.
 const ast::Path* only_path(Session& session, const Scope& scope, const ast::Path& path) {
   if (!path.call || path.given.size() != 1 || path.given.front().name) {
-    session.report(path.span, diag::argument_count, path.steps.front().name.text, "1", path.given.size());
+    session.report(path.span, diag::argument_count, path.steps.front().name.text, "1 argument", path.given.size());
     return nullptr;
   }
   const auto* use = std::get_if<ast::Use>(&session.ast(scope).expr(path.given.front().value).node);
@@ -106,7 +106,7 @@ Value read_population(Session& session, const Scope& scope, const ast::Path& pat
 
 Value read_mean(Session& session, const Scope& scope, const ast::Path& path) {
   if (path.given.size() != 1 || path.given.front().name) {
-    session.report(path.span, diag::argument_count, "mean", "1", path.given.size());
+    session.report(path.span, diag::argument_count, "mean", "1 argument", path.given.size());
     return {};
   }
   scope.site->readings->reads_state = true;
@@ -133,7 +133,7 @@ Value read_mean(Session& session, const Scope& scope, const ast::Path& path) {
 Value read_levels(Session& session, const Scope& scope, const ast::Path& path, const std::string& word) {
   const std::size_t wanted = word == "coherence" ? 2 : word == "E" ? 1 : 0;
   if (path.given.size() != wanted) {
-    session.report(path.span, diag::argument_count, word, fmt::format("{}", wanted), path.given.size());
+    session.report(path.span, diag::argument_count, word, fmt::format("{} arguments", wanted), path.given.size());
     return {};
   }
   std::vector<std::uint32_t> levels;
@@ -171,6 +171,7 @@ Value read_reduction(Session& session, const Scope& scope, const ast::Path& path
   const std::string& name = argument->steps.front().name.text;
   const auto found = readings.by_name.find(name);
   const bool plain = argument->steps.size() == 1 && !argument->call;
+  if (plain && readings.broken.contains(name)) return {};
   if (found == readings.by_name.end() || !plain) {
     session.report(argument->span, diag::not_observed, excerpt(session, argument->span))
         .remedy(fmt::format("`observe {} along 101` or a scan before it", name));
@@ -220,7 +221,7 @@ Value evaluate_reading(Session& session, const Scope& scope, const ast::Path& pa
 std::optional<std::string> state_letters(Session& session, const Scope& scope, const ast::Path& path,
                                          std::size_t qubits, std::string_view allowed) {
   if (path.given.size() != 1 || path.given.front().name) {
-    session.report(path.span, diag::argument_count, "state", "1", path.given.size());
+    session.report(path.span, diag::argument_count, "state", "1 text", path.given.size());
     return std::nullopt;
   }
   const auto text = evaluate_text(session, scope, path.given.front().value);

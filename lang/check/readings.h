@@ -15,6 +15,7 @@ struct Readings {
   std::vector<ReadingI>* rows = nullptr;
   std::vector<ObservableI>* observables = nullptr;
   std::map<std::string, std::uint32_t> by_name{};  ///< Observables so far.
+  std::map<std::string, Span> broken{};            ///< Those with an error, which was reported.
   bool claims = false;       ///< In `expect`: only reductions and observables, nothing new is measured.
   bool reads_state = false;  ///< Set by what is evaluated: needs `begin`, and an equation where there is a pace.
   bool reads_levels = false;

@@ -71,7 +71,7 @@ std::vector<double> axis_values(Session& session, const Scope& scope, ast::ExprI
   if (!spacing) return list_values(session, evaluate(session, scope, id), dimension, span);
   const auto& given = use->path.given;
   if (given.size() != 3) {
-    session.report(span, diag::argument_count, word, "3", given.size());
+    session.report(span, diag::argument_count, word, "3 arguments", given.size());
     return {};
   }
   const auto low = evaluate_constant(session, scope, given[0].value, dimension);
@@ -102,7 +102,9 @@ void check_values(Session& session, const ProgramParameter& parameter, const std
       return;
     }
     if (parameter.count && value != std::floor(value)) {
-      session.report(span, diag::count_needed, format_quantity(value, kNumber)).note(parameter.span, "declared here");
+      session.report(span, diag::count_needed, format_quantity(value, kNumber))
+          .remedy(fmt::format("if `{}` may be any number, declare it as `{} : number`", parameter.name, parameter.declared))
+          .note(parameter.span, "declared here");
       return;
     }
   }

@@ -182,7 +182,7 @@ std::optional<std::vector<std::string>> text_arguments(Session& session, const S
   const std::string& name = path.steps.front().name.text;
   const bool named = std::any_of(path.given.begin(), path.given.end(), [](const ast::Given& given) { return given.name.has_value(); });
   if (path.given.size() != count || named) {
-    session.report(path.span, diag::argument_count, name, fmt::format("{}", count), path.given.size());
+    session.report(path.span, diag::argument_count, name, fmt::format("{} text{}", count, count == 1 ? "" : "s"), path.given.size());
     return std::nullopt;
   }
   std::vector<std::string> texts;
