@@ -232,16 +232,49 @@ class SetEmitter {
   Value* indices(std::uint64_t value) { return build_.CreateVectorSplat(unit_.lanes, build_.getInt64(value)); }
 
   /// Halves the range a fixed number of times: piece is the number of inner knots that are <= x.
-  Value* find_piece(Value* knots, Vector x, std::uint64_t pieces) {
+  Value* halve_range(Value* knots, Vector x, std::uint64_t pieces) {
     Value* piece = indices(0);
     std::uint64_t step = 1;
     while (2 * step < pieces) step *= 2;
-    for (; pieces > 1 && step > 0; step /= 2) {
-      Value* tried = build_.CreateAdd(piece, indices(step));
-      Value* last = indices(pieces - 1);
-      tried = build_.CreateSelect(build_.CreateICmpULT(tried, last), tried, last);
+    for (; step > 0; step /= 2) {
+      Value* tried = lesser(build_.CreateAdd(piece, indices(step)), indices(pieces - 1));
       piece = build_.CreateSelect(build_.CreateFCmpOLE(gather(knots, tried), x), tried, piece);
     }
+    return piece;
+  }
+
+  Value* lesser(Value* a, Value* b) { return build_.CreateSelect(build_.CreateICmpULT(a, b), a, b); }
+
+  /// Where x would fall if the knots were even. Precondition: low <= x <= high or x no number.
+  Value* guess_piece(Vector x, Vector low, Vector high, std::uint64_t pieces) {
+    Value* scale = build_.CreateFDiv(number(static_cast<double>(pieces)), build_.CreateFSub(high, low));
+    Value* place = build_.CreateFMul(build_.CreateFSub(x, low), scale);
+    place = build_.CreateSelect(build_.CreateFCmpORD(x, x), place, number(0));
+    Value* whole = build_.CreateFPToSI(place, llvm::FixedVectorType::get(build_.getInt32Ty(), unit_.lanes));
+    return lesser(build_.CreateZExt(whole, indices(0)->getType()), indices(pieces - 1));
+  }
+
+  /// The guess if it is right in every lane, as it mostly is on even knots; else the range is halved.
+  /// Both give the same piece, so a lane's result does not depend on its neighbours.
+  Value* find_piece(Value* knots, Vector x, Vector low, Vector high, std::uint64_t pieces) {
+    if (pieces == 1) return indices(0);
+    Value* guess = guess_piece(x, low, high, pieces);
+    Value* next = build_.CreateAdd(guess, indices(1));
+    Value* in_last = build_.CreateICmpEQ(guess, indices(pieces - 1));
+    Value* below_next = build_.CreateOr(build_.CreateFCmpOLT(x, gather(knots, next)), in_last);
+    Value* right = build_.CreateAnd(build_.CreateFCmpOLE(gather(knots, guess), x), below_next);
+    auto* function = build_.GetInsertBlock()->getParent();
+    auto* guessed = build_.GetInsertBlock();
+    auto* halve = llvm::BasicBlock::Create(build_.getContext(), "halve", function);
+    auto* found = llvm::BasicBlock::Create(build_.getContext(), "found", function);
+    build_.CreateCondBr(build_.CreateAndReduce(right), found, halve);
+    build_.SetInsertPoint(halve);
+    Value* halved = halve_range(knots, x, pieces);
+    build_.CreateBr(found);
+    build_.SetInsertPoint(found);
+    auto* piece = build_.CreatePHI(guess->getType(), 2);
+    piece->addIncoming(guess, guessed);
+    piece->addIncoming(halved, halve);
     return piece;
   }
 
@@ -257,7 +290,7 @@ class SetEmitter {
     Value* below = build_.CreateFCmpOLT(x, low);
     Value* above = build_.CreateFCmpOGT(x, high);
     Value* held = build_.CreateSelect(below, low, build_.CreateSelect(above, high, x));
-    Value* piece = find_piece(knots, held, pieces);
+    Value* piece = find_piece(knots, held, low, high, pieces);
     Value* distance = build_.CreateFSub(held, gather(knots, piece));
     Value* columns = build_.CreateConstGEP1_64(unit_.real(), knots, pieces + 1);
     return place->second = {columns, piece, distance, build_.CreateOr(below, above)};
