@@ -69,7 +69,7 @@ class Propagation {
   ExplicitIntegrator integrator_;
   std::vector<LaneState> lanes_;
   std::size_t reference_ = 0;  ///< Some lane that has pieces.
-  std::vector<double> s_, t_, values_;
+  std::vector<double> s_, t_, values_;  ///< At point p = node W + lane.
   AlignedArray coefficients_;  ///< Of every node: row r of lane l at r W + l.
   std::size_t stride_ = 0;     ///< From node to node.
 };
@@ -128,8 +128,9 @@ RightHandSide Propagation::side() {
     }
     coefficients(at.count);
     for (std::size_t node = 0; node < at.count; ++node)
-      for (std::size_t i = 0; i < entries_.rows * width_; ++i)
-        if (!std::isfinite(coefficients_.data()[node * stride_ + i])) bad[i % width_] = true;
+      for (std::size_t row = 0; row < entries_.rows; ++row)
+        for (std::size_t l = 0; l < width_; ++l)
+          bad[l] |= !std::isfinite(coefficients_.data()[node * stride_ + row * width_ + l]);
   };
   const auto stage = [this](std::size_t node, std::size_t count, const double* weights,
                             const double* const* vectors, double* argument, double* derivative) {

@@ -5,15 +5,20 @@
 
 namespace tarn::runtime {
 
-double Piece::s_at(double t) const {
-  const double slope = (segment.s1 - segment.s0) / (segment.t1 - segment.t0);
-  if (slope == 0) return segment.s0;
-  const auto at = [&](double time) { return segment.s0 + slope * (time - segment.t0); };
-  const double margin = std::min(std::abs(segment.s1 - segment.s0) * 0x1p-42,
-                                 std::abs(slope) * (t1 - t0) / 4);
-  const double low = std::min(at(t0), at(t1)), high = std::max(at(t0), at(t1));
-  return high - low > 2 * margin ? std::clamp(at(t), low + margin, high - margin) : low;
+namespace {
+
+Piece make_piece(const Segment& segment, double t0, double t1, bool still) {
+  const double change = segment.s1 - segment.s0;
+  Piece piece{t0, t1, still, segment, change / (segment.t1 - segment.t0), segment.s0, segment.s0};
+  if (change == 0) return piece;
+  const auto at = [&](double t) { return segment.s0 + piece.slope * (t - segment.t0); };
+  const double margin = std::min(std::abs(change) * 0x1p-42, std::abs(piece.slope) * (t1 - t0) / 4);
+  piece.low = std::min(at(t0), at(t1)) + margin;
+  piece.high = std::max(piece.low, std::max(at(t0), at(t1)) - margin);
+  return piece;
 }
+
+}  // namespace
 
 std::vector<Piece> cut_pieces(const Timeline& timeline, std::span<const double> breaks, bool reads_t) {
   std::vector<Piece> pieces;
@@ -21,7 +26,7 @@ std::vector<Piece> cut_pieces(const Timeline& timeline, std::span<const double> 
     const bool still = !reads_t && segment.s0 == segment.s1;
     double from = segment.t0;
     const auto cut_at = [&](double to) {
-      pieces.push_back({segment, from, to, still});
+      pieces.push_back(make_piece(segment, from, to, still));
       from = to;
     };
     // A cut this close to an end is the end, worked out with other rounding.

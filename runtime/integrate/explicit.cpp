@@ -3,10 +3,10 @@
 #include <algorithm>
 #include <array>
 #include <cmath>
+#include <cstring>
 #include <limits>
 
 #include "lang/support/check.h"
-#include "runtime/integrate/comoving.h"
 #include "runtime/integrate/pair853.h"
 #include "runtime/integrate/step_control.h"
 
@@ -45,7 +45,7 @@ ExplicitIntegrator::ExplicitIntegrator(std::size_t size, std::size_t lanes, Fram
   vectors_[kState] = AlignedArray(size_ * width_);
   length_ = vectors_[kState].size();
   node_times_.resize(pair853::kStages * width_);
-  weights_ = AlignedArray(kMostVectors * width_);
+  weights_ = AlignedArray(kMostVectors * width_ + kPackWidth);
 }
 
 double* ExplicitIntegrator::row(std::size_t index) {
@@ -126,23 +126,18 @@ void ExplicitIntegrator::announce(const RightHandSide& f, std::span<const double
 /// Derivative of one stage; its argument goes to `argument`.
 void ExplicitIntegrator::evaluate(const RightHandSide& f, std::size_t stage, std::size_t node,
                                   double* argument) {
-  std::array<const double*, kMostVectors> vectors;
-  std::size_t count = 0;
-  const auto add = [&](const double* vector, double factor, bool times_step) {
-    vectors[count] = vector;
-    for (std::size_t l = 0; l < width_; ++l)
-      weights_.data()[count * width_ + l] = times_step ? factor * lanes_[l].trial : factor;
-    ++count;
-  };
-  add(row(kState), 1, false);
-  for (std::size_t j = 0; j < stage; ++j)
-    if (kTable.a[stage][j] != 0) add(stage_row(j), kTable.a[stage][j], true);
-  f.stage(node, count, weights_.data(), vectors.data(), argument, stage_row(stage));
-  if (frame_ == Frame::comoving) {
-    std::array<double, 8> energies{};
-    for (std::size_t l = 0; l < width_; ++l) energies[l] = lanes_[l].energy;
-    add_energies(length_, width_, energies.data(), argument, stage_row(stage));
+  std::array<const double*, kMostVectors> vectors = {row(kState)};
+  std::size_t count = 1;
+  std::fill_n(weights_.data(), width_, 1.0);
+  for (std::size_t j = 0; j < stage; ++j) {
+    if (kTable.a[stage][j] == 0) continue;
+    vectors[count] = stage_row(j);
+    // Eight at once; what goes beyond the lanes is overwritten next.
+    const Pack weights = kTable.a[stage][j] * trials_;
+    std::memcpy(weights_.data() + count++ * width_, &weights, sizeof weights);
   }
+  f.stage(node, count, weights_.data(), vectors.data(), argument, stage_row(stage));
+  if (frame_ == Frame::comoving) add_turned(length_, energies_, argument, stage_row(stage));
   for (Lane& lane : lanes_) lane.counters.evaluations += lane.active ? 1 : 0;
 }
 
@@ -181,10 +176,11 @@ void ExplicitIntegrator::refresh(const RightHandSide& f, std::span<const LaneTas
 /// Moves every lane to the mean energy of its state. Lanes do so before each trial, whatever others do.
 void ExplicitIntegrator::follow_energy() {
   if (frame_ == Frame::fixed) return;
-  std::array<double, 8> changes{};
+  std::array<double, 8> changes{}, energies{};
   mean_energies(length_, width_, row(kState), stage_row(0), changes.data());
-  add_energies(length_, width_, changes.data(), row(kState), stage_row(0));
-  for (std::size_t l = 0; l < width_; ++l) lanes_[l].energy += changes[l];
+  add_turned(length_, turn_weights(width_, changes.data()), row(kState), stage_row(0));
+  for (std::size_t l = 0; l < width_; ++l) energies[l] = lanes_[l].energy += changes[l];
+  energies_ = turn_weights(width_, energies.data());
 }
 
 /// The states with their phases; valid until the next stage is evaluated.
@@ -220,6 +216,8 @@ void ExplicitIntegrator::choose_steps(std::span<const LaneTask> tasks) {
 }
 
 void ExplicitIntegrator::attempt(const RightHandSide& f) {
+  trials_ = Pack{};
+  for (std::size_t l = 0; l < width_; ++l) trials_[l] = lanes_[l].trial;
   announce(f, std::span(kTable.c).subspan(1, pair853::kStepStages - 1));
   for (std::size_t stage = 1; stage < pair853::kStepStages; ++stage)
     evaluate(f, stage, stage - 1, row(kArgument));
@@ -228,7 +226,7 @@ void ExplicitIntegrator::attempt(const RightHandSide& f) {
 
 void ExplicitIntegrator::judge(std::span<const LaneTask> tasks) {
   std::array<const double*, kMostVectors> vectors;
-  std::vector<double> weights3(kMostVectors * width_), weights5(kMostVectors * width_);
+  std::array<double, kMostVectors * 8> weights3, weights5;
   std::size_t count = 0;
   for (std::size_t j = 0; j < pair853::kStepStages; ++j) {
     if (kTable.error3[j] == 0 && kTable.error5[j] == 0) continue;

@@ -21,6 +21,7 @@
 #include <span>
 #include <vector>
 
+#include "runtime/integrate/comoving.h"
 #include "runtime/integrate/counters.h"
 #include "runtime/integrate/failure.h"
 #include "runtime/integrate/vectors.h"
@@ -126,6 +127,8 @@ class ExplicitIntegrator {
   std::vector<Lane> lanes_;
   std::vector<double> node_times_;
   AlignedArray weights_;
+  Pack trials_{};               ///< Step of every lane.
+  TurnWeights energies_{};      ///< Of the present trial.
   std::vector<std::size_t> pieces_;
 };
 

@@ -17,7 +17,7 @@ void fill_patterns(std::size_t count, std::size_t lanes, const double* weights, 
   TARN_CHECK(count >= 1 && count <= kMostVectors);
   TARN_CHECK(lanes >= 1 && kPackWidth % lanes == 0);
   for (std::size_t j = 0; j < count; ++j)
-    for (std::size_t k = 0; k < kPackWidth; ++k) out[j][k] = weights[j * lanes + k % lanes];
+    for (std::size_t k = 0; k < kPackWidth; ++k) out[j][k] = weights[j * lanes + (k & (lanes - 1))];
 }
 
 template <std::size_t N>

@@ -119,7 +119,7 @@ TEST_CASE("energies are taken out lane by lane, whatever the number of lanes") {
     std::vector<double> means(lanes);
     mean_energies(y.size(), lanes, y.data(), d.data(), means.data());
     for (std::size_t l = 0; l < lanes; ++l) CHECK(means[l] == Approx(1.0 + static_cast<double>(l)));
-    add_energies(y.size(), lanes, means.data(), y.data(), d.data());
+    add_turned(y.size(), turn_weights(lanes, means.data()), y.data(), d.data());
     for (std::size_t i = 0; i < d.size(); ++i) CHECK(std::abs(d.data()[i]) < 1e-14);
     turn(y.size(), lanes, phases.data(), y.data(), turned.data());
     for (std::size_t l = 0; l < lanes; ++l) {
