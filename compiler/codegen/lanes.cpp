@@ -9,6 +9,7 @@ using llvm::Value;
 namespace {
 
 constexpr std::size_t kMostStraight = 1600;  ///< Multiplications of straight-line code.
+constexpr std::size_t kMostKept = 8;         ///< Amplitudes: 16 vectors of the 32 registers.
 
 LinearForm negated(LinearForm form) {
   for (auto& entry : form) entry.second = -entry.second;
@@ -109,13 +110,20 @@ class LaneEmitter {
     return {load(unit_, vector(), base, first, alignment()), load(unit_, vector(), base, second, alignment())};
   }
 
+  /// Amplitude k of x: kept in registers where all of x fits them, else read again for each use.
+  Pair amplitude(std::uint64_t k) {
+    if (rows_.size() > kMostKept) return load_amplitude(x_, offset(2 * k));
+    if (!kept_.contains(k)) kept_.emplace(k, load_amplitude(x_, offset(2 * k)));
+    return kept_.at(k);
+  }
+
   void emit_straight() {
     std::vector<Value*> forms;
     for (const LinearForm& form : forms_.list()) forms.push_back(form_value(form));
     for (std::uint64_t j = 0; j < rows_.size(); ++j) {
       Pair sum{nullptr, nullptr};
       for (const Element& element : rows_[j]) {
-        const Pair x = load_amplitude(x_, offset(2 * (j ^ element.mask)));
+        const Pair x = amplitude(j ^ element.mask);
         add_real(sum, element.real, x, forms);
         add_imaginary(sum, element.imaginary, x, forms);
       }
@@ -247,6 +255,7 @@ class LaneEmitter {
   llvm::IRBuilder<>& build_;
   std::vector<std::vector<Element>> rows_;
   Forms forms_;
+  std::map<std::uint64_t, Pair> kept_;
   Value *coefficients_ = nullptr, *x_ = nullptr, *y_ = nullptr;
 };
 

@@ -153,7 +153,8 @@ void stages() {
 }
 
 void lanes() {
-  std::printf("\nlanes, ns per point: stage of 6 vectors\n%-14s %9s %9s %9s\n", "generator", "one", "lanes", "ratio");
+  std::printf("\nlanes, ns per point: a stage of 6 vectors, alone and with its coefficients\n%-14s %9s %9s %9s %9s %9s %9s\n", "generator",
+              "one", "lanes", "ratio", "one", "lanes", "ratio");
   for (const bool open : {false, true})
     for (const std::uint32_t n : {1u, 2u, 3u, 4u}) {
       if (open && n > 3) continue;
@@ -172,9 +173,22 @@ void lanes() {
           kernel.stage(0)(coefficients.get(), prepared.get(), 6, weights.get(), vectors, store[6].get(), store[7].get());
       };
       const auto all = [&] { kernel.lane_stage(0)(coefficients.get(), nullptr, 6, weights.get(), vectors, store[6].get(), store[7].get()); };
-      const auto least = least_seconds({one, all}, 60);
+      const tarn_block block{nullptr, nullptr};
+      const Buffer s(width), values(kernel.rows(0) * width);
+      const auto one_whole = [&] {
+        for (std::size_t l = 0; l < width; ++l) {
+          kernel.values(0)(&block, 1, s.get() + l, nullptr, nullptr, values.get());
+          kernel.stage(0)(values.get(), prepared.get(), 6, weights.get(), vectors, store[6].get(), store[7].get());
+        }
+      };
+      const auto all_whole = [&] {
+        kernel.values(0)(&block, width, s.get(), nullptr, nullptr, values.get());
+        kernel.lane_stage(0)(values.get(), nullptr, 6, weights.get(), vectors, store[6].get(), store[7].get());
+      };
+      const auto least = least_seconds({one, all, one_whole, all_whole}, 60);
       const double unit = 1e9 / static_cast<double>(width);
-      std::printf("%-12s%2u %9.1f %9.1f %9.2f\n", open ? "Liouvillian" : "Hamiltonian", n, least[0] * unit, least[1] * unit, least[0] / least[1]);
+      std::printf("%-12s%2u %9.1f %9.1f %9.2f %9.1f %9.1f %9.2f\n", open ? "Liouvillian" : "Hamiltonian", n, least[0] * unit, least[1] * unit,
+                  least[0] / least[1], least[2] * unit, least[3] * unit, least[2] / least[3]);
     }
 }
 
