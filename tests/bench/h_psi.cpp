@@ -119,6 +119,29 @@ void h_psi() {
   }
 }
 
+void liouvillians() {
+  std::printf("\nLiouvillian of a ring with dephasing and decay, ns per amplitude\n%6s %9s %9s %9s\n", "qubits", "sparse", "compiled", "ratio");
+  const double c[] = {0.7, 1.3, 0.2};
+  for (const std::uint32_t n : {2u, 3u, 4u, 5u, 6u}) {
+    ir::Module module = test::simple_coefficients(3);
+    module.generators = {open_ring(n)};
+    module.generators[0].lanes = false;
+    const runtime::Kernel kernel = kernel_of(module);
+    const std::size_t amplitudes = std::size_t{1} << 2 * n;
+    const Buffer x(2 * amplitudes), y(2 * amplitudes), prepared(kernel.prepared_doubles(0));
+    kernel.prepare(0)(prepared.get());
+    const auto matrix = sparse(module.generators[0], c);
+    const auto product = [&] {
+      Eigen::Map<const Eigen::VectorXcd> in(reinterpret_cast<const Complex*>(x.get()), matrix.cols());
+      Eigen::Map<Eigen::VectorXcd> out(reinterpret_cast<Complex*>(y.get()), matrix.rows());
+      out.noalias() = matrix * in;
+    };
+    const auto least = least_seconds({product, [&] { kernel.apply(0)(c, prepared.get(), x.get(), y.get()); }}, 60);
+    const double unit = 1e9 / static_cast<double>(amplitudes);
+    std::printf("%6u %9.2f %9.2f %9.1f\n", n, least[0] * unit, least[1] * unit, least[0] / least[1]);
+  }
+}
+
 /// Twelve stages as of a method of order 8, stage k from k + 1 vectors, against axpy by axpy.
 void stages() {
   std::printf("\ntwelve stages, us\n%4s %9s %9s %9s\n", "n", "generic", "fused", "ratio");
@@ -232,6 +255,7 @@ void expressions() {
 int main(int count, char** arguments) {
   const std::string only = count > 1 ? arguments[1] : "";
   if (only.empty() || only == "h_psi") h_psi();
+  if (only.empty() || only == "liouvillians") liouvillians();
   if (only.empty() || only == "stages") stages();
   if (only.empty() || only == "lanes") lanes();
   if (only.empty() || only == "expressions") expressions();
