@@ -14,7 +14,11 @@ namespace {
 
 std::vector<ProgramArgument> argument_list(Session& session, const Callable& callable) {
   std::vector<ProgramArgument> result;
-  for (const ast::Arg& arg : arguments_of(callable)) result.push_back({arg.name.text, type_text(session, arg)});
+  const std::string_view first = first_argument(callable.kind);
+  for (const ast::Arg& arg : arguments_of(callable)) {
+    const bool known = !first.empty() && result.empty();
+    result.push_back({arg.name.text, known ? std::string(first == "s" ? "number" : "frequency") : type_text(session, arg)});
+  }
   return result;
 }
 
@@ -75,6 +79,10 @@ class DeclarationChecker {
       program_.parts.push_back({"bath", name, std::move(arguments), statements_as_written(session_, bath->entries)});
     } else if (std::holds_alternative<ast::Kind>(*callable.item)) {
       auto lines = check_kind(session_, callable);
+      const auto& entries = std::get<ast::Kind>(*callable.item).entries;
+      const auto is_let = [](const ast::KindEntry& entry) { return std::holds_alternative<ast::Let>(entry); };
+      const auto terms = entries.size() - static_cast<std::size_t>(std::count_if(entries.begin(), entries.end(), is_let));
+      if (lines.size() < terms) lines = statements_as_written(session_, entries);
       const std::string word = callable.kind == CallableKind::qubit ? "qubit" : "coupler";
       program_.parts.push_back({word, name, std::move(arguments), std::move(lines)});
     } else if (const auto* chip = std::get_if<ast::Chip>(callable.item)) {
@@ -92,7 +100,7 @@ void check_declarations(Program& program, std::uint64_t& steps, Diagnostics& dia
   Graph graph;
   Session session{program, graph, diagnostics, none};
   session.generic = true;
-  session.steps = steps;
+  session.resume(steps);
   DeclarationChecker checker(session, program);
   for (std::uint32_t module = 0; module < program.modules.size(); ++module) {
     for (const ast::Item& item : program.ast(module).items) checker.check(module, item);
@@ -112,7 +120,7 @@ void check_closed_chips(const Program& program, std::uint64_t& steps, Diagnostic
       if (chip == nullptr || !all_defaulted(chip->args)) continue;
       Graph graph;
       Session session{program, graph, diagnostics, none};
-      session.steps = steps;
+      session.resume(steps);
       Unrolled unrolled;
       unroll_chip(session, {CallableKind::chip, module, &item, {}}, "", unrolled, chip->name.span);
       steps = session.steps;

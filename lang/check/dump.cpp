@@ -31,7 +31,7 @@ std::string range_text(const std::optional<double>& low, const std::optional<dou
 
 void dump_parameters(const Program& program, std::string& out) {
   for (const ProgramParameter& parameter : program.parameters) {
-    const std::string type = parameter.count ? "count" : unit_product(parameter.dimension);
+    const std::string type = parameter.count ? "a count" : describe(parameter.dimension);
     out += fmt::format("parameter {} : {}", parameter.name, type);
     if (parameter.value) out += fmt::format(" = {}", *parameter.value);
     out += range_text(parameter.lowest, parameter.highest) + "\n";
@@ -46,7 +46,7 @@ void dump_laws(const Program& program, std::string& out) {
   for (const ProgramLaw& law : program.laws) {
     out += fmt::format("{} {}({})", law.word, law.name, signature(law.arguments));
     if (law.value) {
-      out += fmt::format(" : [{}] = {}", unit_product(program.graph[*law.value].dimension), to_text(program.graph, *law.value, names));
+      out += fmt::format(" : {} = {}", describe(program.graph[*law.value].dimension), to_text(program.graph, *law.value, names));
     }
     out += "\n";
   }
@@ -89,7 +89,7 @@ class InstanceDump {
 
   void parameters() {
     for (const ParameterUse& use : instance_.parameters) {
-      line(fmt::format("parameter {} = {} [{}]{}", use.name, use.value, unit_product(use.dimension), range_text(use.lowest, use.highest)));
+      line(fmt::format("parameter {} = {}, {}{}", use.name, use.value, describe(use.dimension), range_text(use.lowest, use.highest)));
     }
     for (std::size_t k = 0; k < instance_.graph.tables.size(); ++k) {
       const TableData& table = instance_.graph.tables[k];

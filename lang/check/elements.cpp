@@ -43,11 +43,29 @@ Site changed(const Scope& scope, std::string_view where, bool with_t) {
   return site;
 }
 
-std::string placed_text(Session& session, const Scope& scope, ast::ExprId id, const std::string& where) {
+/// `Z(q[0])`, `-X(q[1])` for a bare word; empty for other operators.
+std::string word_text(const Session& session, const Operator& op, const Unrolled& unrolled) {
+  if (op.size() != 1 || std::abs(op[0].factor) != 1 || op[0].factor.imag() != 0) return {};
+  const Node& coefficient = session.graph[op[0].coefficient];
+  if (coefficient.op != NodeOp::constant || coefficient.number != 1) return {};
+  const std::string all = letters(op[0].word, static_cast<std::uint32_t>(unrolled.qubits.size()));
+  std::string word, places;
+  for (std::size_t q = 0; q < all.size(); ++q) {
+    if (all[q] == 'I') continue;
+    word += all[q];
+    places += (places.empty() ? "" : ", ") + unrolled.qubits[q].path;
+  }
+  return word.empty() ? "" : fmt::format("{}{}({})", op[0].factor.real() < 0 ? "-" : "", word, places);
+}
+
+std::string placed_text(Session& session, const Scope& scope, ast::ExprId id, const Operator& op, const TermPlace& place) {
+  const std::string word = word_text(session, op, place.unrolled);
+  if (!word.empty()) return word;
+  const std::string& where = place.where;
   const std::string text = excerpt(session, span_of(session, scope, id));
   const bool in_chip = scope.site != nullptr && !scope.site->own_qubits;
   if (in_chip || where.empty()) return text;
-  return is_pauli_word(text) ? fmt::format("{}({})", text, where) : fmt::format("{} on {}", text, where);
+  return fmt::format("{} on {}", text, where);
 }
 
 bool depends_on_t(const Session& session, const OperatorValue& op) {
@@ -79,7 +97,7 @@ struct NoiseSink {
     for (const ast::ExprId id : term.operators) {
       const auto op = noise_operator(session, scope, id, bath.has_value());
       if (!op || !bath) continue;
-      const std::string text = placed_text(session, scope, id, place.where);
+      const std::string text = placed_text(session, scope, id, op->terms, place);
       if (!term.shared) {
         place.unrolled.noise.push_back({op->terms, *bath, fmt::format("{} ~ {}", text, bath_text), term.span});
       } else if (!shared) {
@@ -182,7 +200,7 @@ void elaborate_jump(Session& session, const Scope& scope, const ast::JumpTerm& t
       return;
     }
     if (!require_operator_dimension(session, *op, root_of_rate, span)) return;
-    place.unrolled.jumps.push_back({op->terms, placed_text(session, inner, term.value, place.where), term.span});
+    place.unrolled.jumps.push_back({op->terms, placed_text(session, inner, term.value, op->terms, place), term.span});
   });
 }
 

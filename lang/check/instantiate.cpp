@@ -206,7 +206,7 @@ Instance elaborate_group(const Program& program, std::uint32_t experiment, const
                          std::uint64_t& steps, Diagnostics& diagnostics) {
   Graph graph;
   Session session{program, graph, diagnostics, values};
-  session.steps = steps;
+  session.resume(steps);
   Instance instance = elaborate(session, statements, program.experiments[experiment]);
   instance.graph = graph;
   attach_axes(session, axes, instance);
@@ -233,7 +233,7 @@ std::vector<Instance> elaborate_experiment(const Program& program, std::uint32_t
   const std::size_t errors = diagnostics.error_count();
   Graph scratch;
   Session reading{program, scratch, diagnostics, overrides};
-  reading.steps = steps;
+  reading.resume(steps);
   reading.constants_only = true;
   const Statements statements = sort_statements(reading, experiment_of(program, experiment));
   const Site site{.where = "in an experiment"};

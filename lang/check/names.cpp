@@ -170,8 +170,9 @@ std::string nearest(std::string_view word, const std::vector<std::string>& known
 }
 
 void report_unknown_name(Session& session, const Scope& scope, const ast::Name& name) {
+  constexpr std::size_t kMostCompared = 1000;
   std::vector<std::string> known;
-  collect_names(session, scope, known);
+  if (session.program.modules[scope.module].items.size() < kMostCompared) collect_names(session, scope, known);
   const std::string near = nearest(name.text, known);
   auto tail = session.report(name.span, diag::unknown_name, name.text);
   if (!near.empty()) tail.remedy(fmt::format("did you mean `{}`?", near));

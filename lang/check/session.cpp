@@ -16,6 +16,11 @@ bool Session::step(Span span) {
   return false;
 }
 
+void Session::resume(std::uint64_t done) {
+  steps = done;
+  exhausted = done > kMaxSteps;
+}
+
 void Session::remark(const std::string& text) {
   if (std::find(remarks.begin(), remarks.end(), text) == remarks.end()) remarks.push_back(text);
 }

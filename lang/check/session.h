@@ -18,7 +18,7 @@
 namespace tarn {
 
 /// Bounds that end an elaboration with an error instead of a long run.
-inline constexpr std::uint64_t kMaxSteps = 2'000'000;
+inline constexpr std::uint64_t kMaxSteps = 400'000;
 inline constexpr std::size_t kMaxNodes = 200'000;
 inline constexpr std::size_t kMaxPlacements = 20'000;
 inline constexpr std::size_t kMaxOperatorTerms = 4096;
@@ -100,6 +100,8 @@ struct Session {
   }
   /// Counts one step; false once a bound is passed, which is reported at `span` the first time.
   bool step(Span span);
+  /// Goes on counting from the work done by sessions before.
+  void resume(std::uint64_t done);
   /// Something the run has to say beside its answers; kept once.
   void remark(const std::string& text);
 };

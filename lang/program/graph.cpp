@@ -105,6 +105,10 @@ std::optional<NodeId> neutral_result(Graph& graph, const Node& node) {
     if (is_constant(graph, node.a, 1) && b_keeps) return node.b;
     if (is_constant(graph, node.b, 1) && a_keeps) return node.a;
   }
+  // The root of a square would have no derivative where the square vanishes.
+  if (node.op == NodeOp::sqrt && graph[node.a].op == NodeOp::mul && graph[node.a].a == graph[node.a].b) {
+    return graph.add({.op = NodeOp::abs, .a = graph[node.a].a, .dimension = node.dimension, .span = node.span});
+  }
   const bool divides = node.op == NodeOp::div || node.op == NodeOp::pow;
   if (divides && is_constant(graph, node.b, 1) && a_keeps) return node.a;
   if (node.op == NodeOp::neg && graph[node.a].op == NodeOp::neg) return graph[node.a].a;
