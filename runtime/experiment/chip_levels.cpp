@@ -47,7 +47,7 @@ Result<std::vector<double>, RunError> coefficients_at(const Plan& plan, const Fu
 
 ChipLevels::ChipLevels(const Plan& plan, const Kernel& kernel, const Functions& functions, Interrupted interrupted)
     : plan_(plan), kernel_(kernel), functions_(functions), interrupted_(std::move(interrupted)),
-      dimension_(Index{1} << plan.chip.qubits.size()) {}
+      dimension_(Index{1} << plan.chip.qubits.size()), real_(has_real_matrix(plan.chip.hamiltonian)) {}
 
 Product ChipLevels::product(const std::vector<double>& coefficients) {
   if (prepared_.empty()) {
@@ -77,7 +77,7 @@ Result<Levels, RunError> ChipLevels::solve_fresh(double s, Index count) {
     return all_levels(dense_operator(scaled_words(plan_.chip.hamiltonian, *coefficients), plan_.chip.qubits.size()));
   }
   const Eigen::MatrixXcd start = levels_.vectors;
-  return lowest_levels(dimension_, count, product(*coefficients), start, interrupted_);
+  return lowest_levels(dimension_, count, product(*coefficients), real_, start, interrupted_);
 }
 
 Result<Done, RunError> ChipLevels::solve(double s, Index count) {

@@ -44,6 +44,7 @@ class ChipLevels {
   const Functions& functions_;
   Interrupted interrupted_;
   Eigen::Index dimension_;
+  bool real_;  ///< H is a real matrix.
   std::vector<double> prepared_;
   std::optional<double> solved_;  ///< The s that `levels_` belong to.
   Levels levels_;

@@ -13,11 +13,17 @@ namespace {
 
 using Eigen::Index;
 using Eigen::MatrixXcd;
-using Eigen::VectorXcd;
 using Eigen::VectorXd;
+using Complex = std::complex<double>;
+
+template <class Scalar>
+using Vector = Eigen::Matrix<Scalar, Eigen::Dynamic, 1>;
+template <class Scalar>
+using Matrix = Eigen::Matrix<Scalar, Eigen::Dynamic, Eigen::Dynamic>;
 
 constexpr double kResidual = 1e-10;  ///< Of the spectral width.
 constexpr Index kBlock = 4;
+constexpr int kPowers = 4;
 constexpr Index kLargeDimension = Index{1} << 17;
 constexpr Index kProductsPerLevel = 4000;
 
@@ -32,8 +38,9 @@ class Noise {
     z ^= z >> 31;
     return static_cast<double>(z >> 11) * 0x1p-52 - 1.0;
   }
-  VectorXcd vector(Index n) {
-    VectorXcd v(n);
+  template <class Scalar>
+  Vector<Scalar> vector(Index n) {
+    Vector<Scalar> v(n);
     for (Index i = 0; i < n; ++i) v[i] = next();
     return v;
   }
@@ -43,77 +50,96 @@ class Noise {
 };
 
 /// An orthonormal basis, its image under H, and the projection of H on it.
+template <class Scalar>
 class Space {
  public:
   Space(Index dimension, Index capacity, const Product& product)
-      : basis_(dimension, capacity), image_(dimension, capacity), projected_(MatrixXcd::Zero(capacity, capacity)),
-        product_(product) {}
+      : basis_(dimension, capacity), image_(dimension, capacity),
+        projected_(Matrix<Scalar>::Zero(capacity, capacity)), product_(product) {}
 
   Index size() const { return size_; }
   Index capacity() const { return basis_.cols(); }
   Index products() const { return products_; }
+  Index vector_size() const { return basis_.rows(); }
 
   /// Adds the part of v outside the space; false if there is none left.
-  bool add(VectorXcd v) {
+  bool add(Vector<Scalar> v) {
     if (size_ == capacity()) return false;
     const double before = v.norm();
     if (!(before > 0)) return false;
     v /= before;
-    for (int pass = 0; pass < 3; ++pass) {
-      v -= basis_.leftCols(size_) * (basis_.leftCols(size_).adjoint() * v);
-      const double left = v.norm();
+    // Once more where the first pass took away so much that rounding shows.
+    for (double left = 0; left < 0.7;) {
+      const Vector<Scalar> inside = basis_.leftCols(size_).adjoint() * v;
+      v.noalias() -= basis_.leftCols(size_) * inside;
+      left = v.norm();
       if (!(left > 1e-13)) return false;
       v /= left;
     }
     basis_.col(size_) = v;
-    product_(v.data(), image_.col(size_).data());
+    apply(v, size_);
     ++products_;
     ++size_;
-    const VectorXcd column = basis_.leftCols(size_).adjoint() * image_.col(size_ - 1);
+    const Vector<Scalar> column = basis_.leftCols(size_).adjoint() * image_.col(size_ - 1);
     projected_.block(0, size_ - 1, size_, 1) = column;
     projected_.block(size_ - 1, 0, 1, size_) = column.adjoint();
-    projected_(size_ - 1, size_ - 1) = column[size_ - 1].real();
+    projected_(size_ - 1, size_ - 1) = std::real(column[size_ - 1]);
     return true;
   }
 
   void solve() {
-    const Eigen::SelfAdjointEigenSolver<MatrixXcd> solver(projected_.topLeftCorner(size_, size_));
+    const Eigen::SelfAdjointEigenSolver<Matrix<Scalar>> solver(projected_.topLeftCorner(size_, size_));
     values_ = solver.eigenvalues();
     mixing_ = solver.eigenvectors();
   }
+  /// H times basis vector k.
+  Vector<Scalar> image(Index k) const { return image_.col(k); }
   const VectorXd& values() const { return values_; }
-  VectorXcd vector(Index k) const { return basis_.leftCols(size_) * mixing_.col(k); }
-  VectorXcd residual(Index k) const {
+  Vector<Scalar> vector(Index k) const { return basis_.leftCols(size_) * mixing_.col(k); }
+  Vector<Scalar> residual(Index k) const {
     return image_.leftCols(size_) * mixing_.col(k) - values_[k] * vector(k);
   }
 
   /// Shrinks the space to its `keep` lowest solutions.
   void restart(Index keep) {
     keep = std::min(keep, size_);
-    const MatrixXcd basis = basis_.leftCols(size_) * mixing_.leftCols(keep);
-    const MatrixXcd image = image_.leftCols(size_) * mixing_.leftCols(keep);
+    const Matrix<Scalar> basis = basis_.leftCols(size_) * mixing_.leftCols(keep);
+    const Matrix<Scalar> image = image_.leftCols(size_) * mixing_.leftCols(keep);
     basis_.leftCols(keep) = basis;
     image_.leftCols(keep) = image;
     projected_.setZero();
-    projected_.diagonal().head(keep) = values_.head(keep).cast<std::complex<double>>();
+    projected_.diagonal().head(keep) = values_.head(keep).template cast<Scalar>();
     size_ = keep;
-    mixing_ = MatrixXcd::Identity(keep, keep);
+    mixing_ = Matrix<Scalar>::Identity(keep, keep);
     values_ = VectorXd(values_.head(keep));
   }
 
  private:
-  MatrixXcd basis_, image_, projected_;
+  void apply(const Vector<Scalar>& v, Index column) {
+    if constexpr (std::is_same_v<Scalar, Complex>) {
+      product_(v.data(), image_.col(column).data());
+    } else {
+      in_ = v.template cast<Complex>();
+      out_.resize(v.size());
+      product_(in_.data(), out_.data());
+      image_.col(column) = out_.real();
+    }
+  }
+
+  Matrix<Scalar> basis_, image_, projected_;
   const Product& product_;
   Index size_ = 0, products_ = 0;
   VectorXd values_;
-  MatrixXcd mixing_;
+  Matrix<Scalar> mixing_;
+  Vector<Complex> in_, out_;
 };
 
 /// Highest minus lowest Ritz value of a short Lanczos run: a lower estimate, off by a few percent.
+template <class Scalar>
 double estimate_width(Index dimension, const Product& product, Noise& noise) {
   const Index steps = std::min<Index>(24, dimension);
-  Space space(dimension, steps, product);
-  if (!space.add(noise.vector(dimension))) return 0;
+  Space<Scalar> space(dimension, steps, product);
+  if (!space.add(noise.vector<Scalar>(dimension))) return 0;
   for (Index i = 1; i < steps; ++i) {
     space.solve();
     // In a space grown from one vector all residuals point the same way, so this is a Lanczos step.
@@ -123,8 +149,9 @@ double estimate_width(Index dimension, const Product& product, Noise& noise) {
   return space.values()[space.size() - 1] - space.values()[0];
 }
 
+template <class Scalar>
 struct Search {
-  Space& space;
+  Space<Scalar>& space;
   Index count;
   double accepted;  ///< Residual norm that counts as converged.
   Noise& noise;
@@ -132,33 +159,42 @@ struct Search {
 
 /// Residual a solution must reach: the wanted ones the accepted one, the guard above them only so
 /// small that it is known to lie above.
-double demanded(const Search& search, Index k) {
+template <class Scalar>
+double demanded(const Search<Scalar>& search, Index k) {
   if (k < search.count) return search.accepted;
   const VectorXd& values = search.space.values();
   return std::max(search.accepted, 0.1 * (values[k] - values[search.count - 1]));
 }
 
 /// Grows the space by the residuals of the lowest open solutions. Returns how many are open.
-Index expand(const Search& search) {
-  Space& space = search.space;
-  std::vector<VectorXcd> additions;
+template <class Scalar>
+Index expand(const Search<Scalar>& search) {
+  Space<Scalar>& space = search.space;
+  std::vector<Vector<Scalar>> additions;
   Index open = 0;
   for (Index k = 0; k <= search.count && k < space.size(); ++k) {
-    VectorXcd residual = space.residual(k);
+    Vector<Scalar> residual = space.residual(k);
     if (residual.norm() <= demanded(search, k)) continue;
     ++open;
     if (static_cast<Index>(additions.size()) < kBlock) additions.push_back(std::move(residual));
   }
   if (open == 0) return 0;
-  const Index room = space.capacity() - space.size();
-  if (room < static_cast<Index>(additions.size())) space.restart(search.count + kBlock);
-  bool grown = false;
-  for (VectorXcd& addition : additions) grown |= space.add(std::move(addition));
-  if (!grown) space.add(search.noise.vector(search.space.vector(0).size()));
+  const Index block = static_cast<Index>(additions.size());
+  if (space.capacity() - space.size() < block) space.restart(search.count + kBlock);
+  Index first = space.size();
+  for (Vector<Scalar>& addition : additions) space.add(std::move(addition));
+  if (space.size() == first) space.add(search.noise.template vector<Scalar>(space.vector_size()));
+  // A few more powers of H on the new vectors before the next solution of the small problem.
+  for (int power = 1; power < kPowers && space.capacity() - space.size() >= block; ++power) {
+    const Index last = space.size();
+    for (Index k = first; k < last; ++k) space.add(space.image(k));
+    first = last;
+  }
   return open;
 }
 
-Result<Done, RunError> converge(const Search& search, const Interrupted& interrupted) {
+template <class Scalar>
+Result<Done, RunError> converge(const Search<Scalar>& search, const Interrupted& interrupted) {
   const Index limit = search.space.products() + kProductsPerLevel * (search.count + 1);
   while (search.space.products() < limit) {
     search.space.solve();
@@ -169,16 +205,43 @@ Result<Done, RunError> converge(const Search& search, const Interrupted& interru
   return Unexpected{RunError{"levels_not_found", "the lowest levels could not be told apart in time"}};
 }
 
-Levels take(const Search& search, double width) {
+template <class Scalar>
+Levels take(const Search<Scalar>& search, double width) {
   Levels levels;
   levels.energies = search.space.values().head(search.count);
-  levels.vectors.resize(search.space.vector(0).size(), search.count);
+  levels.vectors.resize(search.space.vector_size(), search.count);
   for (Index k = 0; k < search.count; ++k) {
-    levels.vectors.col(k) = search.space.vector(k);
+    levels.vectors.col(k) = search.space.vector(k).template cast<Complex>();
     levels.residual = std::max(levels.residual, search.space.residual(k).norm());
   }
   levels.width = width;
   return levels;
+}
+
+template <class Scalar>
+Result<Levels, RunError> search_levels(Index dimension, Index count, const Product& product,
+                                       const Matrix<Scalar>& start, const Interrupted& interrupted) {
+  Noise noise;
+  const double width = estimate_width<Scalar>(dimension, product, noise);
+  // Two stored vectors a column: large systems get few columns.
+  const Index roomy = dimension < kLargeDimension ? std::max<Index>(3 * count + 4 * kBlock, 48) : 2 * count + 4 * kBlock;
+  const Index capacity = std::min(dimension, roomy);
+  Space<Scalar> space(dimension, capacity, product);
+  for (Index k = 0; k < std::min(start.cols(), count + kBlock); ++k) space.add(start.col(k));
+  for (Index k = 0; k < kBlock + 1; ++k) space.add(noise.vector<Scalar>(dimension));
+  const Search<Scalar> search{space, count, std::max(kResidual * width, 1e-300), noise};
+  while (space.size() <= count) {
+    if (!space.add(noise.vector<Scalar>(dimension))) break;
+  }
+  // Twice: the second round starts from the levels found and fresh vectors.
+  for (int round = 0; round < 2; ++round) {
+    const auto done = converge(search, interrupted);
+    if (!done) return Unexpected{done.error()};
+    if (round == 1) break;
+    space.restart(count);
+    for (Index k = 0; k < kBlock; ++k) space.add(noise.vector<Scalar>(dimension));
+  }
+  return take(search, width);
 }
 
 }  // namespace
@@ -201,30 +264,11 @@ Levels all_levels(const MatrixXcd& matrix) {
   return levels;
 }
 
-Result<Levels, RunError> lowest_levels(Index dimension, Index count, const Product& product, const MatrixXcd& start,
-                                       const Interrupted& interrupted) {
+Result<Levels, RunError> lowest_levels(Index dimension, Index count, const Product& product, bool real,
+                                       const MatrixXcd& start, const Interrupted& interrupted) {
   TARN_CHECK(count >= 1 && 8 * count <= dimension);
-  Noise noise;
-  const double width = estimate_width(dimension, product, noise);
-  // Two stored vectors a column: large systems get few columns.
-  const Index roomy = dimension < kLargeDimension ? std::max<Index>(3 * count + 4 * kBlock, 48) : 2 * count + 4 * kBlock;
-  const Index capacity = std::min(dimension, roomy);
-  Space space(dimension, capacity, product);
-  for (Index k = 0; k < std::min(start.cols(), count + kBlock); ++k) space.add(start.col(k));
-  for (Index k = 0; k < kBlock + 1; ++k) space.add(noise.vector(dimension));
-  const Search search{space, count, std::max(kResidual * width, 1e-300), noise};
-  while (space.size() <= count) {
-    if (!space.add(noise.vector(dimension))) break;
-  }
-  // Twice: the second round starts from the levels found and fresh vectors.
-  for (int round = 0; round < 2; ++round) {
-    const auto done = converge(search, interrupted);
-    if (!done) return Unexpected{done.error()};
-    if (round == 1) break;
-    space.restart(count);
-    for (Index k = 0; k < kBlock; ++k) space.add(noise.vector(dimension));
-  }
-  return take(search, width);
+  if (real) return search_levels<double>(dimension, count, product, start.real(), interrupted);
+  return search_levels<Complex>(dimension, count, product, start, interrupted);
 }
 
 }  // namespace tarn::runtime

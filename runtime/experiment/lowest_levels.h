@@ -27,12 +27,13 @@ Levels all_levels(const Eigen::MatrixXcd& matrix);
 /// The `count` lowest levels by a block Krylov space with thick restarts and full
 /// orthogonalisation. Copies of a degenerate level beyond the block are looked for: with the
 /// levels found held fixed, fresh random vectors must turn up nothing below the highest of them.
-/// Residuals are at most 1e-10 of the width. `start` (N x any, may be empty) speeds it up.
+/// Residuals are at most 1e-10 of the width. `real`: H is a real matrix, which is searched in real
+/// arithmetic. `start` (N x any, may be empty; of a real H real) speeds it up.
 /// The result is a function of the arguments alone.
 /// Errors: `levels_not_found` after 4000 products per level, `interrupted`, `not_finite`.
 /// Precondition: 1 <= count, 8 count <= N.
 /// Method: thick restarts as in SIAM J. Matrix Anal. Appl. 22, 602 (2000), with a block of residuals.
 Result<Levels, RunError> lowest_levels(Eigen::Index dimension, Eigen::Index count, const Product& product,
-                                       const Eigen::MatrixXcd& start, const Interrupted& interrupted);
+                                       bool real, const Eigen::MatrixXcd& start, const Interrupted& interrupted);
 
 }  // namespace tarn::runtime

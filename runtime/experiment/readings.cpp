@@ -98,9 +98,7 @@ struct InstantReadings::Preparer {
   }
   Outcome operator()(const ReadMean& read) const { return of_words(scaled_words(read.op, coefficients)); }
   Outcome operator()(const ReadMeanEnergy&) const {
-    std::vector<WordTerm> words = scaled_words(plan.chip.hamiltonian, coefficients);
-    for (const WordTerm& term : scaled_words(plan.chip.drive, coefficients)) words.push_back(term);
-    return of_words(std::move(words));
+    return of_words(scaled_words(plan.chip.hamiltonian, coefficients));
   }
   Outcome of_words(std::vector<WordTerm> words) const {
     const double bound = norm_bound(words);

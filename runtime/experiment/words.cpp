@@ -45,6 +45,15 @@ std::vector<WordTerm> scaled_words(const OperatorSum& sum, std::span<const doubl
   return words;
 }
 
+bool has_real_matrix(const OperatorSum& sum) {
+  for (const OperatorGroup& group : sum.groups) {
+    for (const WordTerm& term : group.terms) {
+      if ((term.factor * phase(term.word)).imag() != 0) return false;
+    }
+  }
+  return true;
+}
+
 Eigen::MatrixXcd dense_operator(const std::vector<WordTerm>& words, std::size_t qubits) {
   const Index size = Index{1} << qubits;
   Eigen::MatrixXcd matrix = Eigen::MatrixXcd::Zero(size, size);

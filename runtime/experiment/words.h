@@ -13,6 +13,9 @@ namespace tarn::runtime {
 /// The words of a sum with their factors times the coefficients of their groups.
 std::vector<WordTerm> scaled_words(const OperatorSum& sum, std::span<const double> coefficients);
 
+/// True if the matrix is real for real coefficients.
+bool has_real_matrix(const OperatorSum& sum);
+
 /// The N x N matrix of a sum of words.
 Eigen::MatrixXcd dense_operator(const std::vector<WordTerm>& words, std::size_t qubits);
 

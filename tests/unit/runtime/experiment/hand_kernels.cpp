@@ -140,9 +140,35 @@ Model make_two_qubits() {
   return model;
 }
 
+OperatorSum ring_hamiltonian() {
+  OperatorSum sum{{{0, {}}, {1, {}}}};
+  for (std::uint32_t q = 0; q < 9; ++q) {
+    sum.groups[0].terms.push_back({1, {std::uint64_t{1} << q, 0}});
+    sum.groups[1].terms.push_back({1, {0, (std::uint64_t{1} << q) | (std::uint64_t{1} << ((q + 1) % 9))}});
+  }
+  return sum;
+}
+
+Model make_ring() {
+  Model model;
+  model.coefficient_rows = 4;
+  model.coefficients = [](const double* in, double s, double, double* out) {
+    out[0] = -(1 - s) * in[0];
+    out[1] = -s * in[1];
+    out[2] = out[3] = 1;
+  };
+  model.slopes = [](const double* in, double, double* out) {
+    out[0] = in[0];
+    out[1] = -in[1];
+    out[2] = out[3] = 0;
+  };
+  model.generators = {{9, ring_hamiltonian()}, {9, scaled(ring_hamiltonian(), Complex(0, -1))}};
+  return model;
+}
+
 template <int M>
 const Model& model() {
-  static const Model made = M == 0 ? make_one_qubit() : make_two_qubits();
+  static const Model made = M == 0 ? make_one_qubit() : M == 1 ? make_two_qubits() : make_ring();
   return made;
 }
 
@@ -285,6 +311,15 @@ Plan common_plan() {
 
 Kernel one_qubit(bool lanes) { return make_kernel<0>(lanes); }
 Kernel two_qubits(bool lanes) { return make_kernel<1>(lanes); }
+
+Kernel ring_of_nine() { return make_kernel<2>(false); }
+
+Plan ring_plan() {
+  Plan plan = common_plan();
+  for (int q = 0; q < 9; ++q) plan.chip.qubits.push_back({"q[" + std::to_string(q) + "]", {}});
+  plan.chip.hamiltonian = ring_hamiltonian();
+  return plan;
+}
 
 Setting setting(std::uint32_t row) { return {row, {"model.tarn", row + 1, 1, 2}}; }
 

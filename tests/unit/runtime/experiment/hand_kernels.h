@@ -25,6 +25,10 @@ tarn::runtime::Kernel one_qubit(bool lanes);
 /// 2 0.1 c sin(t) (on Y0 X1: a term in t), 3 one.
 tarn::runtime::Kernel two_qubits(bool lanes);
 
+/// A ring of nine qubits. Coefficients: 0 -(1-s) a (on sum X), 1 -s b (on sum Z Z), 2 and 3 one.
+tarn::runtime::Kernel ring_of_nine();
+tarn::runtime::Plan ring_plan();
+
 /// A plan on either kernel: chip, parameters, a ramp from 0 to 1 over ta; nothing observed yet.
 tarn::runtime::Plan one_qubit_plan();
 tarn::runtime::Plan two_qubit_plan(bool with_drive);

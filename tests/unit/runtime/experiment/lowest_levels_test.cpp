@@ -42,7 +42,7 @@ TEST_CASE("ground energy of the transverse-field ring of 10 spins") {
   for (int m = 0; m < n; ++m) {
     expected -= std::sqrt(g * g + j * j - 2 * g * j * std::cos((2 * m + 1) * std::numbers::pi / n));
   }
-  const auto levels = lowest_levels(1 << n, 3, ring(n, g, j), {}, {});
+  const auto levels = lowest_levels(1 << n, 3, ring(n, g, j), GENERATE(true, false), {}, {});
   REQUIRE(levels);
   CHECK(levels->energies[0] == Approx(expected).epsilon(1e-12));
   CHECK(orthonormality(levels->vectors) < 1e-12);
@@ -54,7 +54,7 @@ TEST_CASE("ground energy of the transverse-field ring of 10 spins") {
 TEST_CASE("every copy of a degenerate level is found, also beyond the block") {
   // At g = 0 the two aligned states are lowest; next come n(n-1) states with two walls.
   const int n = 9;
-  const auto levels = lowest_levels(1 << n, 24, ring(n, 0, 1), {}, {});
+  const auto levels = lowest_levels(1 << n, 24, ring(n, 0, 1), true, {}, {});
   REQUIRE(levels);
   CHECK(levels->energies[0] == Approx(-n));
   CHECK(levels->energies[1] == Approx(-n));
@@ -72,14 +72,14 @@ TEST_CASE("a complex Hermitian matrix against a dense solve") {
     Eigen::Map<Eigen::VectorXcd>(y, size) = m * Eigen::Map<const Eigen::VectorXcd>(x, size);
   };
   const Levels dense = all_levels(m);
-  const auto few = lowest_levels(size, 5, product, {}, {});
+  const auto few = lowest_levels(size, 5, product, false, {}, {});
   REQUIRE(few);
   for (Index k = 0; k < 5; ++k) {
     CHECK(few->energies[k] == Approx(dense.energies[k]).epsilon(1e-12));
     CHECK(std::abs(few->vectors.col(k).dot(dense.vectors.col(k))) == Approx(1).epsilon(1e-9));
   }
   SECTION("a good start gives the same levels") {
-    const auto again = lowest_levels(size, 5, product, few->vectors, {});
+    const auto again = lowest_levels(size, 5, product, false, few->vectors, {});
     REQUIRE(again);
     CHECK((again->energies - few->energies).norm() < 1e-10);
   }
@@ -87,8 +87,8 @@ TEST_CASE("a complex Hermitian matrix against a dense solve") {
 
 TEST_CASE("a constant matrix and an interrupted search") {
   const Product zero = [](const Complex*, Complex* y) { std::fill(y, y + 64, Complex(0)); };
-  const auto levels = lowest_levels(64, 4, zero, {}, {});
+  const auto levels = lowest_levels(64, 4, zero, true, {}, {});
   REQUIRE(levels);
   CHECK(levels->energies.norm() == 0);
-  CHECK(lowest_levels(512, 2, ring(9, 1, 1), {}, [] { return true; }).error().kind == "interrupted");
+  CHECK(lowest_levels(512, 2, ring(9, 1, 1), true, {}, [] { return true; }).error().kind == "interrupted");
 }
