@@ -14,7 +14,7 @@
 
    Complex vectors: amplitude i of a plain vector is the pair x[2i], x[2i+1]. In a lane vector,
    part c (0 real, 1 imaginary) of amplitude i in lane l is x[(2i + c) W + l].
-   All vectors are aligned to 64 bytes. Bit n-1 of an index belongs to the first placed qubit. */
+   All vectors, prepared data among them, are aligned to 64 bytes. Bit n-1 of an index belongs to the first placed qubit. */
 
 #include <stddef.h>
 #include <stdint.h>
@@ -59,7 +59,7 @@ typedef tarn_status (*tarn_prepare_fn)(double* prepared);
 
 /* y = G x, G = sum over groups of coefficient[row] times its Pauli words.
    `coefficients` is the output of set 0 for one point (lane entries: row r of lane l at r W + l).
-   x and y must not overlap. */
+   x and y must not overlap; what is in y before does not matter. */
 typedef tarn_status (*tarn_apply_fn)(const double* coefficients, const double* prepared,
                                      const double* x, double* y);
 
