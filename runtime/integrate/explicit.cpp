@@ -19,6 +19,8 @@ using pair853::kTable;
 constexpr std::size_t kState = 0, kFirstStage = 1, kNext = kFirstStage + pair853::kStages,
                       kArgument = kNext + 1, kRows = kArgument + 1;
 constexpr std::size_t kEndStage = 12;
+/// What the integral part of the control remembers of a step far better than needed: log(1e-4).
+constexpr double kLeastLogRatio = -9.2;
 /// Stages that only the interpolant needs.
 constexpr std::array<std::size_t, 3> kInterpolantStages = {13, 14, 15};
 
@@ -253,11 +255,12 @@ void ExplicitIntegrator::judge_lane(Lane& lane, double ratio, double shortest) {
   lane.accepted = ratio <= 1;
   if (lane.accepted) {
     ++lane.counters.steps;
-    double growth = growth_after_success(ratio, lane.last_ratio);
+    const double log_ratio = std::log(std::max(ratio, 1e-30));
+    double growth = growth_after_success(log_ratio, lane.last_log_ratio);
     if (lane.just_rejected) growth = std::min(growth, 1.0);
     const double proposal = lane.trial * growth;
     lane.step = lane.trial < lane.step ? std::max(lane.step, proposal) : proposal;
-    lane.last_ratio = std::max(ratio, 1e-4);
+    lane.last_log_ratio = std::max(log_ratio, kLeastLogRatio);
     lane.just_rejected = false;
     return;
   }

@@ -11,18 +11,15 @@ namespace tarn::runtime {
 /// large parts make e3 and fast small ones e5, a smaller share is right.
 inline double blended_error(double e5, double e3, double share) {
   if (e5 == 0) return 0;
-  return e5 * e5 / std::hypot(e5, share * e3);
+  return e5 * e5 / std::sqrt(e5 * e5 + share * share * e3 * e3);
 }
 
 /// Factor for the step after an accepted one: proportional and integral control, for an error of
-/// order 8 in the step. `ratio` is error over tolerance of this step, `last_ratio` of the one before.
+/// order 8 in the step. Logarithms of error over tolerance, of this step and of the one before.
 /// Source: Solving Ordinary Differential Equations II (Springer, 1996), IV.2.
-inline double growth_after_success(double ratio, double last_ratio) {
-  constexpr double kIntegral = 0.04, kOrder = 8;
-  if (ratio == 0) return 6;
-  const double factor = 0.9 * std::pow(ratio, -(1 / kOrder - 0.2 * kIntegral)) *
-                        std::pow(last_ratio, kIntegral);
-  return std::clamp(factor, 0.3, 6.0);
+inline double growth_after_success(double log_ratio, double last_log_ratio) {
+  constexpr double kIntegral = 0.04, kProportional = 1.0 / 8 - 0.2 * kIntegral;
+  return std::clamp(0.9 * std::exp(kIntegral * last_log_ratio - kProportional * log_ratio), 0.3, 6.0);
 }
 
 /// Factor for repeating a rejected step; NaN and infinity shrink it most.
