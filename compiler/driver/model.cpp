@@ -35,7 +35,13 @@ std::optional<LoadedModel> load_model(const ModelOptions& options) {
   Diagnostics diagnostics;
   LoadOptions load{standard_library(), {}};
   for (const std::string& folder : options.also_read) load.also_read.emplace_back(folder);
-  LoadedModel model{check(load_modules(options.file, load, diagnostics), diagnostics), {}};
+  Modules modules = load_modules(options.file, load, diagnostics);
+  if (diagnostics.has_errors()) {
+    // What a text that cannot be read means is a guess: its messages would only follow from others.
+    show_diagnostics(diagnostics, modules.sources, options.json_diagnostics);
+    return std::nullopt;
+  }
+  LoadedModel model{check(std::move(modules), diagnostics), {}};
   if (!diagnostics.has_errors()) {
     model.overrides = read_overrides(model.program, as_pairs(options.overrides), diagnostics);
   }

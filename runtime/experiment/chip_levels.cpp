@@ -50,8 +50,8 @@ ChipLevels::ChipLevels(const Plan& plan, const Kernel& kernel, const Functions& 
       dimension_(Index{1} << plan.chip.qubits.size()), real_(has_real_matrix(plan.chip.hamiltonian)) {}
 
 Product ChipLevels::product(const std::vector<double>& coefficients) {
-  if (prepared_.empty()) {
-    prepared_.resize(kernel_.prepared_doubles(kHamiltonian) + 1);
+  if (prepared_.size() == 0) {
+    prepared_ = AlignedArray(kernel_.prepared_doubles(kHamiltonian) + 1);
     TARN_CHECK(kernel_.prepare(kHamiltonian)(prepared_.data()) == TARN_OK);
   }
   // The generator holds the terms in t as well: without their coefficients it is H of levels.

@@ -7,6 +7,7 @@
 
 #include "runtime/experiment/functions.h"
 #include "runtime/experiment/lowest_levels.h"
+#include "runtime/integrate/vectors.h"
 
 namespace tarn::runtime {
 
@@ -45,7 +46,7 @@ class ChipLevels {
   Interrupted interrupted_;
   Eigen::Index dimension_;
   bool real_;  ///< H is a real matrix.
-  std::vector<double> prepared_;
+  AlignedArray prepared_;
   std::optional<double> solved_;  ///< The s that `levels_` belong to.
   Levels levels_;
   std::uint64_t decompositions_ = 0;

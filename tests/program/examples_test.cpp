@@ -37,8 +37,8 @@ TEST_CASE("one qubit misses its avoided crossing as published") {
 TEST_CASE("a ring with a weak link relaxes to its target when annealed slowly") {
   const Scratch scratch;
   run_example("02_weak_link/weak_link.tarn", scratch, {"--experiment", "speed", "--sample", "4"});
-  run_example("02_weak_link/weak_link.tarn", scratch, {"--experiment", "spectrum"});
-  CHECK(read_csv(scratch.path() / "out/spectrum/results.csv").rows.size() == 96);
+  run_example("02_weak_link/weak_link.tarn", scratch, {"--experiment", "levels_along"});
+  CHECK(read_csv(scratch.path() / "out/levels_along/results.csv").rows.size() == 96);
 }
 
 TEST_CASE("a pause repairs a fast ramp where the gap is small") {
