@@ -137,6 +137,14 @@ Result<DaviesRun, RunError> run_of(const PointTask& task, std::shared_ptr<const 
   return run;
 }
 
+/// Nothing moves: the state is the first one at every instant.
+void stand_still(PointTask& task) {
+  task.begin_run();
+  const State state = density_of(task.begin());
+  for (std::size_t k = 0; k < task.times().size(); ++k) task.visit(k, state, 1);
+  task.end_run_with_error({}, 0, true);
+}
+
 std::shared_ptr<const Functions> functions_of(const PointTask& task) {
   auto functions = std::make_shared<Functions>(task.model().kernel(), task.model().tables(), task.model().plan());
   for (std::uint32_t i = 0; i < task.model().kernel().inputs(); ++i) functions->set_input(i, task.input(i));
@@ -200,6 +208,7 @@ Result<DaviesPoints::AnyTables, RunError> DaviesPoints::tables_for(const PointTa
 
 void DaviesPoints::advance(PointTask& task, const Interrupted& interrupted) {
   if (!task.wants_run()) return;
+  if (task.timeline().segments.empty()) return stand_still(task);
   const auto tables = tables_for(task);
   if (!tables) return task.fail(tables.error());
   const auto run = run_of(task, functions_of(task));

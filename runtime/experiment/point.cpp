@@ -63,6 +63,9 @@ Result<Done, RunError> PointTask::prepare() {
   if (!plan_.begin || plan_.scan) {
     return Unexpected{RunError{"no_state", "an observable reads the state, but there is none without `begin` and dynamics"}};
   }
+  if (plan_.equation == Equation::none && !timeline_.segments.empty()) {
+    return Unexpected{RunError{"no_equation", "an observable reads the state along the pace, which takes an `equation`"}};
+  }
   auto begin = begin_state(plan_, levels_, timeline_.first_s, settings_);
   if (!begin) return Unexpected{begin.error()};
   begin_ = std::move(begin).value();

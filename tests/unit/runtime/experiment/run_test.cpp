@@ -187,6 +187,7 @@ TEST_CASE("relaxation by Davies' equation of a qubit that stands still") {
 
 TEST_CASE("states to begin with") {
   Plan plan = hand::one_qubit_plan();
+  plan.equation = GENERATE(Equation::none, Equation::schroedinger, Equation::davies);
   plan.pace = {PaceStart{setting(2)}};
   set(plan, 0, 1.5);
   set(plan, 1, 2.0);
@@ -422,6 +423,9 @@ TEST_CASE("moments: at a time, at an s, and those that are never met") {
   CHECK(run(plan, hand::one_qubit(false)).points[0].error->kind == "time_outside");
   plan.observables[1].moment = AtS{setting(2), false};
   CHECK(run(plan, hand::one_qubit(false)).points[0].error->kind == "s_never_met");
+  plan.observables.resize(1);
+  plan.equation = Equation::none;
+  CHECK(run(plan, hand::one_qubit(false)).points[0].error->kind == "no_equation");
 }
 
 TEST_CASE("the short table leaves out the middle and shows the digits that are known") {
