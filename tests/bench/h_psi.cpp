@@ -69,12 +69,14 @@ ir::Generator open_ring(std::uint32_t qubits) {
 Eigen::SparseMatrix<Complex, Eigen::RowMajor> sparse(const ir::Generator& generator, const double* coefficients) {
   std::vector<Eigen::Triplet<Complex>> entries;
   for (const auto& group : generator.sum.groups)
-    for (const auto& term : group.terms)
+    for (const auto& term : group.terms) {
+      const Complex phase = std::pow(Complex(0, 1), std::popcount(term.word.x & term.word.z));
+      const Complex element = coefficients[group.coefficient] * term.factor * phase;
       for (std::uint64_t i = 0; i >> generator.bits == 0; ++i) {
         const bool odd = (std::popcount(term.word.z & i) & 1) != 0;
-        const Complex phase = std::pow(Complex(0, 1), std::popcount(term.word.x & term.word.z));
-        entries.emplace_back(static_cast<int>(i ^ term.word.x), static_cast<int>(i), coefficients[group.coefficient] * term.factor * phase * (odd ? -1.0 : 1.0));
+        entries.emplace_back(static_cast<int>(i ^ term.word.x), static_cast<int>(i), odd ? -element : element);
       }
+    }
   const auto size = Eigen::Index{1} << generator.bits;
   Eigen::SparseMatrix<Complex, Eigen::RowMajor> matrix(size, size);
   matrix.setFromTriplets(entries.begin(), entries.end());
@@ -253,6 +255,7 @@ void expressions() {
 }  // namespace
 
 int main(int count, char** arguments) {
+  std::setvbuf(stdout, nullptr, _IOLBF, 0);
   const std::string only = count > 1 ? arguments[1] : "";
   if (only.empty() || only == "h_psi") h_psi();
   if (only.empty() || only == "liouvillians") liouvillians();
