@@ -20,13 +20,13 @@ const fs::path kCrossing = source_root() / "examples/01_avoided_crossing/crossin
 /// A qubit whose flips are claimed to stay below a limit; the limit is a parameter.
 const char* const kClaim =
     "parameter limit : number = 0.9 in 0 .. 1\nparameter D = 1 GHz\nqubit site { energy -D/2*X }\n"
-    "chip one { qubit q : site }\nexperiment e {\n chip one\n begin state(\"0\")\n pace hold for 0.25 ns\n"
+    "chip one { qubit q : site }\nexperiment trial {\n chip one\n begin state(\"0\")\n pace hold for 0.25 ns\n"
     " equation schroedinger\n observe p = population(state(\"1\")) at end\n expect p <= limit\n}\n";
 
 /// Many points that take long together: driven qubits over a fine grid.
 const char* const kLong =
     "parameter f = 5 GHz in 1 GHz .. 9 GHz\nqubit site { energy -5 GHz/2*Z + 50 MHz*cos(f*t)*X }\n"
-    "chip one { qubit q : site }\nexperiment e {\n chip one\n begin state(\"0\")\n pace hold for 20 us\n"
+    "chip one { qubit q : site }\nexperiment trial {\n chip one\n begin state(\"0\")\n pace hold for 20 us\n"
     " equation schroedinger\n observe p = population(state(\"1\")) at end\n sweep f over linear(4 GHz, 6 GHz, 4000)\n}\n";
 
 std::vector<fs::path> models_of_the_checkout() {
@@ -58,14 +58,14 @@ TEST_CASE("a folder of the same key is continued, of another refused untouched")
   const Scratch scratch;
   scratch.write("m.tarn", kClaim);
   REQUIRE(run_tarn({"run", "m.tarn", "--out", "r", "--set", "limit=1"}, scratch.path()).status == 0);
-  const std::string before = read_file(scratch.path() / "r/e/results.csv");
+  const std::string before = read_file(scratch.path() / "r/trial/results.csv");
   CHECK(run_tarn({"run", "m.tarn", "--out", "r", "--set", "limit=1"}, scratch.path()).status == 0);
   const Outcome other = run_tarn({"run", "m.tarn", "--out", "r", "--set", "D=2 GHz"}, scratch.path());
   CHECK(other.status == 2);
-  CHECK(read_file(scratch.path() / "r/e/results.csv") == before);
-  scratch.write("f/e/notes.txt", "mine");
+  CHECK(read_file(scratch.path() / "r/trial/results.csv") == before);
+  scratch.write("f/trial/notes.txt", "mine");
   CHECK(run_tarn({"run", "m.tarn", "--out", "f"}, scratch.path()).status == 2);
-  CHECK(read_file(scratch.path() / "f/e/notes.txt") == "mine");
+  CHECK(read_file(scratch.path() / "f/trial/notes.txt") == "mine");
 }
 
 TEST_CASE("an interrupted run keeps its finished rows and is continued to the same bytes") {
@@ -77,12 +77,12 @@ TEST_CASE("an interrupted run keeps its finished rows and is continued to the sa
   });
   INFO(cut.err);
   CHECK(cut.status == 3);
-  const Csv part = read_csv(scratch.path() / "r/e/results.csv");
+  const Csv part = read_csv(scratch.path() / "r/trial/results.csv");
   CHECK(part.rows.size() < 4000);
   const Outcome limited = run_tarn({"run", "m.tarn", "--out", "r", "--time-limit", "1s"}, scratch.path());
   CHECK(limited.status == 3);
   CHECK(limited.seconds < 10);
-  CHECK(read_csv(scratch.path() / "r/e/results.csv").rows.size() >= part.rows.size());
+  CHECK(read_csv(scratch.path() / "r/trial/results.csv").rows.size() >= part.rows.size());
 }
 
 TEST_CASE("another value of a parameter compiles nothing") {

@@ -21,7 +21,7 @@ constexpr long kKib = 200L << 10;
 
 const char* const kOneQubit =
     "qubit site { energy -1 GHz/2*X }\nchip one { qubit q : site }\n"
-    "experiment e { chip one begin ground pace hold for 1 ns equation schroedinger observe x = mean(X(q)) at end }\n";
+    "experiment trial { chip one begin ground pace hold for 1 ns equation schroedinger observe x = mean(X(q)) at end }\n";
 
 /// Refused with status 2 and a message, in bounds.
 void check_refused(const Outcome& outcome, const std::string& part = "") {
@@ -70,11 +70,11 @@ TEST_CASE("enormous numbers and chips are refused") {
   check_refused(check_text("parameter x = 1e999 GHz\n"));
   check_refused(check_text("parameter x = 1" + repeat("0", 5000) + "\n"));
   check_refused(check_text("qubit site { energy -1 GHz/2*X }\nchip c { qubit q[i] : site for i in 0 .. 59 }\n"
-                           "experiment e { chip c begin ground pace hold for 1 ns equation schroedinger "
+                           "experiment trial { chip c begin ground pace hold for 1 ns equation schroedinger "
                            "observe x = mean(X(q[0])) at end }\n"),
                 "60 qubits");
   check_refused(check_text("qubit site { energy -1 GHz/2*X }\nchip c { qubit q[i] : site for i in 0 .. 1000000000 }\n"
-                           "experiment e { chip c scan s over list(0) observe gap }\n"));
+                           "experiment trial { chip c scan s over list(0) observe gap }\n"));
 }
 
 TEST_CASE("cyclic definitions and imports are refused") {
@@ -89,7 +89,7 @@ TEST_CASE("cyclic definitions and imports are refused") {
 TEST_CASE("bad tables are refused with the place in the table") {
   const std::string model =
       "schedule A(s) = table(\"t.csv\", \"s\", \"A [GHz]\", by = \"linear\")\nqubit site { energy -A(s)/2*X }\n"
-      "chip one { qubit q : site }\nexperiment e { chip one scan s over list(0, 1) observe gap }\n";
+      "chip one { qubit q : site }\nexperiment trial { chip one scan s over list(0, 1) observe gap }\n";
   for (const char* rows : {"0,1\n0.5,\n1,2\n", "0,1\n0.5,nan\n1,2\n", "0,1\n0.7,1\n0.5,2\n1,2\n", "0,1\nx,2\n", "0,1,2\n1,2\n"}) {
     const Scratch scratch;
     scratch.write("m.tarn", model);

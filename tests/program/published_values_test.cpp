@@ -24,7 +24,7 @@ Csv results(const std::string& model, const std::string& experiment, const std::
 
 TEST_CASE("transverse-field rings have the published ground energy") {
   // Ann. Phys. 57, 79 (1970): E_0 = -sum_k sqrt(g^2 + J^2 - 2 g J cos k), k = (2m + 1) pi / n.
-  const Csv csv = results("ring_levels", "levels");
+  const Csv csv = results("ring_levels", "ground_energy");
   REQUIRE(csv.rows.size() == 5);
   const double g = 1.3, j = 0.7;
   for (std::size_t row = 0; row < csv.rows.size(); ++row) {
