@@ -153,8 +153,17 @@ class ApplyEmitter {
       signs.push_back(llvm::ConstantFP::get(unit_.real(), (k & 1) != 0 ? 1 : -1));
     }
     Value* turned = build_.CreateShuffleVector(imaginary, swapped);
-    add_product(real, turned, llvm::ConstantVector::get(signs));
-    return real;
+    if (real) return multiply_add(unit_, turned, llvm::ConstantVector::get(signs), real);
+    return flip_even_signs(turned);
+  }
+
+  /// By exclusive or, which does not compete with the additions and multiplications.
+  Value* flip_even_signs(Value* x) {
+    std::vector<llvm::Constant*> masks;
+    for (unsigned k = 0; k < width_; ++k) masks.push_back(build_.getInt64((k & 1) != 0 ? 0 : std::uint64_t{1} << 63));
+    auto* bits = llvm::FixedVectorType::get(unit_.index(), width_);
+    Value* flipped = build_.CreateXor(build_.CreateBitCast(x, bits), llvm::ConstantVector::get(masks));
+    return build_.CreateBitCast(flipped, x->getType());
   }
 
   unsigned alignment() const { return width_ * 8; }
