@@ -3,6 +3,7 @@
 #include <charconv>
 #include <cmath>
 
+#include "lang/quantities/constants.h"
 #include "lang/support/check.h"
 #include "lang/syntax/builder.h"
 #include "lang/syntax/characters.h"
@@ -111,6 +112,7 @@ ast::Name Builder::name(NodeId id) const {
 
 std::optional<double> Builder::number_value(Span place) {
   const std::string_view digits = text(place);
+  if (digits == "pi") return kPi;
   double value = 0;
   const auto [end, error] = std::from_chars(digits.data(), digits.data() + digits.size(), value);
   if (error == std::errc() && end == digits.data() + digits.size()) return value;

@@ -81,7 +81,8 @@ struct number_unit : peg::sor<peg::seq<peg::at<any_of<Code::open_square>>, brack
                               peg::seq<unit, peg::not_at<any_of<Code::caret>>>> {
   static constexpr std::string_view expected = "";
 };
-struct number : peg::seq<number_token, peg::opt<number_unit>> {
+/// `pi` alone is a name like any other; before a unit it is a number.
+struct number : peg::sor<peg::seq<number_token, peg::opt<number_unit>>, peg::seq<any_of<Code::pi>, number_unit>> {
   static constexpr Tag tag = Tag::number;
 };
 struct text : any_of<Code::text> {
