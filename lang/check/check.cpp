@@ -121,6 +121,7 @@ void check_closed_chips(const Program& program, std::uint64_t& steps, Diagnostic
       Graph graph;
       Session session{program, graph, diagnostics, none};
       session.resume(steps);
+      session.trial = true;
       Unrolled unrolled;
       unroll_chip(session, {CallableKind::chip, module, &item, {}}, "", unrolled, chip->name.span);
       steps = session.steps;
@@ -146,7 +147,7 @@ Program check(Modules modules, Diagnostics& diagnostics) {
   check_declarations(program, steps, diagnostics);
   check_closed_chips(program, steps, diagnostics);
   for (std::uint32_t k = 0; k < program.experiments.size(); ++k) {
-    elaborate_experiment(program, k, {}, steps, diagnostics);
+    elaborate_experiment(program, k, {}, true, steps, diagnostics);
   }
   return program;
 }
@@ -167,7 +168,7 @@ std::optional<std::uint32_t> find_experiment(const Program& program, const std::
 std::vector<Instance> instances(const Program& program, std::uint32_t experiment, const Overrides& overrides,
                                 Diagnostics& diagnostics) {
   std::uint64_t steps = 0;
-  return elaborate_experiment(program, experiment, overrides, steps, diagnostics);
+  return elaborate_experiment(program, experiment, overrides, false, steps, diagnostics);
 }
 
 std::optional<Instance> instantiate(const Program& program, std::uint32_t experiment, const Overrides& overrides,

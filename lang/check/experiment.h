@@ -42,7 +42,8 @@ std::vector<double> elaborate_scan(Session& session, const Scope& scope, const a
 // Each fills its part of the instance.
 void elaborate_begin(Session& session, const Scope& scope, const ast::Begin& begin, Instance& instance);
 void elaborate_pace(Session& session, const Scope& scope, const ast::Pace& pace, Instance& instance);
-void elaborate_equation(Session& session, const Scope& scope, const Statements& statements, Instance& instance);
+void elaborate_equation(Session& session, const Scope& scope, const ast::Equation& equation, Instance& instance);
+void elaborate_levels(Session& session, const Scope& scope, const ast::Levels& levels, Instance& instance);
 void elaborate_observables(Session& session, Scope& scope, const Statements& statements, Readings& readings, Instance& instance);
 void elaborate_claims(Session& session, Scope& scope, const Statements& statements, Readings& readings, Instance& instance);
 

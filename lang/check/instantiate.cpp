@@ -110,10 +110,12 @@ Instance elaborate(Session& session, const Statements& statements, const Program
   if (statements.begin != nullptr) elaborate_begin(session, scope, *statements.begin, instance);
   if (statements.pace != nullptr) elaborate_pace(session, scope, *statements.pace, instance);
   if (statements.scan != nullptr) instance.scan = elaborate_scan(session, scope, *statements.scan);
-  elaborate_equation(session, scope, statements, instance);
+  if (statements.equation != nullptr) elaborate_equation(session, scope, *statements.equation, instance);
+  if (statements.levels != nullptr) elaborate_levels(session, scope, *statements.levels, instance);
   if (statements.tolerance != nullptr) elaborate_tolerance(session, scope, *statements.tolerance, instance);
   Readings readings{&unrolled, &instance.readings, &instance.observables};
   readings.scans = statements.scan != nullptr;
+  readings.pace_broken = statements.pace != nullptr && statements.pace->pieces.size() != instance.pace.size();
   elaborate_observables(session, scope, statements, readings, instance);
   elaborate_claims(session, scope, statements, readings, instance);
   check_whole(session, statements, readings, instance);
@@ -203,14 +205,15 @@ std::optional<std::vector<PointGroup>> group_points(Session& session, const std:
 
 Instance elaborate_group(const Program& program, std::uint32_t experiment, const Statements& statements,
                          const std::vector<SweptAxis>& axes, const PointGroup& group, const Overrides& values,
-                         std::uint64_t& steps, Diagnostics& diagnostics) {
+                         bool trial, std::uint64_t& steps, Diagnostics& diagnostics) {
   Graph graph;
   Session session{program, graph, diagnostics, values};
   session.resume(steps);
+  session.trial = trial;
   Instance instance = elaborate(session, statements, program.experiments[experiment]);
   instance.graph = graph;
   attach_axes(session, axes, instance);
-  if (!session.exhausted) report_missing_values(session, instance);
+  if (!session.exhausted && !trial) report_missing_values(session, instance);
   instance.parameters = session.parameters;
   instance.points = group.points;
   instance.remarks = session.remarks;
@@ -229,7 +232,7 @@ Statements sort_statements(Session& session, const ast::Experiment& experiment) 
 }
 
 std::vector<Instance> elaborate_experiment(const Program& program, std::uint32_t experiment, const Overrides& overrides,
-                                           std::uint64_t& steps, Diagnostics& diagnostics) {
+                                           bool trial, std::uint64_t& steps, Diagnostics& diagnostics) {
   const std::size_t errors = diagnostics.error_count();
   Graph scratch;
   Session reading{program, scratch, diagnostics, overrides};
@@ -247,7 +250,7 @@ std::vector<Instance> elaborate_experiment(const Program& program, std::uint32_t
     Overrides values = values_without_default(program, axes);
     values.insert(overrides.begin(), overrides.end());
     for (const auto& [name, value] : group.counts) values.insert_or_assign(name, value);
-    result.push_back(elaborate_group(program, experiment, statements, axes, group, values, steps, diagnostics));
+    result.push_back(elaborate_group(program, experiment, statements, axes, group, values, trial, steps, diagnostics));
     if (steps > kMaxSteps) break;
   }
   if (diagnostics.error_count() != errors) result.clear();

@@ -106,7 +106,9 @@ class ObserveReader {
     const Dependence reads = dependence(session_.graph, *value);
     const bool reduces_only = std::all_of(instance_.readings.begin() + static_cast<std::ptrdiff_t>(before), instance_.readings.end(),
                                           [](const ReadingI& reading) { return std::holds_alternative<ReduceI>(reading); });
-    if (!unit || !moment_fits(session_, observe, moment, instance_, reads, readings_.reduces && reduces_only)) return false;
+    const bool reduces = readings_.reduces && reduces_only;
+    const bool fits = readings_.pace_broken || moment_fits(session_, observe, moment, instance_, reads, reduces);
+    if (!unit || !fits) return false;
     readings_.by_name.emplace(observe.name.text, static_cast<std::uint32_t>(instance_.observables.size()));
     instance_.observables.push_back({observe.name.text, *unit, moment, *value, observe.name.span});
     return true;

@@ -144,36 +144,35 @@ void elaborate_pace(Session& session, const Scope& scope, const ast::Pace& pace,
   for (const ast::Piece& piece : pace.pieces) reader.read(piece, &piece == &pace.pieces.front());
 }
 
-void elaborate_equation(Session& session, const Scope& scope, const Statements& statements, Instance& instance) {
-  if (statements.equation != nullptr) {
-    const ast::Equation& equation = *statements.equation;
-    if (equation.each || equation.choices.size() != 1) {
-      session.report(equation.span, diag::not_available, "`each of`", "one equation in an experiment");
-      return;
-    }
-    const ast::Path& path = equation.choices.front().equation;
-    const std::string& word = path.steps.front().name.text;
-    const bool plain = path.steps.size() == 1 && !path.steps.front().index;
-    if (plain && word == "schroedinger" && path.given.empty()) {
-      instance.equation = EquationKind::schroedinger;
-    } else if (plain && word == "lindblad" && path.given.empty()) {
-      instance.equation = EquationKind::lindblad;
-    } else if (plain && word == "davies") {
-      instance.equation = EquationKind::davies;
-      read_davies_options(session, scope, path, instance);
-    } else {
-      session.report(path.span, diag::not_available, fmt::format("`{}`", excerpt(session, path.span)), std::string(kEquations));
-    }
-  }
-  if (statements.levels == nullptr) return;
-  if (!statements.levels->count) {
-    session.report(statements.levels->span, diag::not_available, "`levels auto`", "`levels K` with a number K");
+void elaborate_equation(Session& session, const Scope& scope, const ast::Equation& equation, Instance& instance) {
+  if (equation.each || equation.choices.size() != 1) {
+    session.report(equation.span, diag::not_available, "`each of`", "one equation in an experiment");
     return;
   }
-  const auto count = evaluate_count(session, scope, *statements.levels->count);
+  const ast::Path& path = equation.choices.front().equation;
+  const std::string& word = path.steps.front().name.text;
+  const bool plain = path.steps.size() == 1 && !path.steps.front().index;
+  if (plain && word == "schroedinger" && path.given.empty()) {
+    instance.equation = EquationKind::schroedinger;
+  } else if (plain && word == "lindblad" && path.given.empty()) {
+    instance.equation = EquationKind::lindblad;
+  } else if (plain && word == "davies") {
+    instance.equation = EquationKind::davies;
+    read_davies_options(session, scope, path, instance);
+  } else {
+    session.report(path.span, diag::not_available, fmt::format("`{}`", excerpt(session, path.span)), std::string(kEquations));
+  }
+}
+
+void elaborate_levels(Session& session, const Scope& scope, const ast::Levels& levels, Instance& instance) {
+  if (!levels.count) {
+    session.report(levels.span, diag::not_available, "`levels auto`", "`levels K` with a number K");
+    return;
+  }
+  const auto count = evaluate_count(session, scope, *levels.count);
   if (!count) return;
   if (*count < 1) {
-    session.report(span_of(session, scope, *statements.levels->count), diag::count_too_small, "the number of levels", 1);
+    session.report(span_of(session, scope, *levels.count), diag::count_too_small, "the number of levels", 1);
     return;
   }
   const double all = std::exp2(static_cast<double>(instance.qubits.size()));

@@ -20,6 +20,7 @@ struct Readings {
   bool reads_state = false;  ///< Set by what is evaluated: needs `begin`, and an equation where there is a pace.
   bool reads_levels = false;
   bool reduces = false;
+  bool pace_broken = false;  ///< The pace has an error, which was reported.
   bool scans = false;        ///< The experiment is a scan: every observable has a value at each s.
 };
 

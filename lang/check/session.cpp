@@ -48,7 +48,7 @@ NodeId opaque_number(Session& session, const std::string& name, Dimension dimens
 Value parameter_value(Session& session, std::uint32_t row, Span span) {
   const ProgramParameter& parameter = session.program.parameters[row];
   const auto set = session.overrides.find(parameter.name);
-  const std::optional<double> value = set == session.overrides.end() ? parameter.value : std::optional(set->second);
+  std::optional<double> value = set == session.overrides.end() ? parameter.value : std::optional(set->second);
   if (session.constants_only) {
     session.report(span, diag::constant_needed, parameter.declared).remedy("`let` names what follows from parameters");
     return {};
@@ -56,7 +56,12 @@ Value parameter_value(Session& session, std::uint32_t row, Span span) {
   if (parameter.broken) return {};
   if (parameter.count) {
     session.counts_used.insert(parameter.name);
-    if (session.generic || !value) return {CountValue{std::nullopt, opaque_number(session, parameter.name, kNumber, span)}};
+    if (!value && session.trial) value = parameter.lowest.value_or(2);
+    if (!value && !session.generic) {
+      session.report(span, diag::no_value, parameter.name).note(parameter.span, "declared here");
+      return {};
+    }
+    if (session.generic) return {CountValue{std::nullopt, opaque_number(session, parameter.name, kNumber, span)}};
     return count_value(static_cast<std::int64_t>(*value));
   }
   const auto [found, is_new] =

@@ -86,6 +86,7 @@ struct Session {
   std::uint64_t steps = 0;
   std::uint32_t depth = 0;
   bool generic = false;    ///< Arguments are opaque: places and values need not be known.
+  bool trial = false;      ///< Checking only: a parameter may lack its value.
   bool constants_only = false;  ///< Parameters may not be read.
   bool exhausted = false;  ///< A bound was passed and reported.
 

@@ -131,6 +131,28 @@ TEST_CASE("settings override defaults, counts included") {
   }
 }
 
+TEST_CASE("a parameter without default is set by the run") {
+  const std::string text = "parameter u : frequency\nparameter n : count\nqubit a { energy u*X }\n"
+                           "chip c { qubit q[i] : a for i in 0 .. n-1 }\n"
+                           "experiment run { chip c scan s over linear(0, 1, 3) observe gap }";
+  Checked checked = check_text(text);
+  CHECK(kinds(checked.diagnostics).empty());
+  const Overrides both = read_overrides(checked.program, {{"u", "2 GHz"}, {"n", "3"}}, checked.diagnostics);
+  CHECK(instantiate(checked.program, 0, both, checked.diagnostics)->qubits.size() == 3);
+  CHECK(kinds(checked.diagnostics).empty());
+  CHECK_FALSE(instantiate(checked.program, 0, {{"n", 3}}, checked.diagnostics));
+  CHECK(kinds(checked.diagnostics) == std::vector<std::string>{"no_value"});
+  CHECK_FALSE(instantiate(checked.program, 0, {{"u", 1}}, checked.diagnostics));
+}
+
+TEST_CASE("experiments are found by name, the only one without") {
+  Checked checked = check_text(ring("scan s over linear(0, 1, 3) observe gap"));
+  CHECK(find_experiment(checked.program, "run", checked.diagnostics) == 0u);
+  CHECK(find_experiment(checked.program, "", checked.diagnostics) == 0u);
+  CHECK_FALSE(find_experiment(checked.program, "runs", checked.diagnostics));
+  CHECK(kinds(checked.diagnostics) == std::vector<std::string>{"unknown_experiment"});
+}
+
 TEST_CASE("an offset moves the s of its qubit, held within 0 and 1; couplers see all three") {
   const Instance made = instance_of(R"(
 schedule B(s) = 1 GHz*s
