@@ -27,22 +27,18 @@ std::string_view place_name(CallableKind kind) {
   return kind == CallableKind::psd ? "in a psd" : "in a function";
 }
 
-Site law_site(const Callable& callable, const Scope& scope) {
-  const auto& args = arguments_of(callable);
+/// `argument` is what tables in it are read at: the law's s or w.
+Site law_site(const Callable& callable, std::optional<NodeId> argument) {
   Site site{.where = place_name(callable.kind)};
   site.operators = false;
   site.table_holds = callable.kind == CallableKind::schedule || callable.kind == CallableKind::function;
-  if (args.empty()) return site;
-  const auto first = scope.names.find(args.front().name.text);
-  if (first == scope.names.end() || !first->second.value) return site;
-  const auto* number = first->second.value->get<NumberValue>();
-  if (number != nullptr && callable.kind != CallableKind::function) site.table_argument = number->node;
+  site.table_argument = argument;
   return site;
 }
 
-Value evaluate_body(Session& session, const Callable& callable, Scope& scope) {
+Value evaluate_body(Session& session, const Callable& callable, std::optional<NodeId> argument, Scope& scope) {
   const auto& law = std::get<ast::Law>(*callable.item);
-  const Site site = law_site(callable, scope);
+  const Site site = law_site(callable, argument);
   scope.site = &site;
   Value value = evaluate(session, scope, law.value);
   scope.site = nullptr;
@@ -107,21 +103,19 @@ std::string_view first_argument(CallableKind kind) {
 Value call_law(Session& session, const Callable& callable, Span span) {
   if (!enter(session, callable, span)) return {};
   Scope scope{nullptr, callable.module, nullptr, {}};
-  bool complete = false;
-  {
-    complete = complete_arguments(session, callable, scope, span);
-    const auto expected = first_dimension(callable.kind);
-    const auto& args = arguments_of(callable);
-    if (complete && expected && !args.empty()) {
-      const auto& first = scope.names.find(args.front().name.text)->second.value;
-      const auto node = to_number(session, *first, span);
-      complete = node && require_dimension(session, *node, *expected, callable.bound.at(args.front().name.text).span);
-    }
+  bool complete = complete_arguments(session, callable, scope, span);
+  const auto expected = first_dimension(callable.kind);
+  const auto& args = arguments_of(callable);
+  std::optional<NodeId> argument;
+  if (complete && expected && !args.empty()) {
+    const auto& first = scope.names.find(args.front().name.text)->second.value;
+    argument = to_number(session, *first, span);
+    complete = argument && require_dimension(session, *argument, *expected, callable.bound.at(args.front().name.text).span);
   }
   Value value;
   if (complete) {
     const FrameGuard frame(session, span, fmt::format("`{}` is used here", callable_name(callable)));
-    value = evaluate_body(session, callable, scope);
+    value = evaluate_body(session, callable, argument, scope);
   }
   session.active.pop_back();
   return value;
@@ -139,12 +133,13 @@ std::optional<NodeId> check_law(Session& session, const Callable& callable) {
   Scope scope{nullptr, callable.module, nullptr, {}};
   declare_opaque(session, callable, scope);
   const auto& args = arguments_of(callable);
+  std::optional<NodeId> argument;
   if (const auto expected = first_dimension(callable.kind)) {
     const NodeOp op = callable.kind == CallableKind::schedule ? NodeOp::s : NodeOp::w;
-    const NodeId node = session.graph.add({.op = op, .dimension = *expected, .span = args.front().name.span});
-    scope.names.insert_or_assign(args.front().name.text, Binding{number_value(node), nullptr, false, args.front().name.span});
+    argument = session.graph.add({.op = op, .dimension = *expected, .span = args.front().name.span});
+    scope.names.insert_or_assign(args.front().name.text, Binding{number_value(*argument), nullptr, false, args.front().name.span});
   }
-  const Value value = evaluate_body(session, callable, scope);
+  const Value value = evaluate_body(session, callable, argument, scope);
   session.active.pop_back();
   if (callable.kind == CallableKind::schedule && !value.unknown()) check_finite(session, callable);
   if (const auto* number = value.get<NumberValue>()) return number->node;
