@@ -83,7 +83,7 @@ struct Parts {
     return {0,
             "use spectra\nbath cold { " + bath + " }\nqubit site(" + argument +
                 ") { energy -1 GHz/2*X + h/2*Z }\nchip pair { qubit q[i] : site for i in 0 .. 1 " + noise +
-                " }\nexperiment e { chip pair " + begin + " pace hold for 1 ns " + equation +
+                " }\nexperiment trial { chip pair " + begin + " pace hold for 1 ns " + equation +
                 " observe x = population(ground) at end " + more + " }\n",
             {}};
   }
