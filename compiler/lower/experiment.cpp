@@ -104,6 +104,7 @@ runtime::Observable lower_observable(const ObservableI& observable, const Instan
                                      const SourceSet& sources, const ExperimentRows& rows) {
   runtime::Observable result;
   result.name = observable.name;
+  result.shown = observable.shown;
   result.unit = unit(observable.unit);
   result.moment = lower_moment(observable.moment, rows);
   result.row = rows.row(runtime::kObservables, observable.value);
