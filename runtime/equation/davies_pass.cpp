@@ -253,7 +253,7 @@ class Walk {
       count_outflow(table, h);
       count_coherent(step, h);
     }
-    advance<Scalar>(step, table, h, backward, rho_);
+    advance<Scalar>(step, table, h, backward, rho_, buffers_);
     ++pass_.counters.steps;
   }
 
@@ -266,7 +266,8 @@ class Walk {
         continue;
       }
       const Eigen::MatrixXcd kept = rho_;
-      const Frame<Scalar> there = track_.at(piece.s0 + (piece.s1 - piece.s0) * (t - piece.t0) / (piece.t1 - piece.t0));
+      const double s = piece.s0 + (piece.s1 - piece.s0) * (t - piece.t0) / (piece.t1 - piece.t0);
+      const Frame<Scalar> there = track_.at(s);
       local_step(start, there, t - t0);
       emit_at(there, t);
       rho_ = kept;
@@ -312,6 +313,7 @@ class Walk {
   Frame<Scalar> frame_;                      ///< Basis of rho_.
   const Frame<Scalar>* at_node_ = nullptr;   ///< The cached frame that frame_ copies, if any.
   Eigen::MatrixXcd rho_;
+  StepBuffers<Scalar> buffers_;
   std::size_t next_ = 0;
   double coherent_leak_ = 0;
   std::optional<RunError> failure_;

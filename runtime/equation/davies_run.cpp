@@ -62,8 +62,8 @@ class Refinement {
     ++passes_;
   }
 
-  /// Of answer(): the last move of the extrapolated states; while the steps do not yet act as the
-  /// square of their length, that of the plain states where it is larger.
+  /// Of answer(): the last move of the extrapolated states, or a tenth of that of the plain ones;
+  /// all of it while the steps do not yet act as the square of their length.
   double error() const { return error_; }
   double state_error() const { return state_error_; }
   States answer() && { return passes_ > 1 ? std::move(better_.states) : std::move(plain_.states); }
@@ -71,7 +71,8 @@ class Refinement {
  private:
   void judge(const Answer& better, double change) {
     const double moved = distance(better_, better);
-    error_ = change < 0.4 * change_ ? moved : std::max(change, moved);
+    // A small move may be chance: extrapolation is not trusted to gain more than a factor of 10.
+    error_ = change < 0.4 * change_ ? std::max(moved, 0.1 * change) : std::max(change, moved);
     state_error_ = std::max(state_error_ / 3.0, state_distance(better_, better));
   }
 

@@ -3,6 +3,7 @@
 #include <cmath>
 #include <complex>
 #include <numeric>
+#include <type_traits>
 
 #include "runtime/integrate/dense_exponential.h"
 #include "runtime/levels/product.h"
@@ -13,35 +14,77 @@ namespace {
 
 using Complex = std::complex<double>;
 
-/// Elements times sin(x)/x, x = half the phase the pair collects; phases in half[a] = phi_a/2.
+/// Half a step as the state meets it. `variation` is the change of the rotation's elements from
+/// its start to its end; empty if not known.
 template <class Scalar>
-Matrix<Scalar> filon(const Matrix<Scalar>& rotation, const Eigen::VectorXd& half) {
-  const Eigen::ArrayXd cosine = half.array().cos(), sine = half.array().sin();
-  Matrix<Scalar> w(rotation.rows(), rotation.cols());
-  for (Eigen::Index b = 0; b < w.cols(); ++b)
-    for (Eigen::Index a = 0; a < w.rows(); ++a) {
-      const double x = half[a] - half[b];
-      const double kernel = std::abs(x) < 1e-4 ? 1.0 - x * x / 6.0 : (sine[a] * cosine[b] - cosine[a] * sine[b]) / x;
-      w(a, b) = rotation(a, b) * kernel;
+struct Half {
+  const Link<Scalar>& link;
+  const Matrix<Scalar>& variation;
+  bool backward;
+};
+
+/// The integral over the half step of an element M(u) = L + D u, u = -1/2 .. 1/2, times exp(2 i x u), with x
+/// half the phase of the pair: L sin(x)/x + i D (sin x - x cos x)/(2 x^2). u measures phase, not time, so that a frequency
+/// which changes by dw about w adds -L dw/w to D; both rules together keep the error of order 2 for any x.
+template <class Scalar>
+void filon(const Half<Scalar>& half, const Eigen::VectorXd& phase, Matrix<Complex>& w) {
+  const Link<Scalar>& link = half.link;
+  const double sign = half.backward ? -1.0 : 1.0;
+  const Eigen::VectorXd change = link.right_energies - link.left_energies;
+  const Eigen::ArrayXd cosine = phase.array().cos(), sine = phase.array().sin();
+  const Eigen::Index levels = phase.size();
+  w.setZero(levels, levels);
+  for (Eigen::Index b = 0; b < levels; ++b)
+    for (Eigen::Index a = 0; a < b; ++a) {
+      const double x = phase[a] - phase[b];
+      const double sin_x = sine[a] * cosine[b] - cosine[a] * sine[b], cos_x = cosine[a] * cosine[b] + sine[a] * sine[b];
+      const bool slow = std::abs(x) < 1e-3;
+      const double even = slow ? 1.0 - x * x / 6.0 : sin_x / x;
+      const double odd = slow ? x / 6.0 : (sin_x - x * cos_x) / (2.0 * x * x);
+      const double mean = link.mean_energies[a] - link.mean_energies[b], differs = change[a] - change[b];
+      const double chirp = std::abs(differs) < std::abs(mean) ? differs / mean : std::copysign(1.0, differs * mean);
+      Scalar variation = -chirp * link.rotation(a, b);
+      if (half.variation.size() != 0) variation += half.variation(a, b);
+      w(a, b) = sign * even * link.rotation(a, b) + Complex(0, odd) * variation;
+      w(b, a) = -std::conj(w(a, b));
     }
-  return w;
+  if constexpr (!std::is_same_v<Scalar, double>) w.diagonal() = sign * link.rotation.diagonal();
 }
 
-/// Over one link in time h; shift: <a|H_LS|a> in the labels of the link.
+/// What one half step does to amplitudes, from frame to frame.
 template <class Scalar>
-void cross(const Link<Scalar>& link, const Eigen::VectorXd& shift, double h, bool backward, Eigen::MatrixXcd& rho) {
-  const Matrix<Scalar>& before = backward ? link.right_basis : link.left_basis;
-  const Matrix<Scalar>& after = backward ? link.left_basis : link.right_basis;
-  if (before.size() != 0) turn<Scalar>(Matrix<Scalar>(before.adjoint()), rho);
-  const Eigen::VectorXd half = 0.5 * h * (link.mean_energies + shift);
-  Matrix<Scalar> r = rotation_exponential<Scalar>(filon<Scalar>(link.rotation, half));
-  if (backward) r.adjointInPlace();
-  Eigen::VectorXcd phase(half.size());
-  for (Eigen::Index a = 0; a < half.size(); ++a) phase[a] = std::polar(1.0, -half[a]);
-  rho = phase.asDiagonal() * rho * phase.conjugate().asDiagonal();
-  turn<Scalar>(r, rho);
-  rho = phase.asDiagonal() * rho * phase.conjugate().asDiagonal();
-  if (after.size() != 0) turn<Scalar>(after, rho);
+void half_map(const Half<Scalar>& half, const Eigen::VectorXd& shift, double h, StepBuffers<Scalar>& buffers, Matrix<Complex>& map) {
+  const Link<Scalar>& link = half.link;
+  const Matrix<Scalar>& before = half.backward ? link.right_basis : link.left_basis;
+  const Matrix<Scalar>& after = half.backward ? link.left_basis : link.right_basis;
+  const Eigen::VectorXd phase = 0.5 * h * (link.mean_energies + shift);
+  Eigen::VectorXcd factor(phase.size());
+  for (Eigen::Index a = 0; a < phase.size(); ++a) factor[a] = std::polar(1.0, -phase[a]);
+  filon<Scalar>(half, phase, buffers.w);
+  rotation_exponential(buffers.w, map, buffers.scratch);
+  for (Eigen::Index b = 0; b < map.cols(); ++b)
+    for (Eigen::Index a = 0; a < map.rows(); ++a) map(a, b) *= factor[a] * factor[b];
+  if (before.size() != 0) map = product<Complex>(map, before.adjoint().template cast<Complex>());
+  if (after.size() != 0) map = product<Complex>(after.template cast<Complex>(), map);
+}
+
+/// Levels that move carry an admixture M/(i w) of each other along. It does not decay as a free
+/// coherence does: the relaxation of a step that spans many turns of w acts on the state without it. Y weighs the
+/// admixture with 1 - sin(x)/x, x half the phase of the whole step, and so leaves what steps resolve to them.
+template <class Scalar>
+void admixture(const StepFrames<Scalar>& step, const Eigen::VectorXd& shift, double h, bool backward, Matrix<Complex>& y) {
+  const Eigen::VectorXd phase = h * (step.middle.energies + shift);
+  const double sign = backward ? -1.0 : 1.0;
+  const Eigen::Index levels = phase.size();
+  y.setZero(levels, levels);
+  for (Eigen::Index b = 0; b < levels; ++b)
+    for (Eigen::Index a = 0; a < b; ++a) {
+      const double x = 0.5 * (phase[a] - phase[b]);
+      const double weight = std::abs(x) < 1e-3 ? x / 12.0 : (1.0 - std::sin(x) / x) / (2.0 * x);
+      const Scalar rotation = step.first.rotation(a, b) + step.second.rotation(a, b);
+      y(a, b) = Complex(0, -sign * weight) * rotation;
+      y(b, a) = -std::conj(y(a, b));
+    }
 }
 
 std::vector<std::vector<std::uint32_t>> connected(const DaviesTable& table) {
@@ -64,10 +107,29 @@ std::vector<std::vector<std::uint32_t>> connected(const DaviesTable& table) {
 }  // namespace
 
 template <class Scalar>
-void advance(const StepFrames<Scalar>& step, const DaviesTable& table, double h, bool backward, Eigen::MatrixXcd& rho) {
-  cross<Scalar>(backward ? step.second : step.first, table.shift, 0.5 * h, backward, rho);
+void advance(const StepFrames<Scalar>& step, const DaviesTable& table, double h, bool backward, Eigen::MatrixXcd& rho,
+             StepBuffers<Scalar>& buffers) {
+  Scratch& scratch = buffers.scratch;
+  const bool same_labels = step.first.right_basis.size() == 0 && step.second.left_basis.size() == 0;
+  if (same_labels)
+    buffers.variation = step.second.rotation - step.first.rotation;
+  else
+    buffers.variation.resize(0, 0);
+  const Link<Scalar>&start = backward ? step.second : step.first, &end = backward ? step.first : step.second;
+  half_map<Scalar>({start, buffers.variation, backward}, table.shift, 0.5 * h, buffers, buffers.before);
+  half_map<Scalar>({end, buffers.variation, backward}, table.shift, 0.5 * h, buffers, buffers.after);
+  if (same_labels) {
+    admixture<Scalar>(step, table.shift, h, backward, buffers.w);
+    rotation_exponential(buffers.w, buffers.carried, scratch);
+    multiply<Complex>(buffers.after, buffers.carried, buffers.r, scratch);
+    buffers.after.swap(buffers.r);
+    buffers.carried.adjointInPlace();
+    multiply<Complex>(buffers.carried, buffers.before, buffers.r, scratch);
+    buffers.before.swap(buffers.r);
+  }
+  turn(buffers.before, rho, scratch);
   relax(table, h, rho);
-  cross<Scalar>(backward ? step.first : step.second, table.shift, 0.5 * h, backward, rho);
+  turn(buffers.after, rho, scratch);
 }
 
 HoldMap::HoldMap(const Eigen::VectorXd& energies, const DaviesTable& table)
@@ -119,7 +181,7 @@ void HoldMap::apply(double t, Eigen::MatrixXcd& rho) {
     if (single_[static_cast<std::size_t>(p)]) rho.data()[p] *= std::exp(t * exponent_.data()[p]);
 }
 
-template void advance<double>(const StepFrames<double>&, const DaviesTable&, double, bool, Eigen::MatrixXcd&);
-template void advance<Complex>(const StepFrames<Complex>&, const DaviesTable&, double, bool, Eigen::MatrixXcd&);
+template void advance<double>(const StepFrames<double>&, const DaviesTable&, double, bool, Eigen::MatrixXcd&, StepBuffers<double>&);
+template void advance<Complex>(const StepFrames<Complex>&, const DaviesTable&, double, bool, Eigen::MatrixXcd&, StepBuffers<Complex>&);
 
 }  // namespace tarn::runtime

@@ -5,14 +5,23 @@
 #include <vector>
 
 #include "runtime/equation/davies_table.h"
+#include "runtime/levels/product.h"
 
 namespace tarn::runtime {
+
+/// Buffers of advance(): one for each walk.
+template <class Scalar>
+struct StepBuffers {
+  Scratch scratch;
+  Matrix<Scalar> variation;
+  Matrix<std::complex<double>> w, r, carried, before, after;
+};
 
 /// rho (K x K) from the basis of the step's start to that of its end, in time h > 0 [ns]; backward: from
 /// end to start. Local error O(h^3), global order 2.
 template <class Scalar>
 void advance(const StepFrames<Scalar>& step, const DaviesTable& table, double h, bool backward,
-             Eigen::MatrixXcd& rho);
+             Eigen::MatrixXcd& rho, StepBuffers<Scalar>& buffers);
 
 /// exp(t L) with the whole static generator L at one frame, t any: independent blocks of pairs,
 /// a dense exponential each; pairs of their own by a number. Relative error about 1e-13 t |L|.

@@ -218,6 +218,7 @@ void relax(const DaviesTable& table, double duration, Eigen::MatrixXcd& rho) {
       rho(a, b) *= exponent.imag() == 0.0 ? Complex(std::exp(exponent.real())) : std::exp(exponent);
       rho(b, a) = std::conj(rho(a, b));
     }
+  if (size == 0) return;
   const int pieces = std::max(1, static_cast<int>(std::ceil(duration * table.bound)));
   const double step = duration / pieces;
   for (int piece = 0; piece < pieces; ++piece) {

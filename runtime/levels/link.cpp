@@ -115,8 +115,7 @@ Matrix<Scalar> nearby_polar_factor(const Matrix<Scalar>& matrix) {
   return polar_factor<Scalar>(matrix);
 }
 
-/// Turns the right labels within each pair of manifolds onto the left ones, where they are not
-/// already close: a small turn there is as well left to the rotation. Returns the basis turned.
+/// Turns the right labels within each pair of manifolds onto the left ones: parallel transport.
 template <class Scalar>
 void align(Matrix<Scalar>& overlap, Matrix<Scalar>& basis, const Labels& left, const Labels& right) {
   const int stride = count_of(right);
@@ -126,7 +125,7 @@ void align(Matrix<Scalar>& overlap, Matrix<Scalar>& basis, const Labels& left, c
     if (group.empty()) continue;
     const Matrix<Scalar> turn = unit_factor<Scalar>(overlap(group, group));
     const auto size = static_cast<Eigen::Index>(group.size());
-    if ((turn - Matrix<Scalar>::Identity(size, size)).cwiseAbs().maxCoeff() < 0.1) continue;
+    if ((turn - Matrix<Scalar>::Identity(size, size)).cwiseAbs().maxCoeff() <= 1e-13) continue;
     const Matrix<Scalar> rows = overlap(group, Eigen::all), columns = basis(Eigen::all, group);
     overlap(group, Eigen::all) = turn.adjoint() * rows;
     basis(Eigen::all, group) = columns * turn;

@@ -18,7 +18,7 @@ struct Link {
   /// K x K unitary; empty means identity. Columns: the adapted basis in terms of the frame's own.
   Matrix<Scalar> left_basis, right_basis;
   /// K x K, antisymmetric (anti-Hermitian). Its a,b element is the integral of -<a|d/ds b> ds; zero
-  /// within manifolds that stay degenerate, up to a rotation that has no consequence.
+  /// within manifolds that stay degenerate.
   Matrix<Scalar> rotation;
   /// Energies of the adapted labels on either side, and their mean over the link: trapezoid with
   /// end slopes, error ds^4 E''''/720.

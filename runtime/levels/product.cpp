@@ -51,39 +51,45 @@ void multiply_packed(const double* a, const double* b, double* c, Index rows, In
 }  // namespace
 
 template <>
-Matrix<double> product<double>(const Matrix<double>& a, const Matrix<double>& b) {
+void multiply<double>(const Matrix<double>& a, const Matrix<double>& b, Matrix<double>& c, Scratch&) {
   TARN_CHECK(a.cols() == b.rows());
-  if (a.rows() < kWidth) return a * b;
-  Matrix<double> c(a.rows(), b.cols());
+  c.resize(a.rows(), b.cols());
+  if (a.rows() < kWidth) {
+    c.noalias() = a * b;
+    return;
+  }
   multiply_packed(a.data(), b.data(), c.data(), a.rows(), a.cols(), b.cols());
   const Index rest = a.rows() % kWidth;
   if (rest != 0) c.bottomRows(rest).noalias() = a.bottomRows(rest) * b;
-  return c;
 }
 
+// One real product: [Re a, Im a] times [[Re b, Im b], [-Im b, Re b]].
 template <>
-Matrix<std::complex<double>> product<std::complex<double>>(const Matrix<std::complex<double>>& a, const Matrix<std::complex<double>>& b) {
-  return a * b;
+void multiply<std::complex<double>>(const Matrix<std::complex<double>>& a, const Matrix<std::complex<double>>& b,
+                                    Matrix<std::complex<double>>& c, Scratch& scratch) {
+  const Index rows = a.rows(), inner = a.cols(), columns = b.cols();
+  c.resize(rows, columns);
+  if (rows < kWidth) {
+    c.noalias() = a * b;
+    return;
+  }
+  scratch.left.resize(rows, 2 * inner);
+  scratch.right.resize(2 * inner, 2 * columns);
+  scratch.left.leftCols(inner) = a.real();
+  scratch.left.rightCols(inner) = a.imag();
+  scratch.right.topLeftCorner(inner, columns) = b.real();
+  scratch.right.bottomLeftCorner(inner, columns) = -b.imag();
+  scratch.right.topRightCorner(inner, columns) = b.imag();
+  scratch.right.bottomRightCorner(inner, columns) = b.real();
+  multiply<double>(scratch.left, scratch.right, scratch.both, scratch);
+  c.real() = scratch.both.leftCols(columns);
+  c.imag() = scratch.both.rightCols(columns);
 }
 
-template <>
-void turn<double>(const Matrix<double>& r, Eigen::MatrixXcd& rho) {
-  const Index size = rho.rows();
-  Matrix<double> parts(size, 2 * size);
-  parts.leftCols(size) = rho.real();
-  parts.rightCols(size) = rho.imag();
-  const Matrix<double> half = product(r, parts);
-  parts.leftCols(size) = half.leftCols(size).transpose();
-  parts.rightCols(size) = half.rightCols(size).transpose();
-  const Matrix<double> whole = product(r, parts);
-  for (Index b = 0; b < size; ++b)
-    for (Index a = 0; a < size; ++a) rho(a, b) = {whole(b, a), whole(b, size + a)};
-}
-
-template <>
-void turn<std::complex<double>>(const Matrix<std::complex<double>>& r, Eigen::MatrixXcd& rho) {
-  const Eigen::MatrixXcd half = r * rho;
-  rho.noalias() = half * r.adjoint();
+void turn(const Matrix<std::complex<double>>& r, Eigen::MatrixXcd& rho, Scratch& scratch) {
+  scratch.adjoint = r.adjoint();
+  multiply<std::complex<double>>(r, rho, scratch.turned, scratch);
+  multiply<std::complex<double>>(scratch.turned, scratch.adjoint, rho, scratch);
 }
 
 }  // namespace tarn::runtime

@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <cmath>
 #include <complex>
+#include <type_traits>
 
 #include "runtime/levels/product.h"
 
@@ -14,19 +15,54 @@ using Complex = std::complex<double>;
 /// A bound on the largest angle.
 template <class Scalar>
 double row_sum(const Matrix<Scalar>& w) {
-  return w.size() == 0 ? 0.0 : w.cwiseAbs().colwise().sum().maxCoeff();
+  if (w.size() == 0) return 0.0;
+  if constexpr (std::is_same_v<Scalar, double>) {
+    return w.cwiseAbs().colwise().sum().maxCoeff();
+  } else {
+    return (w.real().cwiseAbs() + w.imag().cwiseAbs()).colwise().sum().maxCoeff();
+  }
+}
+
+/// Taylor polynomial of order 2, 4, 6 or 8 for |w| <= norm; `power` holds what it needs in between.
+template <class Scalar>
+void series(const Matrix<Scalar>& w, double norm, Matrix<Scalar>& r, Matrix<Scalar>* power, Scratch& scratch) {
+  Matrix<Scalar>&w2 = power[0], &w3 = power[1], &w4 = power[2], &rest = power[3];
+  multiply<Scalar>(w, w, w2, scratch);
+  if (norm < 1e-5) {
+    r = w + 0.5 * w2;
+  } else if (norm < 1.5e-3) {
+    rest = (1.0 / 6.0) * w + (1.0 / 24.0) * w2;
+    rest.diagonal().array() += 0.5;
+    multiply<Scalar>(w2, rest, r, scratch);
+    r += w;
+  } else if (norm < 0.015) {
+    multiply<Scalar>(w2, w, w3, scratch);
+    rest = (1.0 / 24.0) * w + (1.0 / 120.0) * w2 + (1.0 / 720.0) * w3;
+    rest.diagonal().array() += 1.0 / 6.0;
+    multiply<Scalar>(w3, rest, r, scratch);
+    r += w + 0.5 * w2;
+  } else {
+    multiply<Scalar>(w2, w, w3, scratch);
+    multiply<Scalar>(w2, w2, w4, scratch);
+    rest = (1.0 / 120.0) * w + (1.0 / 720.0) * w2 + (1.0 / 5040.0) * w3 + (1.0 / 40320.0) * w4;
+    rest.diagonal().array() += 1.0 / 24.0;
+    multiply<Scalar>(w4, rest, r, scratch);
+    r += w + 0.5 * w2 + (1.0 / 6.0) * w3;
+  }
+  r.diagonal().array() += 1.0;
 }
 
 template <class Scalar>
-Matrix<Scalar> series(const Matrix<Scalar>& w, double norm) {
-  const Matrix<Scalar> one = Matrix<Scalar>::Identity(w.rows(), w.cols());
-  const Matrix<Scalar> w2 = product<Scalar>(w, w);
-  if (norm < 1e-5) return one + w + 0.5 * w2;
-  if (norm < 1.5e-3) return one + w + product<Scalar>(w2, 0.5 * one + w / 6.0 + w2 / 24.0);
-  const Matrix<Scalar> w3 = product<Scalar>(w2, w);
-  if (norm < 0.015) return one + w + 0.5 * w2 + product<Scalar>(w3, one / 6.0 + w / 24.0 + w2 / 120.0 + w3 / 720.0);
-  const Matrix<Scalar> w4 = product<Scalar>(w2, w2);
-  return one + w + 0.5 * w2 + w3 / 6.0 + product<Scalar>(w4, one / 24.0 + w / 120.0 + w2 / 720.0 + w3 / 5040.0 + w4 / 40320.0);
+void exponential(const Matrix<Scalar>& w, Matrix<Scalar>& r, Matrix<Scalar>* power, Scratch& scratch) {
+  const double norm = row_sum<Scalar>(w);
+  if (norm < 0.06) return series<Scalar>(w, norm, r, power, scratch);
+  const int halvings = static_cast<int>(std::ceil(std::log2(norm / 0.06)));
+  const Matrix<Scalar> part = w * std::ldexp(1.0, -halvings);
+  series<Scalar>(part, 0.06, r, power, scratch);
+  for (int k = 0; k < halvings; ++k) {
+    multiply<Scalar>(r, r, power[0], scratch);
+    r.swap(power[0]);
+  }
 }
 
 /// Sum of the series of asinh, S - S^3/6 + ..., for |S| < 0.2.
@@ -47,12 +83,14 @@ Matrix<Scalar> asinh_series(const Matrix<Scalar>& sine, double norm) {
 
 template <class Scalar>
 Matrix<Scalar> rotation_exponential(const Matrix<Scalar>& w) {
-  const double norm = row_sum<Scalar>(w);
-  if (norm < 0.06) return series<Scalar>(w, norm);
-  const int halvings = static_cast<int>(std::ceil(std::log2(norm / 0.06)));
-  Matrix<Scalar> r = series<Scalar>(w / std::ldexp(1.0, halvings), 0.06);
-  for (int k = 0; k < halvings; ++k) r = product<Scalar>(r, r);
+  Scratch scratch;
+  Matrix<Scalar> r, power[4];
+  exponential<Scalar>(w, r, power, scratch);
   return r;
+}
+
+void rotation_exponential(const Matrix<Complex>& w, Matrix<Complex>& r, Scratch& scratch) {
+  exponential<Complex>(w, r, scratch.power, scratch);
 }
 
 template <class Scalar>

@@ -1,7 +1,10 @@
 #pragma once
 /// \file Exponential and logarithm of rotations between frames.
 
+#include <complex>
+
 #include "runtime/levels/family.h"
+#include "runtime/levels/product.h"
 
 namespace tarn::runtime {
 
@@ -9,6 +12,9 @@ namespace tarn::runtime {
 /// squared where |w| > 0.06.
 template <class Scalar>
 Matrix<Scalar> rotation_exponential(const Matrix<Scalar>& w);
+
+/// The same into `r`, which is not `w`, with buffers kept by the caller.
+void rotation_exponential(const Matrix<std::complex<double>>& w, Matrix<std::complex<double>>& r, Scratch& scratch);
 
 /// The antisymmetric (anti-Hermitian) w with exp(w) = r, for a rotation r by angles below 2 rad. The iteration
 /// w += sine part of r exp(-w) takes an angle's error e to e^3/6. Beyond 2 rad the result is some antisymmetric matrix.
