@@ -78,13 +78,32 @@ Overrides read_overrides(Program& program, const std::vector<std::pair<std::stri
   return result;
 }
 
+namespace {
+
+bool is_swept(const Instance& instance, const std::string& parameter) {
+  for (const AxisI& axis : instance.axes) {
+    for (const AxisColumnI& column : axis.columns) {
+      if (column.parameter == parameter) return true;
+    }
+  }
+  return false;
+}
+
+/// True if another value would change something: a sweep would put its own values in its place.
+bool is_used(const Instance& instance, const std::string& parameter) {
+  if (is_swept(instance, parameter)) return false;
+  if (std::find(instance.counts.begin(), instance.counts.end(), parameter) != instance.counts.end()) return true;
+  const auto live = live_parameters(instance);
+  return std::any_of(live.begin(), live.end(),
+                     [&](std::uint32_t row) { return instance.parameters[row].name == parameter; });
+}
+
+}  // namespace
+
 void check_overrides_used(const Program& program, const std::vector<Instance>& all, const Overrides& overrides, Diagnostics& diagnostics) {
   for (const auto& [name, value] : overrides) {
-    const bool used = std::any_of(all.begin(), all.end(), [&, &parameter = name](const Instance& instance) {
-      if (std::find(instance.counts.begin(), instance.counts.end(), parameter) != instance.counts.end()) return true;
-      const auto live = live_parameters(instance);
-      return std::any_of(live.begin(), live.end(), [&](std::uint32_t row) { return instance.parameters[row].name == parameter; });
-    });
+    const bool used = std::any_of(all.begin(), all.end(),
+                                  [&, &parameter = name](const Instance& i) { return is_used(i, parameter); });
     const auto declared = std::find_if(program.parameters.begin(), program.parameters.end(),
                                        [&, &parameter = name](const ProgramParameter& p) { return p.name == parameter; });
     if (!used && declared != program.parameters.end()) diagnostics.report(declared->span, diag::changes_nothing, name);

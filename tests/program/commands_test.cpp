@@ -48,6 +48,10 @@ TEST_CASE("exit statuses tell what happened") {
   CHECK(run_tarn({"run", "m.tarn", "--out", "b", "--set", "limit=0.1"}, scratch.path()).status == 1);
   CHECK(run_tarn({"run", "m.tarn", "--out", "c", "--set", "limit=2"}, scratch.path()).status == 2);
   CHECK(run_tarn({"run", "m.tarn", "--set", "nothing=2"}, scratch.path()).status == 2);
+  scratch.write("long.tarn", kLong);
+  const Outcome swept = run_tarn({"check", "long.tarn", "--set", "f=5 GHz"}, scratch.path());
+  CHECK(swept.status == 2);
+  CHECK(swept.err.find("changes_nothing") != std::string::npos);
   CHECK(run_tarn({"run", "m.tarn", "--wrong"}, scratch.path()).status == 2);
   CHECK(run_tarn({}, scratch.path()).status == 2);
   CHECK(run_tarn({"--help"}, scratch.path()).status == 0);
