@@ -89,7 +89,7 @@ class Walk {
     ++pass_.counters.decompositions;
     const Matrix<Complex> vectors = frame_.vectors.template cast<Complex>();
     rho_ = vectors.adjoint() * state * vectors;
-    pass_.leakage += std::max(0.0, std::real(state.trace() - rho_.trace()));
+    if (vectors.cols() < vectors.rows()) pass_.leakage += std::max(0.0, std::real(state.trace() - rho_.trace()));
   }
 
   bool wanted_before(double t) const { return next_ < run_.times.size() && run_.times[next_] < t; }
