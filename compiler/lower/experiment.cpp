@@ -1,16 +1,10 @@
 #include "compiler/lower/experiment.h"
 
+#include "lang/support/match.h"
 #include "compiler/lower/claims.h"
 
 namespace tarn::compiler {
 namespace {
-
-template <class... Cases>
-struct Match : Cases... {
-  using Cases::operator()...;
-};
-template <class... Cases>
-Match(Cases...) -> Match<Cases...>;
 
 runtime::DisplayUnit unit(const Shown& shown) { return {shown.label, shown.factor}; }
 
@@ -109,6 +103,7 @@ runtime::Observable lower_observable(const ObservableI& observable, const Instan
   result.moment = lower_moment(observable.moment, rows);
   result.row = rows.row(runtime::kObservables, observable.value);
   result.readings = reads(instance.graph, observable.value, NodeOp::reading);
+  result.reads_s = dependence(instance.graph, observable.value).s;
   result.scale = scale(instance.graph[observable.value].dimension);
   result.place = sources.place(observable.span);
   return result;

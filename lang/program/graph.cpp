@@ -70,9 +70,6 @@ constexpr std::array<Binary, 14> kBinary = {
     [](double x, double y) { return x != 0 || y != 0 ? 1.0 : 0.0; },
 };
 
-std::size_t distance(NodeOp from, NodeOp to) {
-  return static_cast<std::size_t>(to) - static_cast<std::size_t>(from);
-}
 double unary(NodeOp op, double x) { return kUnary.at(distance(NodeOp::neg, op))(x); }
 double binary(NodeOp op, double x, double y) { return kBinary.at(distance(NodeOp::add, op))(x, y); }
 

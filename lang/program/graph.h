@@ -37,6 +37,11 @@ enum class NodeOp : std::uint8_t {
   select       ///< a ? b : c
 };
 
+/// How many rows `to` stands below `from` in the list above: for tables that follow its order.
+constexpr std::size_t distance(NodeOp from, NodeOp to) {
+  return static_cast<std::size_t>(to) - static_cast<std::size_t>(from);
+}
+
 struct Node {
   NodeOp op = NodeOp::constant;
   NodeId a{}, b{}, c{};

@@ -28,8 +28,6 @@ constexpr std::array kInfix = std::to_array<Infix>({{" + ", 5}, {" - ", 5}, {"*"
                                                     {"min", 0}, {"max", 0}, {" < ", 4}, {" <= ", 4}, {" == ", 4},
                                                     {" != ", 4}, {" and ", 3}, {" or ", 2}});
 
-std::size_t distance(NodeOp from, NodeOp to) { return static_cast<std::size_t>(to) - static_cast<std::size_t>(from); }
-
 std::string bracketed(const Written& part, int least) {
   return part.precedence < least ? "(" + part.text + ")" : part.text;
 }

@@ -80,7 +80,7 @@ Propagation::Propagation(const Entries& entries, const tarn_block& block, Flow f
     : entries_(entries), block_(block), flow_(flow), runs_(runs), on_time_(on_time),
       interrupted_(interrupted), width_(entries.lanes), amplitudes_(std::size_t{1} << entries.bits),
       integrator_(2 * amplitudes_, width_,
-                                           flow == Flow::skew ? Frame::comoving : Frame::fixed),
+                                           flow == Flow::skew ? Phase::comoving : Phase::fixed),
       lanes_(width_) {
   TARN_CHECK(!runs.empty() && runs.size() <= width_);
   TARN_CHECK(initial.size() == 2 * amplitudes_ * width_);

@@ -9,7 +9,6 @@ namespace tarn::runtime {
 namespace {
 
 constexpr std::size_t kSamples = 1025;
-constexpr double kSameS = 1e-12;
 
 /// On which side of a level a value lies; a NaN is on a side of its own.
 int side(double value, double level) {

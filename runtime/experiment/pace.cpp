@@ -10,8 +10,6 @@
 namespace tarn::runtime {
 namespace {
 
-constexpr double kSameS = 1e-12;
-
 /// Builds a timeline piece by piece; stops at the first error.
 class Walk {
  public:

@@ -12,6 +12,9 @@
 
 namespace tarn::runtime {
 
+/// Values of s closer than this are one.
+inline constexpr double kSameS = 1e-12;
+
 /// A moment of a run: laboratory time t [ns] and the s that holds from there on.
 struct Instant {
   double t = 0;

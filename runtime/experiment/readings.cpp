@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <cmath>
 
+#include "lang/support/match.h"
 #include "lang/support/check.h"
 #include "runtime/experiment/words.h"
 
@@ -10,13 +11,6 @@ namespace tarn::runtime {
 namespace {
 
 using Eigen::Index;
-
-template <class... Cases>
-struct Match : Cases... {
-  using Cases::operator()...;
-};
-template <class... Cases>
-Match(Cases...) -> Match<Cases...>;
 
 Eigen::MatrixXcd single(std::complex<double> value) { return Eigen::MatrixXcd::Constant(1, 1, value); }
 

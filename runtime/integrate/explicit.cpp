@@ -41,8 +41,8 @@ double granted(const LaneTask& task, double step, double shortest) {
 
 }  // namespace
 
-ExplicitIntegrator::ExplicitIntegrator(std::size_t size, std::size_t lanes, Frame frame)
-    : size_(size), width_(lanes), frame_(frame), vectors_(kRows), lanes_(lanes), pieces_(lanes) {
+ExplicitIntegrator::ExplicitIntegrator(std::size_t size, std::size_t lanes, Phase phase)
+    : size_(size), width_(lanes), phase_(phase), vectors_(kRows), lanes_(lanes), pieces_(lanes) {
   TARN_CHECK(size > 0 && lanes > 0 && 8 % lanes == 0);
   vectors_[kState] = AlignedArray(size_ * width_);
   length_ = vectors_[kState].size();
@@ -139,7 +139,7 @@ void ExplicitIntegrator::evaluate(const RightHandSide& f, std::size_t stage, std
     std::memcpy(weights_.data() + count++ * width_, &weights, sizeof weights);
   }
   f.stage(node, count, weights_.data(), vectors.data(), argument, stage_row(stage));
-  if (frame_ == Frame::comoving) add_turned(length_, energies_, argument, stage_row(stage));
+  if (phase_ == Phase::comoving) add_turned(length_, energies_, argument, stage_row(stage));
   for (Lane& lane : lanes_) lane.counters.evaluations += lane.active ? 1 : 0;
 }
 
@@ -177,7 +177,7 @@ void ExplicitIntegrator::refresh(const RightHandSide& f, std::span<const LaneTas
 
 /// Moves every lane to the mean energy of its state. Lanes do so before each trial, whatever others do.
 void ExplicitIntegrator::follow_energy() {
-  if (frame_ == Frame::fixed) return;
+  if (phase_ == Phase::fixed) return;
   std::array<double, 8> changes{}, energies{};
   mean_energies(length_, width_, row(kState), stage_row(0), changes.data());
   add_turned(length_, turn_weights(width_, changes.data()), row(kState), stage_row(0));
@@ -187,7 +187,7 @@ void ExplicitIntegrator::follow_energy() {
 
 /// The states with their phases; valid until the next stage is evaluated.
 const double* ExplicitIntegrator::solution() {
-  if (frame_ == Frame::fixed) return row(kState);
+  if (phase_ == Phase::fixed) return row(kState);
   std::array<std::complex<double>, 8> phases;
   for (std::size_t l = 0; l < width_; ++l) phases[l] = lanes_[l].phase;
   turn(length_, width_, phases.data(), row(kState), row(kArgument));
@@ -196,7 +196,7 @@ const double* ExplicitIntegrator::solution() {
 
 /// Puts the phases into the states of the lanes that had a task.
 void ExplicitIntegrator::settle_phases(std::span<const LaneTask> tasks) {
-  if (frame_ == Frame::fixed) return;
+  if (phase_ == Phase::fixed) return;
   std::array<bool, 8> take{};
   for (std::size_t l = 0; l < width_; ++l) take[l] = tasks[l].boundaries.size() >= 2;
   copy_lanes(length_, width_, take.data(), solution(), row(kState));
@@ -241,7 +241,7 @@ void ExplicitIntegrator::judge(std::span<const LaneTask> tasks) {
   combined_squares(length_, width_, std::span(vectors).first(count), weights3.data(), weights5.data(),
                    e3.data(), e5.data());
   // Measured on 48 random anneals: with 0.1 errors of a comoving run reach 65 tolerances, with this 8.
-  const double share = frame_ == Frame::comoving ? 0.1 / 8 : 0.1;
+  const double share = phase_ == Phase::comoving ? 0.1 / 8 : 0.1;
   for (std::size_t l = 0; l < width_; ++l) {
     Lane& lane = lanes_[l];
     if (!lane.active) continue;
@@ -293,7 +293,7 @@ void ExplicitIntegrator::interpolate(const RightHandSide& f, std::span<const Lan
     for (std::size_t l = 0; l < width_; ++l)
       if (wanted(l)) x[l] = (tasks[l].times[lanes_[l].next_time] - lanes_[l].t) / lanes_[l].trial;
     combine_interpolant(x.data());
-    if (frame_ == Frame::comoving) {
+    if (phase_ == Phase::comoving) {
       std::array<std::complex<double>, 8> phases;
       for (std::size_t l = 0; l < width_; ++l)
         phases[l] = lanes_[l].phase * std::polar(1.0, -lanes_[l].energy * x[l] * lanes_[l].trial);

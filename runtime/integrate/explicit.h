@@ -65,12 +65,12 @@ using OnTime = std::function<void(std::size_t lane, std::size_t index, const dou
 /// comoving: for dy/dt = -i H y with Hermitian H and pairs of real and imaginary part. Every step is
 /// taken on exp(i theta) y with theta' the mean energy at its start, which is exact and lets steps be
 /// as long as the spread of the energies allows. Measured on anneals: 1.8 to 4 times fewer evaluations.
-enum class Frame : std::uint8_t { fixed, comoving };
+enum class Phase : std::uint8_t { fixed, comoving };
 
 class ExplicitIntegrator {
  public:
   /// `size` doubles a lane; `lanes` divides 8.
-  ExplicitIntegrator(std::size_t size, std::size_t lanes, Frame frame = Frame::fixed);
+  ExplicitIntegrator(std::size_t size, std::size_t lanes, Phase phase = Phase::fixed);
 
   /// The states, interleaved by lanes: set before run(), at the end times after it. A lane that
   /// failed holds its state at the last good step.
@@ -122,7 +122,7 @@ class ExplicitIntegrator {
   void report_until(std::size_t l, const LaneTask& task, const OnTime& on_time);
 
   std::size_t size_, width_, length_;
-  Frame frame_;
+  Phase phase_;
   std::vector<AlignedArray> vectors_;  ///< y, k0..k15, next y, argument.
   std::vector<Lane> lanes_;
   std::vector<double> node_times_;

@@ -166,6 +166,7 @@ struct Observable {
   Moment moment;
   std::uint32_t row = 0;                ///< In set kObservables.
   std::vector<std::uint32_t> readings;  ///< What the row reads.
+  bool reads_s = false;                 ///< The row depends on s apart from its readings.
   Scale scale = Scale::plain;
   Place place;
   bool shown = true;                    ///< False: made for a claim only and listed in no table.

@@ -4,15 +4,10 @@
 
 #include <iterator>
 
+#include "lang/support/match.h"
+
 namespace tarn::runtime {
 namespace {
-
-template <class... Cases>
-struct Match : Cases... {
-  using Cases::operator()...;
-};
-template <class... Cases>
-Match(Cases...) -> Match<Cases...>;
 
 using Out = fmt::memory_buffer;
 

@@ -49,7 +49,7 @@ PointOutcome sample_point(std::uint64_t index) {
   return point;
 }
 
-fs::path fresh_folder() {
+fs::path empty_folder() {
   std::string name = (fs::temp_directory_path() / "tarn-folder-XXXXXX").string();
   REQUIRE(mkdtemp(name.data()) != nullptr);
   return name;
@@ -141,7 +141,7 @@ TEST_CASE("points read back from their tables are the points, bit by bit") {
 }
 
 TEST_CASE("a folder is continued with its own key and refused otherwise, untouched") {
-  const fs::path folder = fresh_folder() / "run";
+  const fs::path folder = empty_folder() / "run";
   const nlohmann::ordered_json key = {{"version", "0.1"}}, other = {{"version", "0.2"}};
   REQUIRE(inspect_folder(folder, key));
   CHECK_FALSE(fs::exists(folder));
