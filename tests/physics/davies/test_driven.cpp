@@ -1,0 +1,118 @@
+// Anneals with a known answer, the order of the steps, and whether error estimates hold.
+#include <Eigen/Dense>
+#include <catch2/catch.hpp>
+#include <thread>
+
+#include "models.h"
+
+using namespace tarn::runtime;
+using namespace tarn::runtime::testing;
+
+namespace {
+
+constexpr double kTheta = 1.96;  // 15 mK in rad/ns
+
+const BathFunctions kBath{ohmic_rate(4e-4, kTwoPi * 8, kTheta), smooth_shift(4e-4, kTwoPi * 8)};
+
+std::shared_ptr<const Track<double>> track_of(const HamiltonianFamily& family, Eigen::Index levels = 0) {
+  TrackOptions options;
+  options.levels = levels;
+  return std::make_shared<const Track<double>>(dense_levels<double>(family), options);
+}
+
+std::vector<BathFunctions> silent(std::size_t count) { return same_baths(count, {ohmic_rate(0.0, 50, kTheta), {}}); }
+
+double population(const Density& state, const Track<double>& track, double s, Eigen::Index level) {
+  const Eigen::VectorXd vector = track.at(s).vectors.col(level);
+  return (vector.transpose() * state * vector)(0, 0).real();
+}
+
+}  // namespace
+
+// Proc. R. Soc. A 137, 696 (1932): P = exp(-pi D^2 / 2 v), in adiabatic states; D = 1, v = 2.5 gives 0.533488091,
+// and |t| = 60 is long enough for 1e-6.
+TEST_CASE("a two-level sweep without a bath") {
+  const double d = 1, v = 2.5, end = 60;
+  const Schedules sweep{[=](double) { return d; }, [](double) { return 0.0; }, [=](double s) { return v * end * (2 * s - 1); },
+                        [=](double) { return 2 * v * end; }};
+  const auto track = track_of(ising(1, sweep, {-1.0}, {}));
+  const DaviesTables<double> tables(track, silent(1));
+  DaviesOptions options;
+  options.tolerance = 1e-8;
+  const auto answer = run_davies<double>(tables, {ramp(2 * end), ground_state(*track, 0), {2 * end}, {}, {}}, options);
+  REQUIRE(answer);
+  CHECK(answer->converged);
+  CHECK(population(answer->states[0], *track, 1, 1) == Approx(std::exp(-std::numbers::pi * d * d / (2 * v))).margin(1e-6));
+}
+
+TEST_CASE("the error of a pass falls as the square of the step") {
+  const auto family = random_chip(2, 3, usual_schedules());
+  const auto track = track_of(family);
+  const DaviesTables<double> tables(track, same_baths(2, kBath));
+  const DaviesRun run{ramp(2), ground_state(*track, 0), {2}, {}, {}};
+  std::vector<Density> ends;
+  for (int depth = 2; depth <= 7; ++depth) ends.push_back(davies_pass<double>(tables, run, depth, {})->states[0]);
+  for (std::size_t k = 1; k + 1 < ends.size() - 1; ++k) {
+    const double coarse = (ends[k] - ends[k - 1]).norm(), fine = (ends[k + 1] - ends[k]).norm();
+    CHECK(coarse / fine == Approx(4).epsilon(0.15));
+  }
+}
+
+TEST_CASE("error estimates cover the truth in random runs") {
+  int covered = 0, runs = 0;
+  for (unsigned seed = 1; seed <= 6; ++seed) {
+    const auto family = random_chip(2 + static_cast<int>(seed % 2), seed, usual_schedules());
+    const auto track = track_of(family);
+    const DaviesTables<double> tables(track, same_baths(family.couplings.size(), kBath));
+    const double ta = 3.0 * std::pow(1.9, seed);
+    DaviesRun run{{{{0, 0.4 * ta, 0, 0.4}, {0.4 * ta, 0.7 * ta, 0.4, 0.4}, {0.7 * ta, 1.3 * ta, 0.4, 1}}, 0, 1},
+                  ground_state(*track, 0), {0.23 * ta, 0.6 * ta, 1.1 * ta, 1.3 * ta}, {}, {}};
+    DaviesOptions loose, tight;
+    loose.tolerance = 1e-5;
+    tight.tolerance = 1e-7;
+    const auto rough = run_davies<double>(tables, run, loose), fine = run_davies<double>(tables, run, tight);
+    REQUIRE((rough && fine));
+    CHECK(rough->converged);
+    double off = 0;
+    for (std::size_t k = 0; k < run.times.size(); ++k) off = std::max(off, (rough->states[k] - fine->states[k]).diagonal().cwiseAbs().maxCoeff());
+    covered += off <= rough->error + fine->error ? 1 : 0;
+    ++runs;
+    CHECK(off <= loose.tolerance);
+  }
+  CHECK(covered == runs);
+}
+
+TEST_CASE("fewer levels: the answer is close and the leakage says how close") {
+  const auto family = random_chip(4, 11, usual_schedules());
+  const auto all = track_of(family), few = track_of(family, 6);
+  CHECK(few->levels() >= 6);
+  CHECK(few->levels() < 16);
+  const auto baths = same_baths(4, kBath);
+  const DaviesTables<double> full(all, baths), reduced(few, baths);
+  const DaviesRun run{{{{0, 300, 0.2, 0.9}}, 0.2, 0.9}, ground_state(*all, 0.2), {300}, {}, {}};
+  const auto exact = run_davies<double>(full, run, {}), kept = run_davies<double>(reduced, run, {});
+  REQUIRE((exact && kept));
+  CHECK(exact->leakage < 1e-12);
+  CHECK(kept->leakage < 1e-2);
+  CHECK((exact->states[0] - kept->states[0]).diagonal().cwiseAbs().maxCoeff() < kept->leakage + 1e-6);
+  CHECK(kept->states[0].trace().real() == Approx(1).margin(1e-9));
+}
+
+TEST_CASE("threads that share a track get the same bits") {
+  const auto family = random_chip(3, 5, usual_schedules());
+  const auto work = [&](unsigned threads) {
+    const auto track = track_of(family);
+    const DaviesTables<double> tables(track, same_baths(3, kBath));
+    std::vector<Density> ends(6);
+    std::vector<std::thread> pool;
+    for (unsigned t = 0; t < threads; ++t)
+      pool.emplace_back([&, t] {
+        for (std::size_t k = t; k < ends.size(); k += threads)
+          ends[k] = run_davies<double>(tables, {ramp(10.0 * static_cast<double>(k + 1)), ground_state(*track, 0), {10.0 * static_cast<double>(k + 1)}, {}, {}}, {})->states[0];
+      });
+    for (auto& thread : pool) thread.join();
+    return ends;
+  };
+  const auto one = work(1), two = work(2);
+  for (std::size_t k = 0; k < one.size(); ++k) CHECK(one[k] == two[k]);
+}
