@@ -1,6 +1,7 @@
 #include "compiler/lower/lower.h"
 
 #include <map>
+#include <set>
 #include <utility>
 
 #include "compiler/lower/experiment.h"
@@ -143,13 +144,28 @@ RecognisedBaths recognise_baths(Instance& instance) {
 
 runtime::Bath lower_bath(const InstanceBath& bath, const std::optional<std::vector<RecognisedSpectrum>>& spectrum,
                          const Instance& instance, Lowering& lowering, const SourceSet& sources) {
-  runtime::Bath result{bath.name, {}, lowering.setting(bath.temperature), sources.place(bath.span)};
+  runtime::Bath result{bath.name, {}, lowering.setting(bath.temperature), sources.place(bath.span),
+                       dependence(instance.graph, bath.density).parameters};
   if (!spectrum) {
     result.components.push_back(runtime::GeneralForm{});
     return result;
   }
   for (const auto& summand : *spectrum) result.components.push_back(to_form(summand, instance, lowering));
   return result;
+}
+
+/// Parameter i stands in slot i.
+std::vector<std::uint32_t> level_inputs(const Instance& instance, const Operator& hamiltonian) {
+  std::set<std::uint32_t> slots;
+  const auto collect = [&](const Operator& op) {
+    for (const OperatorTerm& term : op) {
+      const Dependence reads = dependence(instance.graph, term.coefficient);
+      slots.insert(reads.parameters.begin(), reads.parameters.end());
+    }
+  };
+  collect(hamiltonian);
+  for (const NoiseTerm& noise : instance.noise) collect(noise.op);
+  return {slots.begin(), slots.end()};
 }
 
 runtime::Chip lower_chip(const Instance& instance, const RecognisedBaths& spectra, Lowering& lowering,
@@ -174,6 +190,7 @@ runtime::Chip lower_chip(const Instance& instance, const RecognisedBaths& spectr
   for (const NoiseTerm& noise : instance.noise) chip.couplings.push_back({lowering.sum(noise.op), noise.bath, noise.what});
   for (const JumpTerm& jump : instance.jumps) chip.jumps.push_back({lowering.sum(jump.op), jump.what});
   chip.offsets_slot = slots_of(instance).offsets_on;
+  chip.level_inputs = level_inputs(instance, fixed);
   return chip;
 }
 

@@ -130,14 +130,24 @@ void check_coefficients(Session& session, const Instance& instance) {
   report_not_finite_in_s(session, nodes);
 }
 
-void remark_offsets(Session& session, const Instance& instance) {
-  std::string held;
-  for (const InstanceQubit& qubit : instance.qubits) {
-    if (!qubit.offset) continue;
-    const double offset = value_at_defaults(session, *qubit.offset).value_or(0);
-    if (offset != 0) held += (held.empty() ? "" : ", ") + qubit.path;
+/// `davies` takes a jump as one operator: what changes on the way would be left at its first value.
+void check_jumps(Session& session, const Instance& instance) {
+  if (instance.equation != EquationKind::davies) return;
+  for (const JumpTerm& jump : instance.jumps) {
+    const bool moves = std::any_of(jump.op.begin(), jump.op.end(), [&](const OperatorTerm& term) {
+      const Dependence reads = dependence(session.graph, term.coefficient);
+      return reads.s || reads.t;
+    });
+    if (!moves) continue;
+    session.report(jump.span, diag::not_available, "a jump that changes with `s` or `t` under `davies`",
+                   "`lindblad` for such jumps");
   }
-  if (!held.empty()) session.remark(fmt::format("s + offset is held within [0, 1] near the ends: {}", held));
+}
+
+void check_levels(Session& session, const Statements& statements, const Instance& instance) {
+  if (statements.levels == nullptr || instance.equation == EquationKind::davies) return;
+  session.report(statements.levels->span, diag::not_available, "`levels` without levels to keep",
+                 "`levels K` with `equation davies`");
 }
 
 void collect_terms(const Operator& op, std::vector<NodeId>& roots) {
@@ -198,7 +208,8 @@ void check_whole(Session& session, const Statements& statements, const Readings&
   check_targets(session, statements, instance);
   check_memory(session, instance, statements.chip->span);
   check_coefficients(session, instance);
-  remark_offsets(session, instance);
+  check_jumps(session, instance);
+  check_levels(session, statements, instance);
 }
 
 std::vector<std::uint32_t> live_parameters(const Instance& instance) {

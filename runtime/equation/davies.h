@@ -72,11 +72,13 @@ struct DaviesOptions {
   double max_steps = 4e5;   ///< No pass of more steps than this.
   double max_explicit_phase = 4e5;  ///< No explicit integration over more phase than this [rad].
   Interrupted interrupted;
+  bool whole_state = false;  ///< Judge by the whole density matrix, not by populations alone.
 };
 
 struct DaviesAnswer {
   std::vector<Density> states;  ///< At the times wanted, computational basis, N x N.
-  double error = 0;             ///< Estimate for the populations, the largest over all times.
+  double error = 0;             ///< Estimate, the largest over all times: for the populations, or for the
+                                ///< state (Frobenius norm) if `whole_state` was asked for.
   double state_error = 0;       ///< The same for the state: Frobenius norm, coherences included.
   bool converged = false;       ///< error <= tolerance.
   bool explicitly = false;      ///< The explicit integrator gave the answer.

@@ -43,15 +43,22 @@ Answer extrapolated(const Answer& coarse, const Answer& fine) {
   return better;
 }
 
+/// What decides: the state where coherences are read, else the populations.
+double deciding_distance(const Answer& x, const Answer& y, bool whole_state) {
+  return whole_state ? std::max(distance(x, y), state_distance(x, y)) : distance(x, y);
+}
+
 /// Passes with halved steps, the answer they suggest and what it is off by.
 class Refinement {
  public:
+  explicit Refinement(bool whole_state) : whole_state_(whole_state) {}
+
   void add(Answer fine) {
     if (passes_ == 0) {
       plain_ = std::move(fine);
     } else {
       Answer better = extrapolated(plain_, fine);
-      const double change = distance(plain_, fine);
+      const double change = deciding_distance(plain_, fine, whole_state_);
       error_ = change;
       state_error_ = state_distance(plain_, fine);
       if (passes_ > 1) judge(better, change);
@@ -70,12 +77,18 @@ class Refinement {
 
  private:
   void judge(const Answer& better, double change) {
-    const double moved = distance(better_, better);
-    // A small move may be chance: extrapolation is not trusted to gain more than a factor of 10.
-    error_ = change < 0.4 * change_ ? std::max(moved, 0.1 * change) : std::max(change, moved);
+    const double moved = deciding_distance(better_, better, whole_state_);
+    // A small move may be chance: extrapolation is not trusted to gain more than a factor of 10, and
+    // that only after the steps acted as the square of their length twice in a row.
+    const bool regular = change < 0.4 * change_;
+    const double share = !regular ? 1.0 : was_regular_ ? 0.1 : 0.5;
+    error_ = std::max(moved, share * change);
+    was_regular_ = regular;
     state_error_ = std::max(state_error_ / 3.0, state_distance(better_, better));
   }
 
+  bool whole_state_;
+  bool was_regular_ = false;
   int passes_ = 0;
   Answer plain_, better_;
   double change_ = kUnknown, error_ = kUnknown, state_error_ = kUnknown;
@@ -88,7 +101,7 @@ void note(DaviesAnswer& answer, const DaviesPass& pass) {
 
 template <class Scalar>
 std::optional<RunError> by_fast_steps(const DaviesTables<Scalar>& tables, const DaviesRun& run, const DaviesOptions& options, DaviesAnswer& answer) {
-  Refinement refinement;
+  Refinement refinement(options.whole_state);
   double steps = 0;
   for (int depth = options.first_depth; depth <= options.last_depth && 2 * steps <= options.max_steps; ++depth) {
     auto pass = davies_pass<Scalar>(tables, run, depth, options);
@@ -121,7 +134,7 @@ std::optional<RunError> by_explicit_steps(const DaviesTables<Scalar>& tables, co
     note(answer, *pass);
     Answer next{std::move(pass->states), std::move(pass->manifolds)};
     if (last) {
-      answer.error = distance(*last, next);
+      answer.error = deciding_distance(*last, next, options.whole_state);
       answer.state_error = state_distance(*last, next);
     }
     last = std::move(next);
@@ -130,6 +143,19 @@ std::optional<RunError> by_explicit_steps(const DaviesTables<Scalar>& tables, co
   answer.states = std::move(last->states);
   answer.explicitly = true;
   return std::nullopt;
+}
+
+/// What passes have in common and so cannot show by their difference: the drift of the trace where no
+/// level is left out, and of coherences the rounding of the phases they have added up.
+template <class Scalar>
+double rounding_of(const Track<Scalar>& track, const DaviesRun& run, const DaviesOptions& options, const DaviesAnswer& answer) {
+  double drift = 0;
+  if (track.levels() == track.model().dimension) {
+    const Complex trace = run.initial.trace();
+    for (const Density& state : answer.states) drift = std::max(drift, std::abs(state.trace() - trace));
+  }
+  const double phase = options.whole_state ? track.width() * run.timeline.duration() : 0;
+  return drift + std::numeric_limits<double>::epsilon() * phase;
 }
 
 }  // namespace
@@ -152,6 +178,7 @@ Result<DaviesAnswer, RunError> run_davies(const DaviesTables<Scalar>& tables, co
     }
   }
   answer.converged = answer.error <= options.tolerance;
+  answer.error += rounding_of(tables.track(), run, options, answer);
   return answer;
 }
 

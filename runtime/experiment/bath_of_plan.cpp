@@ -3,7 +3,6 @@
 #include <fmt/format.h>
 
 #include <cmath>
-#include <numbers>
 
 namespace tarn::runtime {
 namespace {
@@ -19,9 +18,7 @@ struct Filled {
   }
   Component operator()(const DrudeForm& form) const { return Drude{settings[form.strength], settings[form.cutoff]}; }
   Component operator()(const PeakForm& form) const {
-    // The plan's strength times width is 2/pi of the reorganisation energy.
-    const double lambda = 0.5 * std::numbers::pi * settings[form.strength] * settings[form.width];
-    return LorentzianPeak{lambda, settings[form.centre], settings[form.width]};
+    return LorentzianPeak{settings[form.strength], settings[form.centre], settings[form.width]};
   }
   Component operator()(const TableForm& form) const {
     Tabulated table{form.w, form.j, form.loglog ? Interpolation::log_log : Interpolation::linear};
@@ -36,15 +33,6 @@ struct Filled {
     };
     return sampled;
   }
-};
-
-/// The rows of the settings that a form reads.
-struct RowsOf {
-  std::vector<std::uint32_t> operator()(const PowerLawForm& f) const { return {f.strength, f.cutoff, f.exponent}; }
-  std::vector<std::uint32_t> operator()(const DrudeForm& f) const { return {f.strength, f.cutoff}; }
-  std::vector<std::uint32_t> operator()(const PeakForm& f) const { return {f.strength, f.centre, f.width}; }
-  std::vector<std::uint32_t> operator()(const TableForm& f) const { return {f.scale}; }
-  std::vector<std::uint32_t> operator()(const GeneralForm&) const { return {}; }
 };
 
 }  // namespace
@@ -65,15 +53,7 @@ std::vector<double> bath_fingerprint(const Plan& plan, std::uint32_t row, std::s
                                      const Functions& functions) {
   const Bath& bath = plan.chip.baths[row];
   std::vector<double> numbers = {settings[bath.temperature.row]};
-  bool general = false;
-  for (const SpectralForm& form : bath.components) {
-    for (const std::uint32_t setting : std::visit(RowsOf{}, form)) numbers.push_back(settings[setting]);
-    general |= std::holds_alternative<GeneralForm>(form);
-  }
-  if (!general) return numbers;
-  std::vector<double> w;
-  for (int i = -120; i <= 120; ++i) w.push_back(std::exp2(i / 6.0));
-  for (const double j : functions.spectrum(kSpectra + row, w)) numbers.push_back(j);
+  for (const std::uint32_t slot : bath.inputs) numbers.push_back(functions.input(slot));
   return numbers;
 }
 

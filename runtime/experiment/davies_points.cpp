@@ -145,6 +145,28 @@ void stand_still(PointTask& task) {
   task.end_run_with_error({}, 0, true);
 }
 
+bool is_diagonal(const OperatorSum& op) {
+  for (const OperatorGroup& group : op.groups) {
+    for (const WordTerm& term : group.terms) {
+      if (term.word.x != 0) return false;
+    }
+  }
+  return true;
+}
+
+/// True for a product state with a letter + or -, whose projector is not diagonal.
+bool is_turned(const std::string& letters) { return letters.find_first_of("+-") != std::string::npos; }
+
+/// True if some reading needs more of the state than populations of levels and of bit strings.
+bool reads_coherences(const Plan& plan) {
+  return std::any_of(plan.readings.begin(), plan.readings.end(), [](const Reading& reading) {
+    if (const auto* mean = std::get_if<ReadMean>(&reading)) return !is_diagonal(mean->op);
+    if (const auto* population = std::get_if<ReadPopulation>(&reading)) return is_turned(population->set.letters);
+    if (const auto* fidelity = std::get_if<ReadFidelity>(&reading)) return is_turned(fidelity->letters);
+    return std::holds_alternative<ReadPurity>(reading) || std::holds_alternative<ReadCoherence>(reading);
+  });
+}
+
 std::shared_ptr<const Functions> functions_of(const PointTask& task) {
   auto functions = std::make_shared<Functions>(task.model().kernel(), task.model().tables(), task.model().plan());
   for (std::uint32_t i = 0; i < task.model().kernel().inputs(); ++i) functions->set_input(i, task.input(i));
@@ -156,14 +178,22 @@ std::shared_ptr<const Functions> functions_of(const PointTask& task) {
 DaviesPoints::DaviesPoints(const PlanModel& model, std::size_t kept) : model_(model), tracks_(kept), tables_(kept) {}
 
 std::vector<double> DaviesPoints::track_key(const Functions& functions) const {
+  std::vector<double> key;
+  for (const std::uint32_t slot : model_.plan().chip.level_inputs) key.push_back(functions.input(slot));
+  return key;
+}
+
+/// True if every coefficient that tracking reads is finite at the places where it is looked at first.
+bool DaviesPoints::finite_levels(const Functions& functions) const {
   const std::vector<double> s = key_positions();
   const std::vector<double> all = functions.along(kCoefficients, s);
-  std::vector<double> key;
   for (const std::uint32_t row : tracked_rows(model_.plan())) {
-    key.insert(key.end(), all.begin() + static_cast<std::ptrdiff_t>(row * s.size()),
-               all.begin() + static_cast<std::ptrdiff_t>((row + 1) * s.size()));
+    const auto first = all.begin() + static_cast<std::ptrdiff_t>(row * s.size());
+    if (!std::all_of(first, first + static_cast<std::ptrdiff_t>(s.size()), [](double x) { return std::isfinite(x); })) {
+      return false;
+    }
   }
-  return key;
+  return true;
 }
 
 DaviesPoints::AnyTrack DaviesPoints::make_track(const PointTask& task) const {
@@ -193,7 +223,7 @@ Result<DaviesPoints::AnyTables, RunError> DaviesPoints::tables_for(const PointTa
   }
   const std::shared_ptr<const Functions> functions = functions_of(task);
   std::vector<double> key = track_key(*functions);
-  if (!std::all_of(key.begin(), key.end(), [](double x) { return std::isfinite(x); })) {
+  if (!finite_levels(*functions)) {
     return Unexpected{RunError{"not_finite", "a coefficient of the Hamiltonian or of a noise operator is not finite"}};
   }
   const TrackOptions options = track_options(task);
@@ -217,6 +247,7 @@ void DaviesPoints::advance(PointTask& task, const Interrupted& interrupted) {
     DaviesOptions options;
     options.tolerance = task.tolerance();
     options.interrupted = interrupted;
+    options.whole_state = reads_coherences(model_.plan());
     task.begin_run();
     const auto answer = std::visit([&](const auto& typed) { return run_davies(*typed, *run, options); }, *tables);
     if (!answer) return task.fail(answer.error());

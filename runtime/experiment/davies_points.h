@@ -22,6 +22,7 @@ class DaviesPoints {
   /// of the noise operators, sampled along s. Points that go one after the other are cheapest when
   /// equal keys stand together.
   std::vector<double> track_key(const Functions& functions) const;
+  bool finite_levels(const Functions& functions) const;
 
   /// Repeats until the task wants no run. Errors end up in the task: `bad_bath`, `too_large`
   /// (over 10 qubits), `jump_depends_on_s`, and those of run_davies.

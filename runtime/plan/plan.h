@@ -72,6 +72,7 @@ struct Bath {
   std::vector<SpectralForm> components;  ///< {GeneralForm} if not recognised.
   Setting temperature;
   Place place;
+  std::vector<std::uint32_t> inputs;     ///< Input slots that J(w) reads, ascending.
 };
 
 /// A noise operator and the bath that drives it; each coupling has a copy of its bath of its own.
@@ -102,6 +103,9 @@ struct Chip {
   std::vector<Coupling> couplings;
   std::vector<Jump> jumps;
   std::vector<Kink> kinks;
+  /// Input slots that the Hamiltonian without its terms in t and the noise operators read: where
+  /// they are equal, so are levels and couplings along s.
+  std::vector<std::uint32_t> level_inputs;
   /// Input slot that is 1; set to 0 it turns all anneal offsets off (for `target`).
   std::uint32_t offsets_slot = 0;
 };

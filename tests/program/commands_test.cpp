@@ -72,7 +72,7 @@ TEST_CASE("a folder of the same key is continued, of another refused untouched")
   CHECK(read_file(scratch.path() / "f/trial/notes.txt") == "mine");
 }
 
-TEST_CASE("an interrupted run keeps its finished rows and is continued to the same bytes") {
+TEST_CASE("an interrupted run keeps its finished rows and goes on from there") {
   const Scratch scratch;
   scratch.write("m.tarn", kLong);
   const Outcome cut = run_tarn_while({"run", "m.tarn", "--out", "r"}, scratch.path(), [](int pid) {
@@ -82,7 +82,7 @@ TEST_CASE("an interrupted run keeps its finished rows and is continued to the sa
   INFO(cut.err);
   CHECK(cut.status == 3);
   const Csv part = read_csv(scratch.path() / "r/trial/results.csv");
-  CHECK(part.rows.size() < 4000);
+  REQUIRE(part.rows.size() < 4000);
   const Outcome limited = run_tarn({"run", "m.tarn", "--out", "r", "--time-limit", "1s"}, scratch.path());
   CHECK(limited.status == 3);
   CHECK(limited.seconds < 10);
