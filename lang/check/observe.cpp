@@ -13,14 +13,21 @@ bool runs(const Instance& instance) {
                      [](const PacePieceI& piece) { return !std::holds_alternative<PaceStartI>(piece); });
 }
 
+constexpr std::uint32_t kMostSamples = 1'000'000;
+
 /// When an observable is read, by its kind; s and t of `at` are checked.
 std::optional<MomentI> moment_of(Session& session, const Scope& scope, const ast::Observe& observe) {
   if (std::holds_alternative<ast::AtEnd>(observe.when)) return AtEndI{};
   if (const auto* along = std::get_if<ast::Along>(&observe.when)) {
     const auto count = evaluate_count(session, scope, along->count);
     if (!count) return std::nullopt;
-    if (*count >= 2 && *count <= 1'000'000) return AlongI{static_cast<std::uint32_t>(*count)};
-    session.report(span_of(session, scope, along->count), diag::count_too_small, "the number of points along the pace", 2);
+    const Span span = span_of(session, scope, along->count);
+    if (*count > kMostSamples) {
+      session.report(span, diag::too_many_samples, kMostSamples);
+      return std::nullopt;
+    }
+    if (*count >= 2) return AlongI{static_cast<std::uint32_t>(*count)};
+    session.report(span, diag::count_too_small, "the number of points along the pace", 2);
     return std::nullopt;
   }
   const auto* point = std::get_if<ast::AtPoint>(&observe.when);

@@ -106,7 +106,11 @@ void check_overrides_used(const Program& program, const std::vector<Instance>& a
                                   [&, &parameter = name](const Instance& i) { return is_used(i, parameter); });
     const auto declared = std::find_if(program.parameters.begin(), program.parameters.end(),
                                        [&, &parameter = name](const ProgramParameter& p) { return p.name == parameter; });
-    if (!used && declared != program.parameters.end()) diagnostics.report(declared->span, diag::changes_nothing, name);
+    if (used || declared == program.parameters.end()) continue;
+    const bool swept = std::any_of(all.begin(), all.end(),
+                                   [&, &parameter = name](const Instance& i) { return is_swept(i, parameter); });
+    if (swept) diagnostics.report(declared->span, diag::set_and_swept, name);
+    else diagnostics.report(declared->span, diag::changes_nothing, name);
   }
 }
 

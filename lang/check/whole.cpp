@@ -78,7 +78,8 @@ void check_target(Session& session, const Instance& instance, Span span) {
     if (word.x == 0 && word.z != 0) diagonal = std::max(diagonal, std::abs(value));
   }
   if (diagonal <= 1e-12 * other || diagonal == 0) {
-    session.report(span, diag::target_constant);
+    // After an error the terms that are missing here may be those that could not be read.
+    if (!session.diagnostics.has_errors()) session.report(span, diag::target_constant);
     return;
   }
   if (other <= 1e-12 * diagonal) return;

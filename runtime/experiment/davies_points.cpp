@@ -65,7 +65,11 @@ TrackOptions track_options(const PointTask& task) {
     options.s_min = std::max(0.0, range.lowest - missing);
     options.s_max = std::min(1.0, range.highest + missing);
   }
-  if (task.model().plan().levels) options.levels = static_cast<Eigen::Index>(*task.model().plan().levels);
+  if (task.model().plan().levels) {
+    options.levels = static_cast<Eigen::Index>(*task.model().plan().levels);
+    // Where the cut between kept and left out levels is crossed, nodes gain nothing.
+    options.max_intervals = 2000;
+  }
   return options;
 }
 
@@ -196,9 +200,10 @@ bool DaviesPoints::finite_levels(const Functions& functions) const {
   return true;
 }
 
-DaviesPoints::AnyTrack DaviesPoints::make_track(const PointTask& task) const {
+DaviesPoints::AnyTrack DaviesPoints::make_track(const PointTask& task, const Interrupted& interrupted) const {
   const HamiltonianFamily family = family_of(model_, functions_of(task), task.positions());
-  const TrackOptions options = track_options(task);
+  TrackOptions options = track_options(task);
+  options.interrupted = interrupted;
   if (is_real(family)) return std::make_shared<const Track<double>>(dense_levels<double>(family), options);
   using Complex = std::complex<double>;
   return std::make_shared<const Track<Complex>>(dense_levels<Complex>(family), options);
@@ -215,7 +220,7 @@ Result<DaviesPoints::AnyTables, RunError> DaviesPoints::make_tables(const PointT
       any);
 }
 
-Result<DaviesPoints::AnyTables, RunError> DaviesPoints::tables_for(const PointTask& task) {
+Result<DaviesPoints::AnyTables, RunError> DaviesPoints::tables_for(PointTask& task, const Interrupted& interrupted) {
   const Chip& chip = model_.plan().chip;
   if (chip.qubits.size() > kMostQubits) {
     return Unexpected{RunError{"too_large", fmt::format("`davies` keeps a density matrix: {} qubits are more than the {} "
@@ -228,7 +233,11 @@ Result<DaviesPoints::AnyTables, RunError> DaviesPoints::tables_for(const PointTa
   }
   const TrackOptions options = track_options(task);
   key.insert(key.end(), {options.s_min, options.s_max});
-  const AnyTrack track = tracks_.get(key, [&] { return make_track(task); });
+  const AnyTrack track = tracks_.get(key, [&] { return make_track(task, interrupted); });
+  if (interrupted && interrupted()) return Unexpected{RunError{"interrupted", "stopped before the end", {}}};
+  if (!std::visit([](const auto& typed) { return typed->resolved(); }, track)) {
+    task.remark("levels change too fast somewhere along s to be followed; answers are marked by their errors at best");
+  }
   for (std::uint32_t b = 0; b < chip.baths.size(); ++b) {
     const std::vector<double> more = bath_fingerprint(model_.plan(), b, task.settings(), *functions);
     key.insert(key.end(), more.begin(), more.end());
@@ -239,7 +248,7 @@ Result<DaviesPoints::AnyTables, RunError> DaviesPoints::tables_for(const PointTa
 void DaviesPoints::advance(PointTask& task, const Interrupted& interrupted) {
   if (!task.wants_run()) return;
   if (task.timeline().segments.empty()) return stand_still(task);
-  const auto tables = tables_for(task);
+  const auto tables = tables_for(task, interrupted);
   if (!tables) return task.fail(tables.error());
   const auto run = run_of(task, functions_of(task));
   if (!run) return task.fail(run.error());

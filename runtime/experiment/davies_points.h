@@ -36,8 +36,8 @@ class DaviesPoints {
   using AnyTrack = std::variant<TrackOf<double>, TrackOf<std::complex<double>>>;
   using AnyTables = std::variant<TablesOf<double>, TablesOf<std::complex<double>>>;
 
-  Result<AnyTables, RunError> tables_for(const PointTask& task);
-  AnyTrack make_track(const PointTask& task) const;
+  Result<AnyTables, RunError> tables_for(PointTask& task, const Interrupted& interrupted);
+  AnyTrack make_track(const PointTask& task, const Interrupted& interrupted) const;
   Result<AnyTables, RunError> make_tables(const PointTask& task, const AnyTrack& track) const;
 
   const PlanModel& model_;

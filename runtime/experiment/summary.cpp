@@ -4,6 +4,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <set>
 
 #include "runtime/experiment/grid.h"
 #include "runtime/experiment/tables.h"
@@ -106,6 +107,15 @@ std::string claim_line(const ClaimReport& claim, const Plan& plan) {
   return line + "\n";
 }
 
+/// What went wrong, in full and once each.
+std::set<std::string> failures_of(const RunReport& report) {
+  std::set<std::string> lines;
+  for (const PointOutcome& point : report.points) {
+    if (point.error) lines.insert(point.status);
+  }
+  return lines;
+}
+
 std::string ending_line(const RunReport& report) {
   if (report.ending == Ending::finished) return "";
   return fmt::format("{}: {} of {} points are done\n", report.ending == Ending::interrupted ? "interrupted" : "out of time",
@@ -145,6 +155,7 @@ std::string summary(const RunReport& report, std::size_t most_rows) {
   if (report.leakage > 0) text += fmt::format("remark: up to {:.2g} of the population left the levels kept\n", report.leakage);
   if (report.loose > 0) text += fmt::format("{} of {} points are marked: see status\n", report.loose, report.total);
   if (report.failed > 0) text += fmt::format("{} of {} points failed: see status\n", report.failed, report.total);
+  for (const std::string& line : failures_of(report)) text += fmt::format("failed: {}\n", line);
   return text + ending_line(report);
 }
 

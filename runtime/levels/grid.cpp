@@ -80,8 +80,9 @@ class Builder {
     while (!ahead.empty()) {
       const Frame<Scalar>& left = grid_.nodes.back();
       const double s_left = left.s, s_right = ahead.back().s;
-      const bool full = grid_.nodes.size() + ahead.size() > static_cast<std::size_t>(options_.max_intervals);
-      const bool coarse = too_coarse(left, ahead.back());
+      const bool stopped = options_.interrupted && options_.interrupted();
+      const bool full = stopped || grid_.nodes.size() + ahead.size() > static_cast<std::size_t>(options_.max_intervals);
+      const bool coarse = stopped || too_coarse(left, ahead.back());
       if (coarse && full) grid_.resolved = false;
       if (coarse && !full && s_right - s_left > kShortest * range_) {
         ahead.push_back(solve(0.5 * (s_left + s_right)));

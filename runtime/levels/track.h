@@ -9,6 +9,7 @@
 
 #include <Eigen/Core>
 #include <cstddef>
+#include <functional>
 #include <memory>
 #include <vector>
 
@@ -24,6 +25,7 @@ struct TrackOptions {
   double max_rotation = 0.15;  ///< Largest element of a rotation between base nodes [rad].
   int initial_intervals = 16;
   int max_intervals = 20000;
+  std::function<bool()> interrupted = {};  ///< True ends the refinement: the track is then of no use.
 };
 
 /// A step from one frame to the next through the frame at its middle.

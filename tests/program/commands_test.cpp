@@ -51,7 +51,7 @@ TEST_CASE("exit statuses tell what happened") {
   scratch.write("long.tarn", kLong);
   const Outcome swept = run_tarn({"check", "long.tarn", "--set", "f=5 GHz"}, scratch.path());
   CHECK(swept.status == 2);
-  CHECK(swept.err.find("changes_nothing") != std::string::npos);
+  CHECK(swept.err.find("set_and_swept") != std::string::npos);
   CHECK(run_tarn({"run", "m.tarn", "--wrong"}, scratch.path()).status == 2);
   CHECK(run_tarn({}, scratch.path()).status == 2);
   CHECK(run_tarn({"--help"}, scratch.path()).status == 0);
