@@ -1,9 +1,13 @@
 #include "lang/check/arguments.h"
 
 #include <algorithm>
+#include <array>
 
 #include "lang/check/arithmetic.h"
 #include "lang/check/expression.h"
+#include "lang/check/path.h"
+#include "lang/check/remedies.h"
+#include "lang/support/near.h"
 
 namespace tarn {
 namespace {
@@ -103,9 +107,10 @@ std::optional<DeclaredType> declared_type(Session& session, const ast::TypeText&
   if (word.text == "truth") return DeclaredType{Kind::truth, {}, {}};
   if (word.text == "text") return DeclaredType{Kind::text, {}, {}};
   if (const auto dimension = named_dimension(word.text)) return DeclaredType{Kind::quantity, *dimension, {}};
-  const std::string near = nearest(word.text, {"number", "count", "truth", "text", "angle", "time", "frequency", "rate",
-                                               "energy", "temperature", "charge", "current", "voltage", "flux",
-                                               "inductance", "capacitance", "resistance"});
+  constexpr auto kTypes = std::to_array<std::string_view>(
+      {"number", "count", "truth", "text", "angle", "time", "frequency", "rate", "energy", "temperature", "charge",
+       "current", "voltage", "flux", "inductance", "capacitance", "resistance"});
+  const std::string_view near = near_word(word.text, kTypes);
   auto tail = session.report(word.span, diag::unknown_type, word.text);
   tail.remedy(near.empty() ? "a unit in brackets gives any dimension, as in `[uPhi0^2/Hz]`"
                            : fmt::format("did you mean `{}`?", near));
@@ -124,34 +129,60 @@ const std::vector<ast::Arg>& arguments_of(const Callable& callable) {
 
 Span declaration_span(const Callable& callable) { return item_name(*callable.item)->span; }
 
+namespace {
+
+/// What is given to an argument. `ramp(5 GHz)` given to a schedule binds what follows s; elsewhere
+/// it is a call.
+Value given_value(Session& session, const Scope& scope, const ast::Arg& arg, ast::ExprId id) {
+  const auto* part = arg.type ? std::get_if<ast::PartType>(&arg.type->type) : nullptr;
+  const auto* use = std::get_if<ast::Use>(&session.ast(scope).expr(id).node);
+  const bool bound = part != nullptr && *part == ast::PartType::schedule && use != nullptr && use->path.call;
+  if (!bound || !use->held.empty() || use->under) return evaluate(session, scope, id);
+  ast::Path name = use->path;
+  name.call = false;
+  name.given.clear();
+  const Value value = evaluate_path(session, scope, name);
+  const auto* schedule = value.get<Callable>();
+  if (schedule == nullptr || schedule->kind != CallableKind::schedule) return evaluate(session, scope, id);
+  Callable result = *schedule;
+  bind_given(session, scope, result, use->path, 1);
+  return {std::move(result)};
+}
+
+}  // namespace
+
 void bind_given(Session& session, const Scope& scope, Callable& callable, const ast::Path& path, std::size_t skip) {
   const std::vector<ast::Arg>& args = arguments_of(callable);
   std::size_t next = skip;
   for (const ast::Given& given : path.given) {
-    const Value value = evaluate(session, scope, given.value);
     const Span span = span_of(session, scope, given.value);
     std::string name;
+    const ast::Arg* taken = nullptr;
     if (given.name) {
       name = given.name->text;
       const auto found = std::find_if(args.begin(), args.end(), [&](const ast::Arg& arg) { return arg.name.text == name; });
       if (found == args.end() || static_cast<std::size_t>(found - args.begin()) < skip) {
         std::vector<std::string> known;
-        for (const ast::Arg& arg : args) known.push_back(arg.name.text);
-        const std::string near = nearest(name, known);
-        auto tail = session.report(given.name->span, diag::unknown_argument, callable_name(callable), name);
-        tail.note(declaration_span(callable), "declared here");
-        if (!near.empty()) tail.remedy(fmt::format("did you mean `{}`?", near));
+        for (std::size_t k = skip; k < args.size(); ++k) known.push_back(args[k].name.text);
+        session.report(given.name->span, diag::unknown_argument, callable_name(callable), name)
+            .note(declaration_span(callable), "declared here")
+            .remedy(offer(name, known, "it takes"));
+        evaluate(session, scope, given.value);
         continue;
       }
+      taken = &*found;
     } else {
       while (next < args.size() && callable.bound.contains(args[next].name.text)) ++next;
       if (next >= args.size()) {
-        session.report(span, diag::too_many_arguments, callable_name(callable), args.size() - std::min(skip, args.size()))
+        session.report(span, diag::too_many_arguments, callable_name(callable), counted(args.size() - std::min(skip, args.size()), "argument"))
             .note(declaration_span(callable), "declared here");
+        evaluate(session, scope, given.value);
         continue;
       }
-      name = args[next].name.text;
+      taken = &args[next];
+      name = taken->name.text;
     }
+    const Value value = given_value(session, scope, *taken, given.value);
     const auto [at, is_new] = callable.bound.try_emplace(name, BoundValue{std::make_shared<const Value>(value), span});
     if (!is_new) session.report(span, diag::argument_twice, name).note(at->second.span, "given here");
   }

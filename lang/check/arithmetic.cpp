@@ -4,6 +4,7 @@
 #include <limits>
 
 #include "lang/check/expression.h"
+#include "lang/check/remedies.h"
 #include "lang/program/operators.h"
 #include "lang/quantities/constants.h"
 #include "lang/support/check.h"
@@ -75,7 +76,13 @@ Value opaque_count(const Value& number) {
 bool unlike(Session& session, const Operand& left, Dimension expected, const Operand& right, Dimension found) {
   if (expected == found) return false;
   auto tail = session.report(right.span, diag::dimension_mismatch, expected, found, excerpt(session, right.span));
-  tail.note(left.span, fmt::format("this is {}", expected)).remedy(factor_remedy(expected, found));
+  tail.note(left.span, fmt::format("this is {}", expected));
+  // A plain number beside a quantity lacks its unit, whichever of the two it is.
+  Span at = right.span;
+  if (found.is_number()) at = first_factor(session, at);
+  const std::string remedy = dimension_remedy(session, at, expected, found);
+  const std::string lacking = expected.is_number() && found != kTime ? unit_remedy(session, first_factor(session, left.span), found) : std::string();
+  tail.remedy(lacking.empty() ? remedy : lacking);
   return true;
 }
 
@@ -302,35 +309,6 @@ Value select(Session& session, NodeId condition, const Operand& yes, const Opera
   if (unlike(session, yes, dimension, no, graph[*b].dimension)) return {};
   const NodeId node = graph.add({.op = NodeOp::select, .a = condition, .b = *a, .c = *b, .dimension = dimension, .span = span});
   return counts && session.generic ? Value{CountValue{std::nullopt, node}} : number_value(node);
-}
-
-std::string factor_remedy(Dimension expected, Dimension found) {
-  struct Factor {
-    Dimension dimension;
-    const char* text;
-  };
-  const Dimension boltzmann = kEnergy / kTemperature;
-  const Dimension planck = kEnergy * kTime / kAngle;
-  const Factor factors[] = {
-      {boltzmann, "multiply by `kB`"},
-      {kNumber / boltzmann, "divide by `kB`"},
-      {planck, "multiply by `hbar`"},
-      {kNumber / planck, "divide by `hbar`"},
-      {boltzmann / planck, "multiply by `kB/hbar`"},
-      {planck / boltzmann, "multiply by `hbar/kB`"},
-      {kAngle, "multiply by `1 rad`"},
-      {kNumber / kAngle, "divide by `1 rad`"},
-      {kFlux, "multiply by a lever, a flux"},
-      {kCurrent, "multiply by a lever, a current"},
-      {kCharge, "multiply by a lever, a charge"},
-      {kVoltage, "multiply by a lever, a voltage"},
-  };
-  const Dimension missing = expected / found;
-  for (const Factor& factor : factors) {
-    if (factor.dimension == missing) return factor.text;
-  }
-  if (!missing.valid()) return {};
-  return fmt::format("a factor in [{}] is missing", unit_product(missing));
 }
 
 }  // namespace tarn

@@ -23,9 +23,6 @@ Value select(Session& session, NodeId condition, const Operand& yes, const Opera
 bool is_function(std::string_view name);
 Value call_function(Session& session, std::string_view name, const std::vector<Operand>& arguments, Span span);
 
-/// What to multiply a quantity of dimension `found` by to get `expected`: "multiply by `kB`".
-std::string factor_remedy(Dimension expected, Dimension found);
-
 /// Adds a node of the graph; reports a constant that is not finite.
 Value make_number(Session& session, NodeOp op, NodeId a, NodeId b, Dimension dimension, Span span);
 

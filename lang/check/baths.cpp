@@ -31,6 +31,7 @@ void elaborate_density(Session& session, const Scope& scope, const ast::BathValu
   const NodeId w = session.graph.add({.op = NodeOp::w, .dimension = kFrequency});
   Site site{.where = "in a bath"};
   site.operators = false;
+  site.formula = true;
   site.spectrum_argument = w;
   site.table_argument = w;
   site.table_holds = false;
@@ -43,7 +44,7 @@ void elaborate_temperature(Session& session, const Scope& scope, const ast::Bath
   nodes.temperature = evaluate_quantity(session, scope, setting.value, kTemperature);
   if (!nodes.temperature) return;
   const auto value = value_at_defaults(session, *nodes.temperature);
-  if (value && !(*value > 0)) {
+  if (value && !(*value >= 0)) {
     session.report(span_of(session, scope, setting.value), diag::not_positive, "a temperature",
                    format_quantity(*value, kTemperature));
   }

@@ -8,6 +8,7 @@
 #include "lang/check/expression.h"
 #include "lang/check/instantiate.h"
 #include "lang/check/laws.h"
+#include "lang/check/remedies.h"
 
 namespace tarn {
 namespace {
@@ -149,6 +150,9 @@ Program check(Modules modules, Diagnostics& diagnostics) {
   for (std::uint32_t k = 0; k < program.experiments.size(); ++k) {
     elaborate_experiment(program, k, {}, true, steps, diagnostics);
   }
+  for (const Diagnostic& said : diagnostics.all()) {
+    if (said.severity != Severity::error) program.told.add(said);
+  }
   return program;
 }
 
@@ -159,15 +163,14 @@ std::optional<std::uint32_t> find_experiment(const Program& program, const std::
     known.push_back(program.experiments[k].name);
   }
   const Span start{program.ast(0).file, 0, 0};
-  const std::string near = nearest(name, known);
-  auto tail = diagnostics.report(start, diag::unknown_experiment, name);
-  if (!near.empty()) tail.remedy(fmt::format("did you mean `{}`?", near));
+  diagnostics.report(start, diag::unknown_experiment, name).remedy(offer(name, known, "experiments:"));
   return std::nullopt;
 }
 
 std::vector<Instance> instances(const Program& program, std::uint32_t experiment, const Overrides& overrides,
                                 Diagnostics& diagnostics) {
   std::uint64_t steps = 0;
+  diagnostics.know(program.told);
   return elaborate_experiment(program, experiment, overrides, false, steps, diagnostics);
 }
 

@@ -32,7 +32,8 @@ Overrides read_overrides(Program& program, const std::vector<std::pair<std::stri
 
 /// One experiment with its counts fixed, for every combination of its swept counts, in grid
 /// order; one Instance where no count is swept. Each lists in `points` the grid indices that are
-/// its own. Empty after errors. Precondition: `program` was checked without errors.
+/// its own. Empty after errors. Warnings and remarks that check() made are not made again.
+/// Precondition: `program` was checked without errors.
 std::vector<Instance> instances(const Program& program, std::uint32_t experiment, const Overrides& overrides,
                                 Diagnostics& diagnostics);
 

@@ -7,6 +7,7 @@
 #include "lang/check/expression.h"
 #include "lang/check/loops.h"
 #include "lang/check/path.h"
+#include "lang/check/remedies.h"
 #include "lang/support/check.h"
 
 namespace tarn {
@@ -245,6 +246,43 @@ void check_chip(Session& session, const Callable& chip) {
   session.active.pop_back();
 }
 
+namespace {
+
+/// Places are sorted by their text, not by their index: the smallest and the largest index of `name`.
+std::optional<std::pair<std::int64_t, std::int64_t>> indices_of(const std::map<std::string, std::uint32_t>& places, const std::string& name) {
+  std::optional<std::pair<std::int64_t, std::int64_t>> range;
+  const std::string open = name + "[";
+  for (auto at = places.lower_bound(open); at != places.end() && at->first.starts_with(open); ++at) {
+    if (at->first.find(']', open.size()) + 1 != at->first.size()) continue;
+    const std::int64_t index = std::stoll(at->first.substr(open.size()));
+    range = range ? std::pair(std::min(range->first, index), std::max(range->second, index)) : std::pair(index, index);
+  }
+  return range;
+}
+
+/// The first part of `text` that names nothing decides: `cell[7].q[0]` has an index too large.
+std::string place_remedy(const ChipFrame& frame, const std::string& text) {
+  const auto& places = frame.unrolled->places;
+  for (std::size_t dot = text.find('.'); true; dot = text.find('.', dot + 1)) {
+    const std::string part = text.substr(0, dot);
+    const std::string name = part.ends_with(']') ? part.substr(0, part.rfind('[')) : part;
+    if (!places.contains(frame.prefix + part)) {
+      const auto range = indices_of(places, frame.prefix + name);
+      if (range) return fmt::format("`{}` has the indices `{} .. {}`", name, range->first, range->second);
+      if (name != part && places.contains(frame.prefix + name)) return fmt::format("`{}` has no index", name);
+      break;
+    }
+    if (dot == std::string::npos) break;
+  }
+  std::vector<std::string> known;
+  for (const auto& [place, qubit] : places) {
+    if (place.starts_with(frame.prefix) && qubit < frame.unrolled->qubits.size()) known.push_back(place.substr(frame.prefix.size()));
+  }
+  return offer(text, known, "qubits:");
+}
+
+}  // namespace
+
 std::optional<std::uint32_t> find_qubit(Session& session, const Scope& scope, const ast::Path& path) {
   const ChipFrame* frame = scope.site != nullptr ? scope.site->chip : nullptr;
   if (frame == nullptr || path.call) {
@@ -259,13 +297,12 @@ std::optional<std::uint32_t> find_qubit(Session& session, const Scope& scope, co
   }
   const bool declared = frame->roots.contains(path.steps.front().name.text);
   if (declared && (!text || session.generic)) return std::nullopt;
-  std::vector<std::string> known;
-  for (const auto& [place, qubit] : places) {
-    if (place.compare(0, frame->prefix.size(), frame->prefix) == 0) known.push_back(place.substr(frame->prefix.size()));
-  }
-  const std::string near = nearest(text.value_or(path.steps.front().name.text), known);
-  auto tail = session.report(path.span, diag::unknown_place, frame->prefix + text.value_or(excerpt(session, path.span)));
-  if (!near.empty()) tail.remedy(fmt::format("did you mean `{}`?", near));
+  // A place that is declared but was never placed had an error of its own.
+  const auto first = places.lower_bound(frame->prefix + path.steps.front().name.text);
+  const bool placed = first != places.end() && first->first.starts_with(frame->prefix + path.steps.front().name.text);
+  if (declared && !placed && session.diagnostics.has_errors()) return std::nullopt;
+  session.report(path.span, diag::unknown_place, frame->prefix + text.value_or(excerpt(session, path.span)))
+      .remedy(place_remedy(*frame, text.value_or(path.steps.front().name.text)));
   return std::nullopt;
 }
 

@@ -6,6 +6,7 @@
 #include "lang/check/arguments.h"
 #include "lang/check/experiment.h"
 #include "lang/check/expression.h"
+#include "lang/check/predefined.h"
 
 namespace tarn {
 namespace {
@@ -33,11 +34,6 @@ void name_modules(Program& program) {
   }
 }
 
-void report_predefined(const ast::Name& name, Diagnostics& diagnostics) {
-  auto tail = diagnostics.report(name.span, diag::predefined_name, name.text);
-  if (is_pauli_word(name.text)) tail.remedy("words of I X Y Z are operators");
-}
-
 void declare_items(Program& program, std::uint32_t module, Diagnostics& diagnostics) {
   const Ast& ast = program.ast(module);
   auto& items = program.modules[module].items;
@@ -45,7 +41,7 @@ void declare_items(Program& program, std::uint32_t module, Diagnostics& diagnost
     const ast::Name* name = item_name(ast.items[row]);
     if (name == nullptr) continue;
     if (is_predefined(name->text)) {
-      report_predefined(*name, diagnostics);
+      diagnostics.report(name->span, diag::predefined_name, name->text).remedy(predefined_remedy(name->text));
       continue;
     }
     const auto [first, is_new] = items.try_emplace(name->text, row);

@@ -5,6 +5,7 @@
 #include "lang/check/expression.h"
 #include "lang/check/loops.h"
 #include "lang/check/path.h"
+#include "lang/check/remedies.h"
 #include "lang/program/print.h"
 #include "lang/program/operators.h"
 
@@ -23,14 +24,15 @@ std::optional<OperatorValue> term_operator(Session& session, const Scope& scope,
 
 bool require_hermitian(Session& session, const OperatorValue& op, Span span) {
   if (is_hermitian(op.terms)) return true;
-  session.report(span, diag::not_hermitian, excerpt(session, span)).remedy("add its adjoint: `|0><1| + |1><0|`");
+  session.report(span, diag::not_hermitian, excerpt(session, span)).remedy("add its adjoint, as in `|0><1| + |1><0|`");
   return false;
 }
 
-bool require_operator_dimension(Session& session, const OperatorValue& op, Dimension expected, Span span) {
+bool require_operator_dimension(Session& session, const Scope& scope, ast::ExprId id, const OperatorValue& op, Dimension expected) {
   if (op.dimension == expected) return true;
+  const Span span = span_of(session, scope, id);
   session.report(span, diag::dimension_mismatch, expected, op.dimension, excerpt(session, span))
-      .remedy(factor_remedy(expected, op.dimension));
+      .remedy(dimension_remedy(session, scope, id, expected, op.dimension));
   return false;
 }
 
@@ -80,7 +82,7 @@ std::optional<OperatorValue> noise_operator(Session& session, const Scope& scope
   const auto op = term_operator(session, scope, id);
   const Span span = span_of(session, scope, id);
   if (!op || !require_hermitian(session, *op, span)) return std::nullopt;
-  if (known_bath && !require_operator_dimension(session, *op, kNumber, span)) return std::nullopt;
+  if (known_bath && !require_operator_dimension(session, scope, id, *op, kNumber)) return std::nullopt;
   if (!depends_on_t(session, *op)) return op;
   session.report(span, diag::name_not_here, "t", "in `noise`");
   return std::nullopt;
@@ -181,7 +183,7 @@ void elaborate_energy(Session& session, const Scope& scope, const ast::EnergyTer
     const auto op = term_operator(session, inner, term.value);
     if (!op) return;
     const Span span = span_of(session, inner, term.value);
-    const bool fits = op->dimension == kEnergy || require_operator_dimension(session, *op, kFrequency, span);
+    const bool fits = op->dimension == kEnergy || require_operator_dimension(session, inner, term.value, *op, kFrequency);
     if (!fits || !require_hermitian(session, *op, span)) return;
     place.unrolled.energy.push_back({op->terms, place.where, excerpt(session, span), span});
   });
@@ -194,12 +196,11 @@ void elaborate_jump(Session& session, const Scope& scope, const ast::JumpTerm& t
     const Dimension root_of_rate = pow(kRate, Rational::of(1, 2));
     if (!op) return;
     const Span span = span_of(session, inner, term.value);
-    if (op->dimension == kRate) {
+    if (op->dimension != root_of_rate) {
       session.report(span, diag::dimension_mismatch, root_of_rate, op->dimension, excerpt(session, span))
-          .remedy("`jump` takes the root of a rate: `sqrt(rate) * |0><1|`");
+          .remedy("`jump` takes the root of a rate, which is per time: `sqrt(5 [1/us]) * |0><1|`");
       return;
     }
-    if (!require_operator_dimension(session, *op, root_of_rate, span)) return;
     place.unrolled.jumps.push_back({op->terms, placed_text(session, inner, term.value, op->terms, place), term.span});
   });
 }

@@ -50,6 +50,10 @@ void elaborate_claims(Session& session, Scope& scope, const Statements& statemen
 /// What can only be judged of the whole: statements that are missing, `target`, the memory.
 void check_whole(Session& session, const Statements& statements, const Readings& readings, Instance& instance);
 
+/// Refuses a bath that `equation davies` cannot take: J(w)/w without limit at w = 0. Not judged
+/// where a swept parameter takes part. Precondition: the axes are in the instance.
+void check_densities(Session& session, const Instance& instance);
+
 /// Parameters that change an answer: rows of Instance::parameters.
 std::vector<std::uint32_t> live_parameters(const Instance& instance);
 

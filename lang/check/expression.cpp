@@ -4,14 +4,24 @@
 
 #include "lang/check/arithmetic.h"
 #include "lang/check/path.h"
+#include "lang/check/remedies.h"
+#include "lang/check/turns.h"
 #include "lang/program/operators.h"
 #include "lang/quantities/constants.h"
+#include "lang/quantities/unit_slips.h"
 #include "lang/support/check.h"
 
 namespace tarn {
 namespace {
 
+void warn_unit_slip(Session& session, const ast::UnitText& unit) {
+  const UnitSlip* slip = find_unit_slip(unit.text);
+  if (slip == nullptr) return;
+  session.report(unit.span, diag::unit_slip, slip->written, slip->is).remedy(fmt::format("did you mean `{}`?", slip->meant));
+}
+
 Value number_literal(Session& session, const ast::Number& number, Span span) {
+  if (number.unit) warn_unit_slip(session, *number.unit);
   const bool integer = number.text.find_first_not_of("0123456789") == std::string::npos;
   if (!number.unit && integer && number.value < 9e15) return count_value(static_cast<std::int64_t>(number.value));
   const Unit unit = number.unit ? number.unit->unit : Unit{};
@@ -26,6 +36,11 @@ Value evaluate_choice(Session& session, const Scope& scope, const ast::Choice& c
   const Operand yes{evaluate(session, scope, choice.yes), span_of(session, scope, choice.yes)};
   const Operand no{evaluate(session, scope, choice.no), span_of(session, scope, choice.no)};
   return condition ? select(session, *condition, yes, no, span) : Value{};
+}
+
+bool is_product(const Ast& ast, ast::ExprId id) {
+  const auto& binary = std::get<ast::Binary>(ast.expr(id).node);
+  return binary.op == ast::BinaryOp::multiply || binary.op == ast::BinaryOp::divide;
 }
 
 /// A chain a + b - c ... leans to the left as deep as it is long, so it is walked, not descended.
@@ -43,6 +58,8 @@ Value evaluate_chain(Session& session, const Scope& scope, ast::ExprId id) {
     if (!session.step(expr.span)) return {};
     const Operand right{evaluate(session, scope, binary.right), ast.expr(binary.right).span};
     left = {apply(session, binary.op, left, right, expr.span), expr.span};
+    const bool ends = at + 1 == spine.rend() || !is_product(ast, *(at + 1));
+    if (is_product(ast, *at) && ends && !check_turns(session, scope, *at, left.value)) left.value = {};
   }
   return left.value;
 }
@@ -136,7 +153,7 @@ bool require_dimension(Session& session, NodeId node, Dimension expected, Span s
   const Dimension found = session.graph[node].dimension;
   if (found == expected) return true;
   session.report(span, diag::dimension_mismatch, expected, found, excerpt(session, span))
-      .remedy(factor_remedy(expected, found));
+      .remedy(dimension_remedy(session, span, expected, found));
   return false;
 }
 

@@ -213,6 +213,7 @@ Instance elaborate_group(const Program& program, std::uint32_t experiment, const
   Instance instance = elaborate(session, statements, program.experiments[experiment]);
   instance.graph = graph;
   attach_axes(session, axes, instance);
+  check_densities(session, instance);
   if (!session.exhausted && !trial) report_missing_values(session, instance);
   instance.parameters = session.parameters;
   instance.points = group.points;

@@ -31,6 +31,7 @@ std::string_view place_name(CallableKind kind) {
 Site law_site(const Callable& callable, std::optional<NodeId> argument) {
   Site site{.where = place_name(callable.kind)};
   site.operators = false;
+  site.formula = callable.kind != CallableKind::schedule;
   site.table_holds = callable.kind == CallableKind::schedule || callable.kind == CallableKind::function;
   site.table_argument = argument;
   return site;
@@ -71,14 +72,20 @@ void bind_first(Callable& callable, NodeId node, Span span) {
   callable.bound.insert_or_assign(args.front().name.text, BoundValue{std::make_shared<const Value>(number_value(node)), span});
 }
 
-/// s w or f come first, without a default.
+/// s w or f come first.
+bool has_first_argument(const Callable& callable) {
+  const std::string_view wanted = first_argument(callable.kind);
+  const auto& args = arguments_of(callable);
+  return wanted.empty() || (!args.empty() && args.front().name.text == wanted);
+}
+
 bool check_first_argument(Session& session, const Callable& callable) {
   const std::string_view wanted = first_argument(callable.kind);
-  if (wanted.empty()) return true;
   const auto& args = arguments_of(callable);
-  if (!args.empty() && args.front().name.text == wanted) return true;
+  if (has_first_argument(callable)) return true;
   const Span span = args.empty() ? declaration_span(callable) : args.front().name.span;
-  session.report(span, diag::first_argument, describe(callable.kind), std::string(wanted));
+  auto tail = session.report(span, diag::first_argument, describe(callable.kind), std::string(wanted));
+  if (callable.kind == CallableKind::schedule) tail.remedy("`s` is the place along the anneal, 0 to 1; times stand in `pace`");
   return false;
 }
 
@@ -101,7 +108,7 @@ std::string_view first_argument(CallableKind kind) {
 }
 
 Value call_law(Session& session, const Callable& callable, Span span) {
-  if (!enter(session, callable, span)) return {};
+  if (!has_first_argument(callable) || !enter(session, callable, span)) return {};
   Scope scope{nullptr, callable.module, nullptr, {}};
   bool complete = complete_arguments(session, callable, scope, span);
   const auto expected = first_dimension(callable.kind);

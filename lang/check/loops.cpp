@@ -3,6 +3,7 @@
 #include <algorithm>
 
 #include "lang/check/expression.h"
+#include "lang/check/remedies.h"
 #include "lang/check/tables.h"
 
 namespace tarn {
@@ -42,7 +43,7 @@ void over_range(Session& session, const Scope& scope, const std::vector<ast::Loo
   const auto low = to_count(session, evaluate(session, scope, loop.first), span_of(session, scope, loop.first));
   const auto high = to_count(session, evaluate(session, scope, *loop.last), span_of(session, scope, *loop.last));
   if (loop.names.size() != 1) {
-    session.report(loop.names[1].span, diag::loop_names, std::size_t{1}, loop.names.size());
+    session.report(loop.names[1].span, diag::loop_names, counted(1, "name"), loop.names.size());
     return;
   }
   if (!low || !high) return;
@@ -65,7 +66,7 @@ std::optional<std::vector<std::size_t>> columns_of(Session& session, const ast::
   }
   if (result.size() == loop.names.size()) return result;
   if (loop.names.size() != rows.names.size()) {
-    session.report(cover(loop.names.front().span, loop.names.back().span), diag::loop_names, rows.names.size(), loop.names.size());
+    session.report(cover(loop.names.front().span, loop.names.back().span), diag::loop_names, counted(rows.names.size(), "name"), loop.names.size());
     return std::nullopt;
   }
   result.clear();
@@ -100,7 +101,7 @@ void over_values(Session& session, const Scope& scope, const std::vector<ast::Lo
     return;
   }
   if (loop.names.size() != 1) {
-    session.report(loop.names[1].span, diag::loop_names, std::size_t{1}, loop.names.size());
+    session.report(loop.names[1].span, diag::loop_names, counted(1, "name"), loop.names.size());
     return;
   }
   for (const Value& item : *list->items) {

@@ -1,35 +1,13 @@
-#include <algorithm>
 #include <array>
 
 #include "lang/check/expression.h"
+#include "lang/check/predefined.h"
 #include "lang/check/session.h"
-#include "lang/quantities/constants.h"
+#include "lang/support/near.h"
+#include "lang/syntax/habits.h"
 
 namespace tarn {
 namespace {
-
-constexpr std::array kPredefined = std::to_array<std::string_view>(
-    {"pi", "hbar", "kB", "e", "s", "t", "H", "exp", "ln", "log10", "sqrt", "sin", "cos", "tan", "asin", "acos",
-     "atan", "sinh", "cosh", "tanh", "abs", "floor", "mod", "min", "max", "clamp", "table", "list", "column",
-     "rows", "ground", "level", "state", "any", "target", "population", "mean", "E", "gap", "purity", "coherence",
-     "fidelity", "rate", "T1", "T2", "effective_temperature", "lowest", "highest", "final", "verdict", "within",
-     "marginal", "outside", "quantile", "fraction"});
-
-/// Levenshtein distance, cut off early where the lengths differ much.
-std::size_t distance(std::string_view a, std::string_view b) {
-  std::vector<std::size_t> row(b.size() + 1);
-  for (std::size_t j = 0; j <= b.size(); ++j) row[j] = j;
-  for (std::size_t i = 0; i < a.size(); ++i) {
-    std::size_t diagonal = row[0];
-    row[0] = i + 1;
-    for (std::size_t j = 0; j < b.size(); ++j) {
-      const std::size_t change = diagonal + (a[i] == b[j] ? 0 : 1);
-      diagonal = row[j + 1];
-      row[j + 1] = std::min({change, row[j] + 1, diagonal + 1});
-    }
-  }
-  return row[b.size()];
-}
 
 std::optional<Value> let_value(Session& session, const Scope& scope, Binding& binding, const ast::Name& name) {
   if (binding.busy) {
@@ -73,18 +51,10 @@ void collect_names(const Session& session, const Scope& scope, std::vector<std::
   const ProgramModule& module = session.program.modules[scope.module];
   for (const auto& [name, row] : module.items) known.push_back(name);
   for (const auto& [name, row] : module.uses) known.push_back(name);
-  for (const std::string_view word : kPredefined) known.emplace_back(word);
+  for (const std::string_view word : predefined_words()) known.emplace_back(word);
 }
 
 }  // namespace
-
-bool is_pauli_word(std::string_view name) {
-  return !name.empty() && name.find_first_not_of("IXYZ") == std::string_view::npos;
-}
-
-bool is_predefined(std::string_view name) {
-  return is_pauli_word(name) || std::find(kPredefined.begin(), kPredefined.end(), name) != kPredefined.end();
-}
 
 const ast::Name* item_name(const ast::Item& item) {
   if (const auto* parameter = std::get_if<ast::Parameter>(&item)) return &parameter->arg.name;
@@ -101,8 +71,7 @@ const ast::Name* item_name(const ast::Item& item) {
 
 bool check_declarable(Session& session, const ast::Name& name) {
   if (!is_predefined(name.text)) return true;
-  auto tail = session.report(name.span, diag::predefined_name, name.text);
-  if (is_pauli_word(name.text)) tail.remedy("words of I X Y Z are operators");
+  session.report(name.span, diag::predefined_name, name.text).remedy(predefined_remedy(name.text));
   return false;
 }
 
@@ -154,28 +123,26 @@ std::optional<std::uint32_t> find_module(const Session& session, std::uint32_t m
   return found == uses.end() ? std::nullopt : std::optional(found->second);
 }
 
-std::string nearest(std::string_view word, const std::vector<std::string>& known) {
-  const std::size_t limit = std::max<std::size_t>(1, word.size() / 3);
-  std::size_t best = limit + 1;
-  std::string found;
-  for (const std::string& candidate : known) {
-    if (candidate.size() > word.size() + limit || word.size() > candidate.size() + limit) continue;
-    const std::size_t d = distance(word, candidate);
-    if (d < best) {
-      best = d;
-      found = candidate;
-    }
+namespace {
+
+/// `spectra.ohmic` for `ohmic`; empty if no file in use declares the name.
+std::string name_in_used_file(const Session& session, std::uint32_t module, const std::string& name) {
+  for (const auto& [file, row] : session.program.modules[module].uses) {
+    if (session.program.modules[row].items.contains(name)) return file + "." + name;
   }
-  return found;
+  return {};
 }
+
+}  // namespace
 
 void report_unknown_name(Session& session, const Scope& scope, const ast::Name& name) {
   constexpr std::size_t kMostCompared = 1000;
   std::vector<std::string> known;
   if (session.program.modules[scope.module].items.size() < kMostCompared) collect_names(session, scope, known);
-  const std::string near = nearest(name.text, known);
   auto tail = session.report(name.span, diag::unknown_name, name.text);
-  if (!near.empty()) tail.remedy(fmt::format("did you mean `{}`?", near));
+  const std::string inside = name_in_used_file(session, scope.module, name.text);
+  const std::string near = inside.empty() ? std::string(near_word(name.text, known)) : inside;
+  tail.remedy(near.empty() ? std::string(value_for(name.text)) : fmt::format("did you mean `{}`?", near));
 }
 
 }  // namespace tarn

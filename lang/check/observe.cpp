@@ -3,6 +3,7 @@
 #include "lang/check/experiment.h"
 #include "lang/check/expression.h"
 #include "lang/check/samples.h"
+#include "lang/check/timeline.h"
 
 namespace tarn {
 namespace {
@@ -99,10 +100,17 @@ class ObserveReader {
       return;
     }
     if (!check_name(observe)) return;
+    if (moment && !readings_.pace_broken && runs(instance_)) check_moment(session_, observe, moment_span(observe), *moment, instance_);
     if (!moment || !read_named(observe, *moment)) readings_.broken.emplace(observe.name.text, observe.name.span);
   }
 
  private:
+  /// `s = 0.3`
+  Span moment_span(const ast::Observe& observe) const {
+    const auto* point = std::get_if<ast::AtPoint>(&observe.when);
+    return point == nullptr ? observe.span : cover(point->variable.span, span_of(session_, scope_, point->value));
+  }
+
   bool read_named(const ast::Observe& observe, const MomentI& moment) {
     readings_.reduces = false;
     const std::size_t before = instance_.readings.size();
@@ -162,9 +170,15 @@ class ObserveReader {
       inner.names.insert_or_assign(name, Binding{number_value(earlier.value), nullptr, false, earlier.span});
     }
     declare_broken(readings_, inner);
-    if (observe.value) return evaluate_number(session_, inner, *observe.value);
+    if (observe.value) return to_observed(evaluate(session_, inner, *observe.value), span_of(session_, inner, *observe.value));
     const ast::Path path{observe.name.span, {{observe.name, std::nullopt}}, false, {}};
     return to_number(session_, evaluate_reading(session_, inner, path), observe.name.span);
+  }
+
+  std::optional<NodeId> to_observed(const Value& value, Span span) {
+    if (!value.get<OperatorValue>()) return to_number(session_, value, span);
+    session_.report(span, diag::wrong_kind, "a number", describe(value)).remedy(fmt::format("`mean({})`", excerpt(session_, span)));
+    return std::nullopt;
   }
 
   Session& session_;
@@ -172,6 +186,37 @@ class ObserveReader {
   Readings& readings_;
   Instance& instance_;
 };
+
+/// True if the observable has a value at each s of a scan or each t of a trace.
+bool has_many(const Session& session, const Instance& instance, const ObservableI& observable) {
+  if (std::holds_alternative<AlongI>(observable.moment)) return true;
+  if (instance.scan.empty() || !observable.shown) return false;
+  const Dependence reads = dependence(session.graph, observable.value);
+  if (reads.s || !reads.readings) return true;
+  const Sampler needed(session.graph, {observable.value});
+  return std::any_of(needed.rows().begin(), needed.rows().end(), [&](std::uint32_t row) {
+    const Node& node = session.graph.nodes[row];
+    return node.op == NodeOp::reading && !std::holds_alternative<ReduceI>(instance.readings[node.index]);
+  });
+}
+
+bool reads_many(const Session& session, const Instance& instance, NodeId claim) {
+  const Sampler needed(session.graph, {claim});
+  return std::any_of(needed.rows().begin(), needed.rows().end(), [&](std::uint32_t row) {
+    const Node& node = session.graph.nodes[row];
+    return node.op == NodeOp::observable && has_many(session, instance, instance.observables[node.index]);
+  });
+}
+
+/// `lowest(gap) > 1 MHz where s > 0.5` would still take the lowest of all.
+void check_condition(Session& session, const Scope& scope, const ast::Expect& expect, NodeId holds, NodeId where,
+                     const Instance& instance) {
+  const Dependence condition = dependence(session.graph, where);
+  const bool picks = condition.s || condition.t || reads_many(session, instance, where);
+  if (!picks || reads_many(session, instance, holds)) return;
+  session.report(span_of(session, scope, *expect.where), diag::where_of_one_value, excerpt(session, span_of(session, scope, expect.claim)))
+      .remedy("claim each point, as in `expect gap > 1 MHz where s > 0.5`");
+}
 
 }  // namespace
 
@@ -204,6 +249,7 @@ void elaborate_claims(Session& session, Scope& scope, const Statements& statemen
     const auto holds = evaluate_truth(session, inner, expect->claim);
     const auto where = expect->where ? evaluate_truth(session, inner, *expect->where) : std::nullopt;
     if (!holds || (expect->where && !where)) continue;
+    if (where) check_condition(session, inner, *expect, *holds, *where, instance);
     if (!dependence(session.graph, *holds).observables) {
       session.report(span_of(session, inner, expect->claim), diag::claim_without_observable);
     }

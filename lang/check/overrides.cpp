@@ -5,20 +5,36 @@
 #include "lang/check/check.h"
 #include "lang/check/experiment.h"
 #include "lang/check/expression.h"
+#include "lang/check/remedies.h"
 #include "lang/syntax/parse.h"
 
 namespace tarn {
 namespace {
 
-/// The text of one `--set` as a module of its own: `let value = TEXT`.
+/// The option as it was typed, as a text of its own.
+struct Setting {
+  const SourceFile& file;
+  Span name, value;
+};
+
+Setting show_setting(Program& program, const std::string& name, const std::string& text) {
+  const SourceFile& file = program.loaded->sources.add("command line", fmt::format("--set {}={}", name, text));
+  const auto from = static_cast<std::uint32_t>(std::string_view("--set ").size());
+  const auto to = from + static_cast<std::uint32_t>(name.size());
+  return {file, {file.id, from, to}, {file.id, to + 1, static_cast<std::uint32_t>(file.text.size())}};
+}
+
+/// The value of a setting as a module: read as `let v = TEXT`, with the same places as the option.
 std::optional<std::uint32_t> add_setting(Program& program, const std::string& name, const std::string& text, Diagnostics& diagnostics) {
-  const SourceFile& file = program.loaded->sources.add(fmt::format("--set {}", name), fmt::format("let value = {}", text));
+  const Setting setting = show_setting(program, name, text);
   const std::size_t errors = diagnostics.error_count();
+  SourceFile read = setting.file;
+  read.text = "let v" + std::string(setting.value.begin - 6, ' ') + "=" + text;
   Module module;
-  module.ast = parse(file, diagnostics);
+  module.ast = parse(read, diagnostics);
   if (diagnostics.error_count() != errors) return std::nullopt;
   if (module.ast.items.size() != 1 || !std::holds_alternative<ast::Let>(module.ast.items.front())) {
-    diagnostics.report({file.id, 12, static_cast<std::uint32_t>(file.text.size())}, diag::setting_form, name);
+    diagnostics.report(setting.value, diag::setting_form, name);
     return std::nullopt;
   }
   program.loaded->modules.push_back(std::move(module));
@@ -26,15 +42,13 @@ std::optional<std::uint32_t> add_setting(Program& program, const std::string& na
   return static_cast<std::uint32_t>(program.modules.size() - 1);
 }
 
-const ProgramParameter* find_parameter(const Program& program, const std::string& name, Diagnostics& diagnostics) {
+const ProgramParameter* find_parameter(Program& program, const std::string& name, const std::string& text, Diagnostics& diagnostics) {
   std::vector<std::string> known;
   for (const ProgramParameter& parameter : program.parameters) {
     if (parameter.name == name) return &parameter;
     known.push_back(parameter.name);
   }
-  const std::string near = nearest(name, known);
-  auto tail = diagnostics.report({program.ast(0).file, 0, 0}, diag::unknown_parameter, name);
-  if (!near.empty()) tail.remedy(fmt::format("did you mean `{}`?", near));
+  diagnostics.report(show_setting(program, name, text).name, diag::unknown_parameter, name).remedy(offer(name, known, "parameters:"));
   return nullptr;
 }
 
@@ -69,7 +83,7 @@ std::optional<double> read_setting(Program& program, const ProgramParameter& par
 Overrides read_overrides(Program& program, const std::vector<std::pair<std::string, std::string>>& settings, Diagnostics& diagnostics) {
   Overrides result;
   for (const auto& [name, text] : settings) {
-    const ProgramParameter* found = find_parameter(program, name, diagnostics);
+    const ProgramParameter* found = find_parameter(program, name, text, diagnostics);
     if (found == nullptr) continue;
     const ProgramParameter parameter = *found;
     const auto value = read_setting(program, parameter, text, diagnostics);

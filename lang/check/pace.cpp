@@ -1,17 +1,47 @@
 #include <algorithm>
+#include <array>
 #include <cmath>
 #include <numeric>
+#include <span>
 
 #include "lang/check/experiment.h"
 #include "lang/check/expression.h"
 #include "lang/check/samples.h"
 #include "lang/check/tables.h"
+#include "lang/support/near.h"
 
 namespace tarn {
 namespace {
 
 constexpr std::string_view kBegins = "`begin` available: ground, thermal, thermal(T), plus, state(\"01+-\"), populations(...)";
 constexpr std::string_view kEquations = "equations available: schroedinger, lindblad, davies";
+constexpr auto kBeginWords = std::to_array<std::string_view>({"ground", "thermal", "plus", "state", "populations"});
+constexpr auto kEquationWords = std::to_array<std::string_view>(
+    {"schroedinger", "lindblad", "davies", "redfield", "coarse_grained", "universal", "hybrid", "blip", "hierarchy"});
+
+bool is_among(std::string_view word, std::span<const std::string_view> words) {
+  return std::find(words.begin(), words.end(), word) != words.end();
+}
+
+/// "did you mean `near`?" and what there is, for a word that is none of `words`.
+std::string near_and(std::string_view word, std::span<const std::string_view> words, std::string_view available) {
+  const std::string_view near = near_word(word, words);
+  if (near.empty()) return std::string(available);
+  const bool there = available.find(near) != std::string_view::npos;
+  return fmt::format("did you mean `{}`?{}{}", near, there ? " " : " it is not available yet; ", available);
+}
+
+void report_begin(Session& session, std::string_view word, Span span) {
+  const std::string text = excerpt(session, span);
+  if (word == "steady") {
+    session.report(span, diag::not_available, fmt::format("`begin {}`", text), std::string(kBegins));
+    return;
+  }
+  auto tail = session.report(span, diag::unknown_begin, text);
+  if (word == "state") tail.remedy("`begin state(\"01\")`, a letter for each qubit");
+  else if (text.starts_with('"')) tail.remedy(fmt::format("`begin state({})`", text));
+  else tail.remedy(near_and(word, kBeginWords, kBegins));
+}
 
 std::optional<BeginI> begin_populations(Session& session, const Scope& scope, const ast::Path& path, std::size_t qubits) {
   BeginPopulationsI begin;
@@ -39,7 +69,7 @@ std::optional<BeginI> begin_of(Session& session, const Scope& scope, const ast::
     const auto temperature = evaluate_quantity(session, scope, path.given.front().value, kTemperature);
     if (!temperature) return std::nullopt;
     const auto value = value_at_defaults(session, *temperature);
-    if (value && !(*value > 0)) {
+    if (value && !(*value >= 0)) {
       session.report(path.given.front().span, diag::not_positive, "a temperature", format_quantity(*value, kTemperature));
     }
     return BeginThermalI{*temperature};
@@ -49,7 +79,7 @@ std::optional<BeginI> begin_of(Session& session, const Scope& scope, const ast::
     return letters ? std::optional<BeginI>(BeginStateI{*letters}) : std::nullopt;
   }
   if (word == "populations" && path.call) return begin_populations(session, scope, path, qubits);
-  session.report(path.span, diag::not_available, fmt::format("`begin {}`", excerpt(session, path.span)), std::string(kBegins));
+  report_begin(session, word, path.span);
   return std::nullopt;
 }
 
@@ -133,7 +163,7 @@ void elaborate_begin(Session& session, const Scope& scope, const ast::Begin& beg
   const Span span = span_of(session, scope, begin.state);
   const bool plain = use != nullptr && use->held.empty() && !use->under && use->path.steps.size() == 1;
   if (!plain) {
-    session.report(span, diag::not_available, fmt::format("`begin {}`", excerpt(session, span)), std::string(kBegins));
+    report_begin(session, "", span);
     return;
   }
   instance.begin = begin_of(session, scope, use->path, instance.qubits.size());
@@ -152,15 +182,20 @@ void elaborate_equation(Session& session, const Scope& scope, const ast::Equatio
   const ast::Path& path = equation.choices.front().equation;
   const std::string& word = path.steps.front().name.text;
   const bool plain = path.steps.size() == 1 && !path.steps.front().index;
-  if (plain && word == "schroedinger" && path.given.empty()) {
-    instance.equation = EquationKind::schroedinger;
-  } else if (plain && word == "lindblad" && path.given.empty()) {
-    instance.equation = EquationKind::lindblad;
-  } else if (plain && word == "davies") {
+  const bool bare = word == "schroedinger" || word == "lindblad";
+  if (!plain || !is_among(word, kEquationWords)) {
+    session.report(path.span, diag::unknown_equation, excerpt(session, path.span)).remedy(near_and(word, kEquationWords, kEquations));
+  } else if (word == "davies") {
     instance.equation = EquationKind::davies;
     read_davies_options(session, scope, path, instance);
-  } else {
+  } else if (!bare) {
     session.report(path.span, diag::not_available, fmt::format("`{}`", excerpt(session, path.span)), std::string(kEquations));
+  } else if (!path.given.empty()) {
+    session.report(path.given.front().span, diag::unknown_argument, word,
+                   path.given.front().name ? path.given.front().name->text : excerpt(session, path.given.front().span))
+        .remedy(fmt::format("`equation {}` takes none", word));
+  } else {
+    instance.equation = word == "lindblad" ? EquationKind::lindblad : EquationKind::schroedinger;
   }
 }
 

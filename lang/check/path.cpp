@@ -7,7 +7,9 @@
 #include "lang/check/chip.h"
 #include "lang/check/expression.h"
 #include "lang/check/laws.h"
+#include "lang/check/predefined.h"
 #include "lang/check/readings.h"
+#include "lang/check/remedies.h"
 #include "lang/check/tables.h"
 #include "lang/program/operators.h"
 #include "lang/quantities/constants.h"
@@ -46,8 +48,10 @@ std::optional<Value> named_value(Session& session, const Scope& scope, const Res
   if (!at.module) return look_up(session, scope, name);
   auto value = look_up_in_file(session, *at.module, name);
   if (!value) {
-    const Scope file{nullptr, *at.module, nullptr, {}};
-    report_unknown_name(session, file, name);
+    std::vector<std::string> known;
+    const ProgramModule& file = session.program.modules[*at.module];
+    for (const auto& [item, row] : file.items) known.push_back(item);
+    session.report(name.span, diag::unknown_name, name.text).remedy(offer(name.text, known, fmt::format("`{}` has", file.name)));
     return Value{};
   }
   return value;
@@ -71,49 +75,6 @@ std::optional<Value> predefined_value(Session& session, const Scope& scope, cons
   return node ? number_value(*node) : not_here(session, scope, name);
 }
 
-/// `2*pi*f*t`: an angle that has its 2 pi already.
-void collect_factors(const Ast& ast, ast::ExprId id, std::vector<ast::ExprId>& factors) {
-  while (true) {
-    if (const auto* unary = std::get_if<ast::Unary>(&ast.expr(id).node)) {
-      id = unary->operand;
-      continue;
-    }
-    const auto* binary = std::get_if<ast::Binary>(&ast.expr(id).node);
-    const bool multiplies = binary != nullptr && (binary->op == ast::BinaryOp::multiply || binary->op == ast::BinaryOp::divide);
-    if (!multiplies) break;
-    collect_factors(ast, binary->right, factors);
-    id = binary->left;
-  }
-  factors.push_back(id);
-}
-
-void warn_counted_twice(Session& session, const Scope& scope, ast::ExprId argument) {
-  const Ast& ast = session.ast(scope);
-  if (const auto* sum = std::get_if<ast::Binary>(&ast.expr(argument).node)) {
-    if (sum->op == ast::BinaryOp::add || sum->op == ast::BinaryOp::subtract) {
-      warn_counted_twice(session, scope, sum->left);
-      warn_counted_twice(session, scope, sum->right);
-      return;
-    }
-  }
-  std::vector<ast::ExprId> factors;
-  collect_factors(ast, argument, factors);
-  bool two = false, pi = false, frequency = false;
-  for (const ast::ExprId factor : factors) {
-    const ast::ExprNode& node = ast.expr(factor).node;
-    if (const auto* number = std::get_if<ast::Number>(&node); number != nullptr && !number->unit) two = two || number->value == 2;
-    if (const auto* use = std::get_if<ast::Use>(&node)) {
-      pi = pi || (use->path.steps.size() == 1 && use->path.steps[0].name.text == "pi");
-    }
-    const Value value = evaluate(session, scope, factor);
-    const auto* quantity = value.get<NumberValue>();
-    frequency = frequency || (quantity != nullptr && session.graph[quantity->node].dimension == kFrequency);
-  }
-  if (!two || !pi || !frequency) return;
-  const Span span = ast.expr(argument).span;
-  session.report(span, diag::counted_twice, excerpt(session, span)).remedy("leave out `2*pi`: a frequency counts cycles as 2 pi rad already");
-}
-
 Value evaluate_function(Session& session, const Scope& scope, const ast::Path& path) {
   const std::string& name = path.steps.front().name.text;
   std::vector<Operand> arguments;
@@ -124,8 +85,6 @@ Value evaluate_function(Session& session, const Scope& scope, const ast::Path& p
     }
     arguments.push_back({evaluate(session, scope, given.value), span_of(session, scope, given.value)});
   }
-  const bool periodic = name == "sin" || name == "cos" || name == "tan";
-  if (periodic && arguments.size() == 1) warn_counted_twice(session, scope, path.given.front().value);
   return call_function(session, name, arguments, path.span);
 }
 
@@ -140,7 +99,8 @@ Value indexed(Session& session, const Scope& scope, const ast::Step& step, const
   const auto size = static_cast<std::int64_t>(list->items->size());
   if (!index->value) return opaque_item(session, *list, step.name.span);
   if (*index->value < 0 || *index->value >= size) {
-    session.report(span_of(session, scope, *step.index), diag::index_out_of_range, step.name.text, *index->value, size);
+    session.report(span_of(session, scope, *step.index), diag::index_out_of_range, step.name.text, *index->value, size)
+        .remedy(size > 0 ? fmt::format("its indices are {}", index_range(size)) : std::string());
     return {};
   }
   return (*list->items)[static_cast<std::size_t>(*index->value)];
@@ -169,6 +129,14 @@ Value settled(Session& session, const Scope& scope, const ast::Path& path, Value
   return spectrum_at(session, *callable, *scope.site->spectrum_argument, path.span);
 }
 
+void report_wrong_use(Session& session, const ast::Path& path) {
+  const std::string& name = path.steps.front().name.text;
+  auto tail = session.report(path.span, diag::wrong_use, name);
+  if (is_state_set_word(name)) tail.remedy(fmt::format("to observe it write `population({})`", excerpt(session, path.span)));
+  if (is_function(name)) tail.remedy(fmt::format("it takes arguments: `{}(...)`", name));
+  if (name == "H") tail.remedy("`mean(H)` is its expectation");
+}
+
 /// A word that the file does not declare.
 Value evaluate_word(Session& session, const Scope& scope, const ast::Path& path) {
   const ast::Step& step = path.steps.front();
@@ -188,7 +156,7 @@ Value evaluate_word(Session& session, const Scope& scope, const ast::Path& path)
     return {};
   }
   if (is_predefined(name)) {
-    session.report(path.span, diag::wrong_use, name);
+    report_wrong_use(session, path);
     return {};
   }
   if (!session.diagnostics.full()) report_unknown_name(session, scope, step.name);
@@ -212,12 +180,20 @@ std::optional<std::vector<std::uint32_t>> letter_qubits(Session& session, const 
   }
   if (site->own_qubits) {
     if (placed) {
-      session.report(span, diag::places_in_kind, excerpt(session, span));
+      const bool pair = site->own_qubits->size() == 2;
+      session.report(span, diag::places_in_kind, excerpt(session, span))
+          .remedy(pair ? "in a coupler the first letter is the left end, the second the right: `ZZ`" : "write the letter alone");
       return std::nullopt;
     }
     const std::size_t own = site->own_qubits->size();
     if (own == count) return site->own_qubits;
-    session.report(span, diag::operator_size, excerpt(session, span), count, own);
+    const std::string written = excerpt(session, span);
+    auto tail = session.report(span, diag::operator_size, written, counted(count, "qubit"), own);
+    if (own == 1) tail.remedy("what joins two qubits stands in a `coupler`");
+    if (own == 2 && count == 1 && !is_pauli_word(written)) tail.remedy("in a coupler an operator has a letter for each end: `|01><10|`");
+    if (own == 2 && count == 1 && is_pauli_word(written)) {
+      tail.remedy(fmt::format("in a coupler `{0}{0}` acts on both ends, `{0}I` on the left, `I{0}` on the right", written));
+    }
     return std::nullopt;
   }
   if (!placed) {
@@ -225,7 +201,8 @@ std::optional<std::vector<std::uint32_t>> letter_qubits(Session& session, const 
     return std::nullopt;
   }
   if (places.size() != count) {
-    session.report(span, diag::operator_size, excerpt(session, span), count, places.size());
+    session.report(span, diag::operator_size, excerpt(session, span), counted(count, "qubit"), places.size())
+        .remedy("a letter for each place: `ZZ(q[0], q[1])`");
     return std::nullopt;
   }
   std::vector<std::uint32_t> qubits;
@@ -239,6 +216,30 @@ std::optional<std::vector<std::uint32_t>> letter_qubits(Session& session, const 
     qubits.push_back(*qubit);
   }
   return qubits;
+}
+
+std::optional<CallableKind> kind_of(const ast::Item& item) {
+  if (const auto* kind = std::get_if<ast::Kind>(&item)) {
+    return kind->element == ast::ElementKind::qubit ? CallableKind::qubit : CallableKind::coupler;
+  }
+  if (std::holds_alternative<ast::Bath>(item)) return CallableKind::bath;
+  if (std::holds_alternative<ast::Chip>(item)) return CallableKind::chip;
+  return std::nullopt;
+}
+
+/// True for a part that is not declared, which is reported with those that are.
+bool report_undeclared(Session& session, const Scope& scope, const ast::Name& name, std::initializer_list<CallableKind> kinds) {
+  if (is_predefined(name.text) || look_up(session, scope, name)) return false;
+  std::vector<std::string> known;
+  for (const ast::Item& item : session.ast(scope).items) {
+    const auto kind = kind_of(item);
+    if (kind && std::find(kinds.begin(), kinds.end(), *kind) != kinds.end()) known.push_back(item_name(item)->text);
+  }
+  for (const auto& [file, row] : session.program.modules[scope.module].uses) {
+    if (session.program.modules[row].items.contains(name.text)) return false;
+  }
+  session.report(name.span, diag::unknown_name, name.text).remedy(offer(name.text, known, "there is"));
+  return true;
 }
 
 }  // namespace
@@ -262,6 +263,7 @@ Value evaluate_path(Session& session, const Scope& scope, const ast::Path& path)
 
 std::optional<Callable> resolve_callable(Session& session, const Scope& scope, const ast::Path& path,
                                          std::initializer_list<CallableKind> kinds, std::string_view expected) {
+  if (path.steps.size() == 1 && report_undeclared(session, scope, path.steps.front().name, kinds)) return std::nullopt;
   const Value value = evaluate_path(session, scope, path);
   if (value.unknown()) return std::nullopt;
   const auto* callable = value.get<Callable>();
@@ -273,6 +275,10 @@ std::optional<Callable> resolve_callable(Session& session, const Scope& scope, c
 
 Value evaluate_letters(Session& session, const Scope& scope, const ast::Path& path) {
   const std::string& word = path.steps.front().name.text;
+  if (path.steps.front().index) {
+    session.report(path.span, diag::places_needed, excerpt(session, path.span)).remedy(fmt::format("`{}(q[0])` names the place", word));
+    return {};
+  }
   std::vector<const ast::Path*> places;
   for (const ast::Given& given : path.given) {
     const auto* use = std::get_if<ast::Use>(&session.ast(scope).expr(given.value).node);

@@ -4,7 +4,9 @@
 #include <array>
 
 #include "lang/check/expression.h"
+#include "lang/check/remedies.h"
 #include "lang/program/operators.h"
+#include "lang/support/near.h"
 
 namespace tarn {
 namespace {
@@ -18,6 +20,30 @@ constexpr std::array kAvailable = std::to_array<std::string_view>(
 constexpr std::array kLater = std::to_array<std::string_view>(
     {"rate", "T1", "T2", "effective_temperature", "verdict", "within", "marginal", "outside", "quantile", "fraction"});
 
+constexpr auto kSetWords = std::to_array<std::string_view>({"ground", "level", "state", "any", "target"});
+
+/// `population("11")`, `population(0)`, `lowest(2*gap)`.
+void report_no_name(Session& session, const Scope& scope, const ast::Path& path) {
+  const std::string& word = path.steps.front().name.text;
+  const Span span = path.given.front().span;
+  const std::string text = excerpt(session, span);
+  const ast::ExprNode& node = session.ast(scope).expr(path.given.front().value).node;
+  const bool reduces = word != "population" && word != "fidelity";
+  const std::string_view expected = reduces ? "the name of an observable" : word == "population" ? "a set of states" : "a state";
+  auto tail = session.report(span, diag::wrong_kind, expected, text);
+  if (reduces) tail.remedy(fmt::format("`observe` it under a name and use the name: `{}(NAME)`", word));
+  else if (std::holds_alternative<ast::Text>(node)) tail.remedy(fmt::format("`{}(state({}))`", word, text));
+  else if (std::holds_alternative<ast::Number>(node) && word == "population") tail.remedy(fmt::format("`population(level({}))`", text));
+}
+
+/// What there is for a word that is not yet available.
+std::string instead_of(std::string_view word) {
+  if (word == "T1" || word == "T2" || word == "rate" || word == "effective_temperature") {
+    return "a trace during `hold`, as in `observe p = population(level(1)) along 201`";
+  }
+  return std::string(kObservables);
+}
+
 /// The one argument of a reading as it is written.
 const ast::Path* only_path(Session& session, const Scope& scope, const ast::Path& path) {
   if (!path.call || path.given.size() != 1 || path.given.front().name) {
@@ -26,7 +52,7 @@ const ast::Path* only_path(Session& session, const Scope& scope, const ast::Path
   }
   const auto* use = std::get_if<ast::Use>(&session.ast(scope).expr(path.given.front().value).node);
   if (use == nullptr) {
-    session.report(path.given.front().span, diag::wrong_kind, "a name", excerpt(session, path.given.front().span));
+    report_no_name(session, scope, path);
     return nullptr;
   }
   if (!use->held.empty()) {
@@ -49,7 +75,8 @@ std::optional<std::uint32_t> level_number(Session& session, const Scope& scope, 
   const std::size_t qubits = scope.site->readings->unrolled->qubits.size();
   const double levels = qubits < 63 ? static_cast<double>(std::uint64_t{1} << qubits) : 9e18;
   if (*level >= 0 && static_cast<double>(*level) < levels && *level < INT32_MAX) return static_cast<std::uint32_t>(*level);
-  session.report(span_of(session, scope, id), diag::unknown_level, *level, levels);
+  session.report(span_of(session, scope, id), diag::unknown_level, *level, levels)
+      .remedy(qubits < 63 ? fmt::format("levels are {}", index_range(std::int64_t{1} << qubits)) : std::string());
   return std::nullopt;
 }
 
@@ -92,7 +119,9 @@ std::optional<StateSetI> state_set(Session& session, const Scope& scope, const a
     set.letters = *letters;
     return set;
   }
-  session.report(path.span, diag::unknown_state_set, excerpt(session, path.span)).remedy(std::string(kSets));
+  const std::string_view near = near_word(word, kSetWords);
+  session.report(path.span, diag::unknown_state_set, excerpt(session, path.span))
+      .remedy(near.empty() ? std::string(kSets) : fmt::format("did you mean `{}`?", near));
   return std::nullopt;
 }
 
@@ -133,7 +162,7 @@ Value read_mean(Session& session, const Scope& scope, const ast::Path& path) {
 Value read_levels(Session& session, const Scope& scope, const ast::Path& path, const std::string& word) {
   const std::size_t wanted = word == "coherence" ? 2 : word == "E" ? 1 : 0;
   if (path.given.size() != wanted) {
-    session.report(path.span, diag::argument_count, word, fmt::format("{} arguments", wanted), path.given.size());
+    session.report(path.span, diag::argument_count, word, counted(wanted, "argument"), path.given.size());
     return {};
   }
   std::vector<std::uint32_t> levels;
@@ -203,7 +232,7 @@ bool is_reading_word(std::string_view name) {
 Value evaluate_reading(Session& session, const Scope& scope, const ast::Path& path) {
   const std::string& word = path.steps.front().name.text;
   if (std::find(kLater.begin(), kLater.end(), word) != kLater.end()) {
-    session.report(path.span, diag::not_available, fmt::format("`{}`", word), std::string(kObservables));
+    session.report(path.span, diag::not_available, fmt::format("`{}`", word), instead_of(word));
     return {};
   }
   if (word == "lowest" || word == "highest" || word == "final") return read_reduction(session, scope, path, word);
@@ -232,7 +261,7 @@ std::optional<std::string> state_letters(Session& session, const Scope& scope, c
     return std::nullopt;
   }
   if (text->size() == qubits) return text;
-  session.report(span, diag::state_length, *text, text->size(), qubits);
+  session.report(span, diag::state_length, *text, counted(text->size(), "letter"), counted(qubits, "qubit"));
   return std::nullopt;
 }
 

@@ -47,6 +47,7 @@ struct Site {
   const ChipFrame* chip = nullptr;       ///< Where operators name places.
   Readings* readings = nullptr;          ///< In an experiment: what is measured.
   bool operators = true;                 ///< False in schedules.
+  bool formula = false;                  ///< In spectra and functions: a factor of 2 pi may be meant.
 };
 
 /// A scope. The outermost is the file's, which is `module` itself.
@@ -81,6 +82,7 @@ struct Session {
   };
   std::map<std::string, TableRow> tables{};        ///< Tables of the graph by what was read and how.
   std::vector<std::string> remarks{};
+  std::set<std::pair<std::uint32_t, std::uint32_t>> turns{};  ///< Where a pi too many was reported: file and byte.
   std::vector<Frame> frames{};
   std::vector<const ast::Item*> active{};  ///< Laws being called, innermost last.
   std::uint64_t steps = 0;
@@ -124,10 +126,6 @@ class FrameGuard {
 /// `text` of a span for a message: one line, cut after 40 characters.
 std::string excerpt(const Session& session, Span span);
 
-/// Predefined words no declaration may take: pi, s, exp, gap, any, words of I X Y Z ...
-bool is_predefined(std::string_view name);
-bool is_pauli_word(std::string_view name);
-
 /// Binds a name in a scope; reports one that is predefined or already there.
 void declare(Session& session, Scope& scope, const ast::Name& name, Value value);
 void declare_let(Session& session, Scope& scope, const ast::Let& let);
@@ -148,8 +146,6 @@ NodeId opaque_number(Session& session, const std::string& name, Dimension dimens
 
 /// Reports an unknown name with the nearest known one.
 void report_unknown_name(Session& session, const Scope& scope, const ast::Name& name);
-/// The nearest of some words, as a remedy; empty if none is near.
-std::string nearest(std::string_view word, const std::vector<std::string>& known);
 
 /// Name of a declaration; empty for `use`.
 const ast::Name* item_name(const ast::Item& item);

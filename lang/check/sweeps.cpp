@@ -4,6 +4,7 @@
 #include "lang/check/arguments.h"
 #include "lang/check/experiment.h"
 #include "lang/check/expression.h"
+#include "lang/check/remedies.h"
 
 namespace tarn {
 namespace {
@@ -27,9 +28,7 @@ std::optional<std::uint32_t> find_parameter(Session& session, const Scope& scope
   for (const auto& [key, row] : rows) {
     if (key.first == module) known.push_back(key.second);
   }
-  const std::string near = nearest(name.text, known);
-  auto tail = session.report(path.span, diag::unknown_parameter, excerpt(session, path.span));
-  if (!near.empty()) tail.remedy(fmt::format("did you mean `{}`?", near));
+  session.report(path.span, diag::unknown_parameter, excerpt(session, path.span)).remedy(offer(name.text, known, "only parameters are swept:"));
   return std::nullopt;
 }
 

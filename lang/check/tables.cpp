@@ -4,6 +4,7 @@
 #include <cmath>
 
 #include "lang/check/expression.h"
+#include "lang/check/remedies.h"
 #include "lang/program/table.h"
 
 namespace tarn {
@@ -71,7 +72,7 @@ std::optional<Column> find_column(Session& session, const Table& table, const st
 
 bool table_sound(Session& session, const TableData& data, const std::vector<std::uint32_t>& lines, Span span) {
   if (data.x.size() < 2) {
-    session.report(span, diag::table_short, data.name, data.x.size());
+    session.report(span, diag::table_short, data.name, counted(data.x.size(), "point"));
     return false;
   }
   for (std::size_t k = 0; k < data.x.size(); ++k) {

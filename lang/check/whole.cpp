@@ -15,6 +15,15 @@ bool moves(const Instance& instance) {
                      [](const PacePieceI& piece) { return !std::holds_alternative<PaceStartI>(piece); });
 }
 
+/// Statements about a state that no observable reads, or that does not change.
+void check_use(Session& session, const Statements& statements, const Readings& readings, const Instance& instance) {
+  constexpr std::string_view kUnread = "no observable reads a state";
+  const bool unread = !readings.reads_state;
+  if (unread && statements.begin != nullptr) session.report(statements.begin->span, diag::unused_statement, "begin", kUnread);
+  if (statements.equation == nullptr || (!unread && moves(instance))) return;
+  session.report(statements.equation->span, diag::unused_statement, "equation", unread ? kUnread : "there is no pace, so nothing moves");
+}
+
 void check_statements(Session& session, const Statements& statements, const Readings& readings, const Instance& instance) {
   const Span span = instance.span;
   const bool scan = statements.scan != nullptr;
@@ -26,6 +35,7 @@ void check_statements(Session& session, const Statements& statements, const Read
   const bool runs = moves(instance) && readings.reads_state && !scan;
   if (runs && statements.equation == nullptr) session.report(span, diag::statement_missing, "equation");
   if (statements.observes.empty()) session.report(span, diag::nothing_observed);
+  else if (!scan && readings.broken.empty()) check_use(session, statements, readings, instance);
 }
 
 /// `begin thermal` takes the temperature that all baths share.
@@ -145,6 +155,20 @@ void check_jumps(Session& session, const Instance& instance) {
   }
 }
 
+/// Slopes of J at w = 0 decide gamma(0): if they grow without bound, no rate at small w is finite.
+bool diverges(const Session& session, NodeId density) {
+  constexpr double kNear = 1e-15;  // [rad/ns]
+  Sampler sampler(session.graph, {density});
+  Bindings bindings;
+  for (const ParameterUse& use : session.parameters) bindings.parameters.push_back(use.value);
+  const auto slope = [&](double w) {
+    bindings.w = w;
+    sampler.run(bindings);
+    return sampler.value(density) / w;
+  };
+  return slope(kNear / 16) > slope(kNear) * 1.001;
+}
+
 void check_levels(Session& session, const Statements& statements, const Instance& instance) {
   if (statements.levels == nullptr || instance.equation == EquationKind::davies) return;
   session.report(statements.levels->span, diag::not_available, "`levels` without levels to keep",
@@ -211,6 +235,25 @@ void check_whole(Session& session, const Statements& statements, const Readings&
   check_coefficients(session, instance);
   check_jumps(session, instance);
   check_levels(session, statements, instance);
+}
+
+void check_densities(Session& session, const Instance& instance) {
+  if (instance.equation != EquationKind::davies) return;
+  std::set<std::uint32_t> swept;
+  for (const AxisI& axis : instance.axes) {
+    for (const AxisColumnI& column : axis.columns) {
+      if (column.index) swept.insert(*column.index);
+    }
+  }
+  for (const NoiseTerm& term : instance.noise) {
+    const InstanceBath& bath = instance.baths[term.bath];
+    const auto reads = dependence(session.graph, bath.density).parameters;
+    const bool moves = std::any_of(reads.begin(), reads.end(), [&](std::uint32_t row) { return swept.contains(row); });
+    if (moves || !is_known(session, bath.density) || !diverges(session, bath.density)) continue;
+    session.report(bath.span, diag::density_at_zero, bath.name)
+        .note(instance.span, "`equation davies` stands in this experiment")
+        .remedy("give J(w) that falls with w at small w, at least as w does; there is no equation for slow noise yet");
+  }
 }
 
 std::vector<std::uint32_t> live_parameters(const Instance& instance) {

@@ -78,6 +78,9 @@ class Diagnostics {
   }
   ReportTail add(Diagnostic diagnostic);
 
+  /// What `earlier` holds will not be reported here.
+  void know(const Diagnostics& earlier) { seen_.insert(earlier.seen_.begin(), earlier.seen_.end()); }
+
   const std::vector<Diagnostic>& all() const { return reports_; }
   bool has_errors() const { return error_count_ > 0; }
   std::size_t error_count() const { return error_count_; }

@@ -9,6 +9,7 @@
 #include <utility>
 #include <vector>
 
+#include "lang/diagnostics/diagnostics.h"
 #include "lang/program/instance.h"
 #include "lang/source/loader.h"
 
@@ -72,6 +73,7 @@ struct Program {
   std::vector<ProgramLaw> laws;
   std::vector<ProgramPart> parts;
   std::vector<ProgramExperiment> experiments;  ///< Of the main file, in its order.
+  Diagnostics told;                            ///< Warnings and remarks of checking it.
   Graph graph;                                 ///< Of the laws.
   std::vector<std::string> graph_parameters;   ///< Names of its parameter nodes.
   std::vector<std::string> opaque;             ///< Names of arguments: parameter node kOpaque + k.

@@ -5,6 +5,7 @@
 #include <cmath>
 
 #include "lang/quantities/constants.h"
+#include "lang/quantities/unit_slips.h"
 #include "lang/support/near.h"
 
 namespace tarn {
@@ -135,7 +136,8 @@ std::string near_unit(std::string_view word) {
   std::size_t best_score = word.size() > 2 ? 4 : 3;  // Case counts 1, another letter 2.
   const auto consider = [&](std::string candidate) {
     const bool same_letters = equal_but_for_case(word, candidate);
-    const std::size_t score = same_letters ? 1 : 2 * edit_distance(word, candidate);
+    const std::size_t slip = find_unit_slip(candidate) != nullptr ? 1 : 0;
+    const std::size_t score = (same_letters ? 1 : 2 * edit_distance(word, candidate)) + slip;
     if (score < best_score && (same_letters || candidate.size() > 1)) {
       best_score = score;
       best = std::move(candidate);

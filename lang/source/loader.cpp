@@ -92,8 +92,10 @@ class Loader {
     }
     const std::string_view near = near_word(use.name.text, names);
     auto tail = diagnostics_.report(use.name.span, diag::unknown_library, use.name.text);
-    tail.remedy(near.empty() ? "a file of your own is used as `use \"" + use.name.text + ".tarn\" as " + use.name.text + "`"
-                             : "did you mean `" + std::string(near) + "`?");
+    std::string remedy = near.empty() ? "the library has" : "did you mean `" + std::string(near) + "`? the library has";
+    for (const std::string_view name : names) remedy += (name == names.front() ? " `" : ", `") + std::string(name) + "`";
+    if (near.empty()) remedy += "; a file of your own is used as `use \"" + use.name.text + ".tarn\" as " + use.name.text + "`";
+    tail.remedy(remedy);
     return std::nullopt;
   }
 

@@ -38,10 +38,11 @@ std::size_t first_bad_character(std::string_view text) {
 }
 
 std::string_view plain_spelling(std::string_view character) {
-  constexpr std::array<std::pair<std::string_view, std::string_view>, 15> kLookAlikes{{
+  constexpr std::array<std::pair<std::string_view, std::string_view>, 17> kLookAlikes{{
       {"\xE2\x88\x92", "-"}, {"\xE2\x80\x93", "-"}, {"\xE2\x80\x94", "--"}, {"\xC3\x97", "*"}, {"\xC2\xB7", "*"},
       {"\xC3\xB7", "/"}, {"\xE2\x89\xA4", "<="}, {"\xE2\x89\xA5", ">="}, {"\xE2\x89\xA0", "!="}, {"\xC2\xB2", "^2"},
       {"\xC2\xB3", "^3"}, {"\xE2\x80\x9C", "\""}, {"\xE2\x80\x9D", "\""}, {"\xE2\x80\xA6", ".."}, {"\xC2\xA0", "a plain space"},
+      {"'", "\""}, {";", "nothing: a statement ends where the next begins"},
   }};
   for (const auto& [look_alike, plain] : kLookAlikes) {
     if (character == look_alike) return plain;

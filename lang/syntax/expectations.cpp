@@ -3,10 +3,12 @@
 #include <algorithm>
 #include <array>
 #include <string>
+#include <vector>
 
 #include "lang/quantities/units.h"
 #include "lang/support/near.h"
 #include "lang/syntax/characters.h"
+#include "lang/syntax/habits.h"
 
 namespace tarn {
 namespace {
@@ -35,7 +37,10 @@ class Stop {
   Code before() const { return at_ == 0 ? Code{} : tokens_.code(at_ - 1); }
   Code after() const { return code_at(1); }
   /// Counted from the failure.
-  Code code_at(std::uint32_t offset) const { return tokens_.code(at_ + offset); }
+  Code code_at(int offset) const {
+    const std::int64_t at = static_cast<std::int64_t>(at_) + offset;
+    return at < 0 ? Code{} : tokens_.code(static_cast<std::size_t>(at));
+  }
   bool at_end() const { return at_ >= tokens_.size(); }
 
   bool expects(std::string_view words) const {
@@ -154,6 +159,33 @@ bool report_unit_power(const Stop& stop, Diagnostics& diagnostics) {
   return true;
 }
 
+/// Symbols of other notations: `2**3`, `// text`, `[1, 2]`, `a := 3`, `at 5 ns`.
+std::string other_notation(const Stop& stop) {
+  const Code here = stop.here(), before = stop.before();
+  if (here == Code::times && before == Code::times) return "a power is written `^`";
+  if (here == Code::over_sign && before == Code::over_sign) return "a comment starts with `#`";
+  if (here == Code::open_square && stop.expects("a value")) return "several values are `list(a, b, ...)`";
+  if (here == Code::assign && before == Code::colon) return "a default follows `=`, a type `:`; one may be left out";
+  if (is_number(here) && before == Code::comma && stop.expects("a name")) return "several values are `list(a, b, ...)`";
+  if (is_number(here) && stop.expects("`t =` or `s =`")) {
+    return "write " + quote("at t = " + (stop.after() == Code::unit_word ? stop.text(0, 1) : stop.text(0)));
+  }
+  return {};
+}
+
+/// A word of another notation, or a slip in a reserved word where the grammar has no list of them.
+std::string meant_word(const Stop& stop) {
+  if (!is_word(stop.here()) || is_reserved(stop.here())) return {};
+  const std::string word = stop.text(0);
+  std::string_view meant = statement_for(word);
+  std::vector<std::string_view> reserved;
+  for (auto code = static_cast<unsigned>(kFirstReserved); code <= static_cast<unsigned>(kLastReserved); ++code) {
+    reserved.push_back(spelling(static_cast<Code>(code)));
+  }
+  if (meant.empty() && word.size() > 2) meant = near_word(word, reserved);
+  return meant.empty() ? "" : "did you mean " + quote(meant) + "?";
+}
+
 /// A slip in a word of the language: `ovr`.
 bool report_slip(const Stop& stop, Diagnostics& diagnostics) {
   if (!is_word(stop.here()) || is_reserved(stop.here())) return false;
@@ -168,7 +200,7 @@ bool report_slip(const Stop& stop, Diagnostics& diagnostics) {
 /// A word after a number that is no unit.
 bool report_after_number(const Stop& stop, Diagnostics& diagnostics) {
   const bool word = is_word(stop.here()) && !is_reserved(stop.here());
-  if (!word || !is_number(stop.before()) || !stop.expects("an operator")) return false;
+  if (!word || !is_number(stop.before()) || !stop.expects("an operator") || !stop.same_line_as_before()) return false;
   const std::string product = quote(stop.text(-1) + "*" + stop.text(0));
   const std::string near = near_unit(stop.text(0));
   if (near.empty()) {
@@ -195,7 +227,8 @@ bool report_missing_operator(const Stop& stop, Diagnostics& diagnostics) {
   auto tail = diagnostics.report(stop.span(), diag::missing_operator, stop.text(-1), stop.text(0));
   const bool closing = stop.before() == Code::close_round || stop.before() == Code::close_square;
   if (stop.here() != Code::text && stop.before() != Code::text) {
-    tail.remedy("to multiply, write " + (closing ? "`*` between them" : quote(stop.text(-1) + "*" + stop.text(0))));
+    const bool unit = stop.before() == Code::unit_word && is_number(stop.code_at(-2));
+    tail.remedy("to multiply, write " + (closing ? "`*` between them" : quote(stop.text(unit ? -2 : -1, -1) + "*" + stop.text(0))));
   }
   return true;
 }
@@ -233,7 +266,9 @@ void report_failure(const SourceFile& file, const Tokens& tokens, const Failure&
                     report_after_number(stop, diagnostics) ||
                     report_open_bracket(stop, diagnostics) || report_missing_operator(stop, diagnostics) ||
                     report_reserved(stop, diagnostics);
-  if (!told) diagnostics.report(stop.span(), diag::unexpected, stop.expected(), stop.found());
+  if (told) return;
+  const std::string remedy = other_notation(stop);
+  diagnostics.report(stop.span(), diag::unexpected, stop.expected(), stop.found()).remedy(remedy.empty() ? meant_word(stop) : remedy);
 }
 
 void report_open_block(const SourceFile& file, const Tokens& tokens, const OpenBlock& block, Diagnostics& diagnostics) {
