@@ -66,46 +66,27 @@ struct DaviesRun {
 };
 
 struct DaviesOptions {
-  double tolerance = 1e-6;  ///< On every population, in the levels and in the computational basis.
   int first_depth = 0;      ///< Steps of a base interval in the first pass: 2^first_depth.
   int last_depth = 9;       ///< Refinement stops here.
   double max_steps = 4e5;   ///< No pass of more steps than this.
   double max_explicit_phase = 4e5;  ///< No explicit integration over more phase than this [rad].
   Interrupted interrupted;
-  bool whole_state = false;  ///< Judge by the whole density matrix, not by populations alone.
 };
 
-struct DaviesAnswer {
+/// What one pass with fixed steps gave.
+struct DaviesPass {
   std::vector<Density> states;  ///< At the times wanted, computational basis, N x N.
-  double error = 0;             ///< Estimate, the largest over all times: for the populations, or for the
-                                ///< state (Frobenius norm) if `whole_state` was asked for.
-  double state_error = 0;       ///< The same for the state: Frobenius norm, coherences included.
-  bool converged = false;       ///< error <= tolerance.
-  bool explicitly = false;      ///< The explicit integrator gave the answer.
-  int depth = 0;                ///< Of the last pass.
+  std::vector<double> floor;    ///< At each time: an error that finer passes would share, of a population or an element.
   double leakage = 0;           ///< Population that leaves the levels kept: an upper estimate.
   Counters counters;
 };
 
-/// One run. Errors: `s_out_of_range` (the pace leaves the track), `interrupted`,
-/// `too_many_levels` (jumps as written or a drive with levels left out).
-/// The state keeps its trace to 1e-12 and is Hermitian; extrapolation leaves it positive to
-/// within the error.
+/// One pass at a depth, without extrapolation: trace-preserving, completely positive. `explicitly`: every
+/// segment by the explicit integrator, at explicit_tolerance(depth).
+/// Errors: `s_out_of_range` (the pace leaves the track), `interrupted`, `too_many_levels` (jumps as
+/// written or a drive with levels left out), `too_much_phase`, `step_underflow`.
 template <class Scalar>
-Result<DaviesAnswer, RunError> run_davies(const DaviesTables<Scalar>& tables, const DaviesRun& run,
-                                          const DaviesOptions& options);
-
-/// What one pass with fixed steps gave.
-struct DaviesPass {
-  std::vector<Density> states;
-  std::vector<Eigen::VectorXd> manifolds;  ///< Populations of the manifolds, energy ascending.
-  double leakage = 0;
-  Counters counters;
-};
-
-/// One pass at a depth, without extrapolation: completely positive.
-template <class Scalar>
-Result<DaviesPass, RunError> davies_pass(const DaviesTables<Scalar>& tables, const DaviesRun& run,
-                                         int depth, const DaviesOptions& options);
+Result<DaviesPass, RunError> davies_pass(const DaviesTables<Scalar>& tables, const DaviesRun& run, int depth,
+                                         const DaviesOptions& options, bool explicitly = false);
 
 }  // namespace tarn::runtime

@@ -1,6 +1,7 @@
 #include <algorithm>
 #include <array>
 #include <cmath>
+#include <limits>
 #include <mutex>
 #include <optional>
 
@@ -42,6 +43,7 @@ const std::vector<DaviesTable>& DaviesTables<Scalar>::steps(std::size_t interval
 
 namespace {
 
+constexpr double kOfExchange = 3;          ///< Error of a population over what exchange moved at most.
 constexpr double kDephasing = 0.5;        ///< Largest decay of a rotating pair in a step.
 constexpr double kRotationCounts = 0.02;  ///< Rotations of a base interval below it do not ask for that.
 
@@ -49,8 +51,8 @@ constexpr double kRotationCounts = 0.02;  ///< Rotations of a base interval belo
 template <class Scalar>
 class Walk {
  public:
-  Walk(const DaviesTables<Scalar>& tables, const DaviesRun& run, int depth, const DaviesOptions& options)
-      : tables_(tables), track_(tables.track()), run_(run), depth_(depth), options_(options) {}
+  Walk(const DaviesTables<Scalar>& tables, const DaviesRun& run, int depth, const DaviesOptions& options, bool explicitly)
+      : tables_(tables), track_(tables.track()), run_(run), depth_(depth), options_(options), explicitly_(explicitly) {}
 
   /// The pass, or why it ended early.
   Result<DaviesPass, RunError> walk() {
@@ -59,7 +61,7 @@ class Walk {
     emit_until(0.0);
     for (const Segment& segment : timeline.segments) {
       if (frame_.s != segment.s0) enter(track_.at(segment.s0), lab());
-      if (run_.drive || !run_.jumps.empty())
+      if (explicitly_)
         explicit_segment(segment);
       else if (segment.s0 == segment.s1)
         hold(segment);
@@ -253,7 +255,7 @@ class Walk {
       count_outflow(table, h);
       count_coherent(step, h);
     }
-    advance<Scalar>(step, table, h, backward, rho_, buffers_);
+    unresolved_ += advance<Scalar>(step, table, h, backward, rho_, buffers_);
     ++pass_.counters.steps;
   }
 
@@ -266,11 +268,13 @@ class Walk {
         continue;
       }
       const Eigen::MatrixXcd kept = rho_;
+      const double unresolved = unresolved_;
       const double s = piece.s0 + (piece.s1 - piece.s0) * (t - piece.t0) / (piece.t1 - piece.t0);
       const Frame<Scalar> there = track_.at(s);
       local_step(start, there, t - t0);
       emit_at(there, t);
       rho_ = kept;
+      unresolved_ = unresolved;
     }
   }
 
@@ -278,18 +282,21 @@ class Walk {
     if (next_ >= run_.times.size() || run_.times[next_] > t) return;
     const Matrix<Complex> vectors = frame.vectors.template cast<Complex>();
     const Density state = vectors * rho_ * vectors.adjoint();
-    const Eigen::VectorXd populations = manifold_populations(frame);
+    const double floor = floor_at(t, state);
     for (; next_ < run_.times.size() && run_.times[next_] <= t; ++next_) {
       pass_.states.push_back(state);
-      pass_.manifolds.push_back(populations);
+      pass_.floor.push_back(floor);
     }
   }
 
-  Eigen::VectorXd manifold_populations(const Frame<Scalar>& frame) const {
-    const std::vector<int> ordinal = manifolds(frame.energies, track_.tolerance());
-    Eigen::VectorXd sums = Eigen::VectorXd::Zero(frame.energies.size());
-    for (Eigen::Index a = 0; a < sums.size(); ++a) sums[ordinal[static_cast<std::size_t>(a)]] += rho_(a, a).real();
-    return sums;
+  /// What finer passes share: the exchange through admixtures that no step resolves, the drift of the trace
+  /// where no level is left out, and of coherences the rounding of the phases they have added up.
+  double floor_at(double t, const Density& state) const {
+    double drift = 0, coherence = 0;
+    if (track_.levels() == track_.model().dimension) drift = std::abs(state.trace() - run_.initial.trace());
+    for (Eigen::Index b = 0; b < rho_.cols(); ++b)
+      for (Eigen::Index a = 0; a < b; ++a) coherence = std::max(coherence, std::abs(rho_(a, b)));
+    return kOfExchange * unresolved_ + drift + std::numeric_limits<double>::epsilon() * track_.width() * t * coherence;
   }
 
   void count_outflow(const DaviesTable& table, double h) { pass_.leakage += h * table.outflow.dot(rho_.diagonal().real()); }
@@ -309,13 +316,14 @@ class Walk {
   const DaviesRun& run_;
   int depth_;
   const DaviesOptions& options_;
+  bool explicitly_;
   DaviesPass pass_;
   Frame<Scalar> frame_;                      ///< Basis of rho_.
   const Frame<Scalar>* at_node_ = nullptr;   ///< The cached frame that frame_ copies, if any.
   Eigen::MatrixXcd rho_;
   StepBuffers<Scalar> buffers_;
   std::size_t next_ = 0;
-  double coherent_leak_ = 0;
+  double coherent_leak_ = 0, unresolved_ = 0;
   std::optional<RunError> failure_;
 };
 
@@ -335,14 +343,16 @@ std::optional<RunError> refuse(const DaviesTables<Scalar>& tables, const DaviesR
 }  // namespace
 
 template <class Scalar>
-Result<DaviesPass, RunError> davies_pass(const DaviesTables<Scalar>& tables, const DaviesRun& run, int depth, const DaviesOptions& options) {
+Result<DaviesPass, RunError> davies_pass(const DaviesTables<Scalar>& tables, const DaviesRun& run, int depth, const DaviesOptions& options,
+                                         bool explicitly) {
   if (auto error = refuse(tables, run)) return Unexpected{*error};
-  return Walk<Scalar>(tables, run, depth, options).walk();
+  const bool must_be = run.drive || !run.jumps.empty();
+  return Walk<Scalar>(tables, run, depth, options, explicitly || must_be).walk();
 }
 
 template class DaviesTables<double>;
 template class DaviesTables<Complex>;
-template Result<DaviesPass, RunError> davies_pass<double>(const DaviesTables<double>&, const DaviesRun&, int, const DaviesOptions&);
-template Result<DaviesPass, RunError> davies_pass<Complex>(const DaviesTables<Complex>&, const DaviesRun&, int, const DaviesOptions&);
+template Result<DaviesPass, RunError> davies_pass<double>(const DaviesTables<double>&, const DaviesRun&, int, const DaviesOptions&, bool);
+template Result<DaviesPass, RunError> davies_pass<Complex>(const DaviesTables<Complex>&, const DaviesRun&, int, const DaviesOptions&, bool);
 
 }  // namespace tarn::runtime

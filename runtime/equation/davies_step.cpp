@@ -1,5 +1,6 @@
 #include "runtime/equation/davies_step.h"
 
+#include <algorithm>
 #include <cmath>
 #include <complex>
 #include <numeric>
@@ -51,6 +52,30 @@ void filon(const Half<Scalar>& half, const Eigen::VectorXd& phase, Matrix<Comple
   if constexpr (!std::is_same_v<Scalar, double>) w.diagonal() = sign * link.rotation.diagonal();
 }
 
+/// Turns that come and go within a half step leave a shift of the levels behind, the second term of
+/// the Magnus series: i sum_b L_ab L_bc (1 - sin(2x)/2x)/2x, x half the phase of a and b; a and c
+/// at nearly one energy, where alone it adds up.
+template <class Scalar>
+void add_second_order(const Half<Scalar>& half, const Eigen::VectorXd& phase, StepBuffers<Scalar>& buffers, Matrix<Complex>& w) {
+  const Eigen::Index levels = phase.size();
+  const double sign = half.backward ? -1.0 : 1.0;
+  buffers.turn = sign * half.link.rotation;
+  buffers.weighted.resize(levels, levels);
+  for (Eigen::Index b = 0; b < levels; ++b)
+    for (Eigen::Index a = 0; a < levels; ++a) {
+      const double x = 2.0 * (phase[a] - phase[b]);
+      buffers.weighted(a, b) = (std::abs(x) < 1e-3 ? x / 6.0 : (1.0 - std::sin(x) / x) / x) * buffers.turn(a, b);
+    }
+  multiply<Scalar>(buffers.weighted, buffers.turn, buffers.shifts, buffers.scratch);
+  for (Eigen::Index c = 0; c < levels; ++c)
+    for (Eigen::Index a = 0; a < levels; ++a) {
+      const double x = phase[a] - phase[c];
+      const double slow = std::abs(x) < 1e-3 ? 1.0 - x * x / 6.0 : std::sin(x) / x;
+      const Complex both = Complex(buffers.shifts(a, c)) + std::conj(Complex(buffers.shifts(c, a)));
+      w(a, c) += Complex(0, 0.5 * slow) * both;
+    }
+}
+
 /// What one half step does to amplitudes, from frame to frame.
 template <class Scalar>
 void half_map(const Half<Scalar>& half, const Eigen::VectorXd& shift, double h, StepBuffers<Scalar>& buffers, Matrix<Complex>& map) {
@@ -61,6 +86,7 @@ void half_map(const Half<Scalar>& half, const Eigen::VectorXd& shift, double h, 
   Eigen::VectorXcd factor(phase.size());
   for (Eigen::Index a = 0; a < phase.size(); ++a) factor[a] = std::polar(1.0, -phase[a]);
   filon<Scalar>(half, phase, buffers.w);
+  add_second_order<Scalar>(half, phase, buffers, buffers.w);
   rotation_exponential(buffers.w, map, buffers.scratch);
   for (Eigen::Index b = 0; b < map.cols(); ++b)
     for (Eigen::Index a = 0; a < map.rows(); ++a) map(a, b) *= factor[a] * factor[b];
@@ -87,6 +113,18 @@ void admixture(const StepFrames<Scalar>& step, const Eigen::VectorXd& shift, dou
     }
 }
 
+/// Most that the relaxation of an admixture y moves a population in time h: its coherences decay and are made
+/// anew all the time, an exchange at twice their decay times |y|^2.
+double exchanged(const Matrix<Complex>& y, const DaviesTable& table, double h) {
+  double most = 0;
+  for (Eigen::Index a = 0; a < y.rows(); ++a) {
+    double sum = 0;
+    for (Eigen::Index b = 0; b < y.cols(); ++b) sum -= 2.0 * table.loss(a, b).real() * std::norm(y(a, b));
+    most = std::max(most, h * sum);
+  }
+  return most;
+}
+
 std::vector<std::vector<std::uint32_t>> connected(const DaviesTable& table) {
   std::vector<std::uint32_t> root(table.coupled.size());
   std::iota(root.begin(), root.end(), 0U);
@@ -107,9 +145,10 @@ std::vector<std::vector<std::uint32_t>> connected(const DaviesTable& table) {
 }  // namespace
 
 template <class Scalar>
-void advance(const StepFrames<Scalar>& step, const DaviesTable& table, double h, bool backward, Eigen::MatrixXcd& rho,
+double advance(const StepFrames<Scalar>& step, const DaviesTable& table, double h, bool backward, Eigen::MatrixXcd& rho,
              StepBuffers<Scalar>& buffers) {
   Scratch& scratch = buffers.scratch;
+  double unresolved = 0;
   const bool same_labels = step.first.right_basis.size() == 0 && step.second.left_basis.size() == 0;
   if (same_labels)
     buffers.variation = step.second.rotation - step.first.rotation;
@@ -120,6 +159,7 @@ void advance(const StepFrames<Scalar>& step, const DaviesTable& table, double h,
   half_map<Scalar>({end, buffers.variation, backward}, table.shift, 0.5 * h, buffers, buffers.after);
   if (same_labels) {
     admixture<Scalar>(step, table.shift, h, backward, buffers.w);
+    unresolved = exchanged(buffers.w, table, h);
     rotation_exponential(buffers.w, buffers.carried, scratch);
     multiply<Complex>(buffers.after, buffers.carried, buffers.r, scratch);
     buffers.after.swap(buffers.r);
@@ -130,6 +170,7 @@ void advance(const StepFrames<Scalar>& step, const DaviesTable& table, double h,
   turn(buffers.before, rho, scratch);
   relax(table, h, rho);
   turn(buffers.after, rho, scratch);
+  return unresolved;
 }
 
 HoldMap::HoldMap(const Eigen::VectorXd& energies, const DaviesTable& table)
@@ -181,7 +222,7 @@ void HoldMap::apply(double t, Eigen::MatrixXcd& rho) {
     if (single_[static_cast<std::size_t>(p)]) rho.data()[p] *= std::exp(t * exponent_.data()[p]);
 }
 
-template void advance<double>(const StepFrames<double>&, const DaviesTable&, double, bool, Eigen::MatrixXcd&, StepBuffers<double>&);
-template void advance<Complex>(const StepFrames<Complex>&, const DaviesTable&, double, bool, Eigen::MatrixXcd&, StepBuffers<Complex>&);
+template double advance<double>(const StepFrames<double>&, const DaviesTable&, double, bool, Eigen::MatrixXcd&, StepBuffers<double>&);
+template double advance<Complex>(const StepFrames<Complex>&, const DaviesTable&, double, bool, Eigen::MatrixXcd&, StepBuffers<Complex>&);
 
 }  // namespace tarn::runtime

@@ -13,14 +13,15 @@ namespace tarn::runtime {
 template <class Scalar>
 struct StepBuffers {
   Scratch scratch;
-  Matrix<Scalar> variation;
+  Matrix<Scalar> variation, turn, weighted, shifts;
   Matrix<std::complex<double>> w, r, carried, before, after;
 };
 
 /// rho (K x K) from the basis of the step's start to that of its end, in time h > 0 [ns]; backward: from
-/// end to start. Local error O(h^3), global order 2.
+/// end to start. Local error O(h^3), global order 2. Gives what it leaves out of populations where h spans
+/// many turns of a pair: an estimate that falls as h^4 once it does not.
 template <class Scalar>
-void advance(const StepFrames<Scalar>& step, const DaviesTable& table, double h, bool backward,
+double advance(const StepFrames<Scalar>& step, const DaviesTable& table, double h, bool backward,
              Eigen::MatrixXcd& rho, StepBuffers<Scalar>& buffers);
 
 /// exp(t L) with the whole static generator L at one frame, t any: independent blocks of pairs,

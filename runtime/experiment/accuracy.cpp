@@ -8,10 +8,6 @@
 namespace tarn::runtime {
 namespace {
 
-// Measured over 500 random chips (tests/unit/runtime/experiment/accuracy_test.cpp): the reported
-// error covers the difference to a run 100 times tighter in at least 95 % of them.
-constexpr double kOfDifference = 0.8;
-constexpr double kOfDistance = 0.025;
 constexpr double kRounding = 1e-15;
 constexpr double kSmallStep = 1e-6;
 
@@ -66,28 +62,31 @@ double state_distance(const Snapshot& coarse, const Snapshot& fine) {
   return std::sqrt(sum / static_cast<double>(fine.probes.size()));
 }
 
-Answer estimate_answer(const Snapshot& coarse, const Snapshot& fine, const ObservableRows& rows, std::uint32_t row,
-                       std::span<const std::uint32_t> used, std::span<const double> norms) {
-  std::vector<double> readings = values_of(fine);
+Answer estimate_answer(const Snapshot& best, std::span<const Comparison> others, double shared,
+                       const ObservableRows& rows, std::uint32_t row, std::span<const std::uint32_t> used,
+                       std::span<const double> norms) {
+  std::vector<double> readings = values_of(best);
   const double value = rows(readings)[row];
-  const double difference = std::abs(value - rows(values_of(coarse))[row]);
-  const double floor = state_distance(coarse, fine) * sensitivity(rows, row, used, norms, readings);
-  const double own = own_error(fine, rows, row, used, readings);
+  const double sensitive = others.empty() && shared == 0 ? 0 : sensitivity(rows, row, used, norms, readings);
+  double error = 0;
+  for (const Comparison& other : others) {
+    const double difference = std::abs(value - rows(values_of(other.run))[row]);
+    const double floor = state_distance(other.run, best) * sensitive;
+    error = std::max({error, other.weights.of_difference * difference, other.weights.of_distance * floor});
+  }
+  const double own = own_error(best, rows, row, used, readings);
   const double rounding = used.empty() ? 0 : kRounding * std::abs(value);
-  return {value, std::max(kOfDifference * difference, kOfDistance * floor) + own + rounding};
+  return {value, error + shared * sensitive + own + rounding};
 }
 
-Answer estimate_probability(double coarse, double fine, double distance) {
-  return {fine, std::max(kOfDifference * std::abs(fine - coarse), kOfDistance * distance) + kRounding * std::abs(fine)};
-}
-
-Answer answer_with_error(const Snapshot& run, double error, const ObservableRows& rows, std::uint32_t row,
-                         std::span<const std::uint32_t> used, std::span<const double> norms) {
-  std::vector<double> readings = values_of(run);
-  const double value = rows(readings)[row];
-  const double moved = error * sensitivity(rows, row, used, norms, readings);
-  const double own = own_error(run, rows, row, used, readings);
-  return {value, moved + own + (used.empty() ? 0 : kRounding * std::abs(value))};
+Answer estimate_probability(const Snapshot& best, std::span<const Comparison> others, double shared, std::size_t b) {
+  const double value = best.distribution[b];
+  double error = 0;
+  for (const Comparison& other : others) {
+    const double difference = std::abs(value - other.run.distribution[b]);
+    error = std::max({error, other.weights.of_difference * difference, other.weights.of_distance * state_distance(other.run, best)});
+  }
+  return {value, error + shared + kRounding * std::abs(value)};
 }
 
 Answer reduce_series(Over over, std::span<const Sample> series) {

@@ -9,6 +9,7 @@
 
 #include "lang/support/check.h"
 #include "runtime/bath/shift.h"
+#include "runtime/equation/davies_refinement.h"
 #include "runtime/experiment/bath_of_plan.h"
 #include "runtime/experiment/words.h"
 
@@ -16,6 +17,7 @@ namespace tarn::runtime {
 namespace {
 
 constexpr std::size_t kMostQubits = 10;
+constexpr double kOfDistance = 0.03;  ///< Error of an answer over what the distance of the states could do to it.
 constexpr std::size_t kKeySamples = 257;
 constexpr double kNarrowest = 0.02;  ///< A track covers at least so much of s.
 
@@ -146,29 +148,25 @@ void stand_still(PointTask& task) {
   task.begin_run();
   const State state = density_of(task.begin());
   for (std::size_t k = 0; k < task.times().size(); ++k) task.visit(k, state, 1);
-  task.end_run_with_error({}, 0, true);
+  task.end_best_run({}, {}, true);
 }
 
-bool is_diagonal(const OperatorSum& op) {
-  for (const OperatorGroup& group : op.groups) {
-    for (const WordTerm& term : group.terms) {
-      if (term.word.x != 0) return false;
+/// Answers, each finer than the last, until the task is content.
+template <class Scalar>
+void refine(PointTask& task, DaviesRefinement<Scalar> refinement) {
+  while (task.wants_run()) {
+    const auto answer = refinement.next();
+    if (!answer) return task.fail(answer.error());
+    for (const CoarserStates& coarser : answer->coarser) {
+      task.begin_run();
+      for (std::size_t k = 0; k < coarser.states.size(); ++k) task.visit(k, coarser.states[k], 1);
+      task.end_coarser_run({coarser.weight, kOfDistance * coarser.weight});
     }
+    task.begin_run();
+    for (std::size_t k = 0; k < answer->states.size(); ++k) task.visit(k, answer->states[k], 1);
+    task.note_leakage(answer->leakage);
+    task.end_best_run(answer->counters, answer->floor, refinement.exhausted());
   }
-  return true;
-}
-
-/// True for a product state with a letter + or -, whose projector is not diagonal.
-bool is_turned(const std::string& letters) { return letters.find_first_of("+-") != std::string::npos; }
-
-/// True if some reading needs more of the state than populations of levels and of bit strings.
-bool reads_coherences(const Plan& plan) {
-  return std::any_of(plan.readings.begin(), plan.readings.end(), [](const Reading& reading) {
-    if (const auto* mean = std::get_if<ReadMean>(&reading)) return !is_diagonal(mean->op);
-    if (const auto* population = std::get_if<ReadPopulation>(&reading)) return is_turned(population->set.letters);
-    if (const auto* fidelity = std::get_if<ReadFidelity>(&reading)) return is_turned(fidelity->letters);
-    return std::holds_alternative<ReadPurity>(reading) || std::holds_alternative<ReadCoherence>(reading);
-  });
 }
 
 std::shared_ptr<const Functions> functions_of(const PointTask& task) {
@@ -250,20 +248,13 @@ void DaviesPoints::advance(PointTask& task, const Interrupted& interrupted) {
   if (task.timeline().segments.empty()) return stand_still(task);
   const auto tables = tables_for(task, interrupted);
   if (!tables) return task.fail(tables.error());
-  const auto run = run_of(task, functions_of(task));
+  auto run = run_of(task, functions_of(task));
   if (!run) return task.fail(run.error());
-  while (task.wants_run()) {
-    DaviesOptions options;
-    options.tolerance = task.tolerance();
-    options.interrupted = interrupted;
-    options.whole_state = reads_coherences(model_.plan());
-    task.begin_run();
-    const auto answer = std::visit([&](const auto& typed) { return run_davies(*typed, *run, options); }, *tables);
-    if (!answer) return task.fail(answer.error());
-    for (std::size_t k = 0; k < answer->states.size(); ++k) task.visit(k, answer->states[k], 1);
-    task.note_leakage(answer->leakage);
-    task.end_run_with_error(answer->counters, answer->error, !answer->converged);
-  }
+  DaviesOptions options;
+  options.interrupted = interrupted;
+  std::visit([&]<class Scalar>(const TablesOf<Scalar>& typed) {
+    refine(task, DaviesRefinement<Scalar>(*typed, *std::move(run), options));
+  }, *tables);
 }
 
 }  // namespace tarn::runtime

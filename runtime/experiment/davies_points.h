@@ -25,7 +25,7 @@ class DaviesPoints {
   bool finite_levels(const Functions& functions) const;
 
   /// Repeats until the task wants no run. Errors end up in the task: `bad_bath`, `too_large`
-  /// (over 10 qubits), `jump_depends_on_s`, and those of run_davies.
+  /// (over 10 qubits), `jump_depends_on_s`, and those of davies_pass().
   void advance(PointTask& task, const Interrupted& interrupted);
 
  private:

@@ -4,6 +4,7 @@
 
 #include <algorithm>
 #include <cmath>
+#include <limits>
 
 #include "lang/support/check.h"
 #include "runtime/experiment/grid.h"
@@ -16,6 +17,7 @@ namespace {
 
 /// Vectors of level sets are kept between runs up to this many amplitudes.
 constexpr std::size_t kKeptAmplitudes = std::size_t{1} << 24;
+constexpr double kEpsilon = std::numeric_limits<double>::epsilon();
 constexpr double kFirstTolerance = 0.3;  ///< Of the tolerance asked: most points need two runs then.
 
 bool any_reading(const Plan& plan, bool (*holds)(const Reading&)) {
@@ -55,9 +57,7 @@ Result<Done, RunError> PointTask::prepare() {
   if (!observed) return observed;
   if (!any_reading(plan_, reads_state) && !plan_.distribution_at_end) {
     begin_run();
-    coarse_ = fine_;
-    runs_ = 1;
-    end_run({});
+    end_best_run({}, {}, true);
     return Done{};
   }
   if (!plan_.begin || plan_.scan) {
@@ -70,8 +70,28 @@ Result<Done, RunError> PointTask::prepare() {
   if (!begin) return Unexpected{begin.error()};
   begin_ = std::move(begin).value();
   tolerance_ = kFirstTolerance * plan_.tolerance;
+  shared_.assign(observations_.size(), kEpsilon * largest_phase());
   wants_run_ = true;
   return Done{};
+}
+
+/// Bound on the phase that any two levels gather in the run [rad]: what the rounding of energies acts on.
+double PointTask::largest_phase() const {
+  const auto width = [&](double s, double t) {
+    const std::vector<double> coefficients = functions_.values(kCoefficients, s, t);
+    double sum = 0;
+    for (const OperatorGroup& group : plan_.chip.hamiltonian.groups) {
+      for (const WordTerm& term : group.terms) {
+        if (term.word.x != 0 || term.word.z != 0) sum += 2 * std::abs(coefficients[group.coefficient] * term.factor);
+      }
+    }
+    return sum;
+  };
+  double phase = 0;
+  for (const Segment& segment : timeline_.segments) {
+    phase += (segment.t1 - segment.t0) * std::max(width(segment.s0, segment.t0), width(segment.s1, segment.t1));
+  }
+  return phase;
 }
 
 void PointTask::note_held_offsets() {
@@ -137,7 +157,6 @@ const InstantReadings* PointTask::readings_of(std::size_t observation) {
 }
 
 void PointTask::begin_run() {
-  coarse_ = std::move(fine_);
   fine_.assign(observations_.size(), {});
   sums_.clear();
   for (std::size_t i = 0; i < observations_.size(); ++i) {
@@ -169,33 +188,34 @@ PointOutcome PointTask::take_outcome() {
 void PointTask::end_run(const Counters& counters) {
   if (outcome_.error) return;
   outcome_.counters += counters;
-  if (++runs_ < 2) {
-    tolerance_ *= kTighter;
-    return;
+  const bool first = coarser_.empty();
+  if (!first) {
+    collect_answers();
+    const double excess = worst_excess();
+    if (!(excess > 1)) return finish(kStatusOk);
+    if (tolerance_ * kTighter < kTightestTolerance) return finish(kStatusLoose);
   }
-  collect_answers(NAN);
-  const double excess = worst_excess();
-  if (!(excess > 1)) {
-    finish(kStatusOk);
-  } else if (tolerance_ * kTighter < kTightestTolerance) {
-    finish(kStatusLoose);
-  } else {
-    tolerance_ *= kTighter;
-  }
+  tolerance_ *= kTighter;
+  coarser_.clear();
+  coarser_.push_back({std::move(fine_), plan_.equation == Equation::lindblad ? kOfLooserDensity : kOfLooserKet});
 }
 
-void PointTask::end_run_with_error(const Counters& counters, double error, bool loose) {
+void PointTask::end_coarser_run(Weights weights) {
+  if (outcome_.error) return;
+  coarser_.push_back({std::move(fine_), weights});
+}
+
+void PointTask::end_best_run(const Counters& counters, std::span<const double> shared, bool last) {
   if (outcome_.error) return;
   outcome_.counters += counters;
-  collect_answers(error);
-  const double excess = worst_excess();
-  if (!(excess > 1)) {
-    finish(kStatusOk);
-  } else if (loose || tolerance_ / (2 * excess) < kTightestTolerance) {
-    finish(kStatusLoose);
-  } else {
-    tolerance_ /= 2 * excess;
+  shared_.assign(observations_.size(), 0.0);
+  for (std::size_t index = 0; index < shared.size(); ++index) {
+    for (const std::size_t i : at_time_[index]) shared_[i] = shared[index];
   }
+  collect_answers();
+  if (!(worst_excess() > 1)) finish(kStatusOk);
+  else if (last) finish(kStatusLoose);
+  coarser_.clear();
 }
 
 void PointTask::fail(RunError error) {
@@ -206,33 +226,32 @@ void PointTask::fail(RunError error) {
   wants_run_ = false;
 }
 
-Answer PointTask::answer_of(std::size_t i, std::uint32_t o, double error) {
+std::vector<Comparison> PointTask::comparisons(std::size_t i) const {
+  std::vector<Comparison> list;
+  for (const CoarserRun& run : coarser_) list.push_back({run.snapshots[i], run.weights});
+  return list;
+}
+
+Answer PointTask::answer_of(std::size_t i, std::uint32_t o) {
   const Observable& observable = plan_.observables[o];
-  const ObservableRows rows = observable_rows(plan_, functions_, observations_[i].at);
-  if (std::isnan(error)) {
-    return estimate_answer(coarse_[i], fine_[i], rows, observable.row, observable.readings, norms_[i]);
-  }
-  return answer_with_error(fine_[i], error, rows, observable.row, observable.readings, norms_[i]);
+  return estimate_answer(fine_[i], comparisons(i), shared_[i], observable_rows(plan_, functions_, observations_[i].at),
+                         observable.row, observable.readings, norms_[i]);
 }
 
 /// Answers of the observables that read no reduction, and the distribution.
-void PointTask::collect_answers(double error) {
+void PointTask::collect_answers() {
   outcome_.series.assign(plan_.observables.size(), {});
   for (std::size_t i = 0; i < observations_.size(); ++i) {
     const Observation& observation = observations_[i];
     for (const std::uint32_t o : observation.observables) {
       if (reads_reduction(plan_, plan_.observables[o])) continue;
       const bool once = occurrence_of(plan_, plan_.observables[o]) == Occurrence::once;
-      outcome_.series[o].push_back({once ? Instant{0, 0} : observation.at, answer_of(i, o, error)});
+      outcome_.series[o].push_back({once ? Instant{0, 0} : observation.at, answer_of(i, o)});
     }
     if (!observation.distribution) continue;
     outcome_.distribution.clear();
-    const double distance = std::isnan(error) ? state_distance(coarse_[i], fine_[i]) : 0;
     for (std::size_t b = 0; b < fine_[i].distribution.size(); ++b) {
-      const double value = fine_[i].distribution[b];
-      outcome_.distribution.push_back(std::isnan(error)
-                                          ? estimate_probability(coarse_[i].distribution[b], value, distance)
-                                          : Answer{value, error});
+      outcome_.distribution.push_back(estimate_probability(fine_[i], comparisons(i), shared_[i], b));
     }
   }
 }
@@ -264,6 +283,19 @@ double PointTask::worst_excess() const {
   return worst;
 }
 
+/// What reductions and the readings beside them are made of: each reading with the error of its own answer.
+std::vector<Measured> PointTask::readings_with_errors(std::size_t i) const {
+  std::vector<Measured> readings = fine_[i].readings;
+  for (std::size_t r = 0; r < readings.size(); ++r) {
+    double error = 0;
+    for (const CoarserRun& run : coarser_) {
+      error = std::max(error, run.weights.of_difference * std::abs(readings[r].value - run.snapshots[i].readings[r].value));
+    }
+    readings[r].error += error + shared_[i] * norms_[i][r];
+  }
+  return readings;
+}
+
 void PointTask::finish(const char* status) {
   wants_run_ = false;
   outcome_.status = status;
@@ -274,12 +306,8 @@ void PointTask::finish(const char* status) {
     Waiting& next = waiting.emplace_back();
     next.observable = o;
     for (const std::size_t i : places_[o]) {
-      std::vector<Measured> readings = fine_[i].readings;
-      for (std::size_t r = 0; r < readings.size() && !coarse_.empty(); ++r) {
-        readings[r].error += std::abs(readings[r].value - coarse_[i].readings[r].value);
-      }
+      next.readings.push_back(readings_with_errors(i));
       next.instants.push_back(observations_[i].at);
-      next.readings.push_back(std::move(readings));
     }
   }
   complete_reductions(plan_, functions_, std::move(waiting), outcome_);

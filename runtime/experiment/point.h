@@ -42,9 +42,11 @@ class PointTask {
   void visit(std::size_t index, const State& state, double weight);
   void end_run(const Counters& counters);
 
-  /// As end_run(), for a run that knows its own error: that of its populations. `loose`: the run
-  /// could not reach its tolerance, and another would not either.
-  void end_run_with_error(const Counters& counters, double error, bool loose);
+  /// For runs that say themselves what they are to be held against: after the visits of a coarser run,
+  /// end_coarser_run(); after those of the best one, end_best_run(). `shared`: at each of times(), an
+  /// error of the state that all have in common; `last`: there is no better run to be had.
+  void end_coarser_run(Weights weights);
+  void end_best_run(const Counters& counters, std::span<const double> shared, bool last);
 
   void fail(RunError error);
   /// Population that left the levels kept, an upper estimate.
@@ -60,8 +62,11 @@ class PointTask {
   void note_held_offsets();
   Result<InstantReadings, RunError> make_readings(const Observation& observation);
   const InstantReadings* readings_of(std::size_t observation);
-  void collect_answers(double error);
-  Answer answer_of(std::size_t observation, std::uint32_t observable, double error);
+  double largest_phase() const;
+  std::vector<Measured> readings_with_errors(std::size_t observation) const;
+  std::vector<Comparison> comparisons(std::size_t observation) const;
+  void collect_answers();
+  Answer answer_of(std::size_t observation, std::uint32_t observable);
   double worst_excess() const;
   double limit_of(std::uint32_t observable, std::size_t sample) const;
   Result<double, RunError> find_width(const Observation& observation);
@@ -84,8 +89,14 @@ class PointTask {
   Mixture begin_;
 
   std::vector<ReadingSums> sums_;
-  std::vector<Snapshot> coarse_, fine_;
-  int runs_ = 0;
+  /// A run that is less accurate than fine_, at every observation.
+  struct CoarserRun {
+    std::vector<Snapshot> snapshots;
+    Weights weights;
+  };
+  std::vector<Snapshot> fine_;
+  std::vector<CoarserRun> coarser_;
+  std::vector<double> shared_;                     ///< Error of the state at each observation that all runs share.
   double tolerance_ = 0;
   bool wants_run_ = false;
   PointOutcome outcome_;

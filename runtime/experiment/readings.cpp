@@ -12,6 +12,8 @@ namespace {
 
 using Eigen::Index;
 
+constexpr double kOfProjector = 0.5;  ///< (1 + Z)/2: half of what a Pauli word moves by.
+
 Eigen::MatrixXcd single(std::complex<double> value) { return Eigen::MatrixXcd::Constant(1, 1, value); }
 
 double purity_of(const State& state) {
@@ -77,18 +79,18 @@ struct InstantReadings::Preparer {
 
   Outcome operator()(const ReadPopulation& read) const {
     switch (read.set.kind) {
-      case StateSetKind::any: return done(OfSpace{Everything{}, 0}, 1);
-      case StateSetKind::state: return done(OfSpace{lettered_space(read.set.letters), 0}, 1);
+      case StateSetKind::any: return done(OfSpace{Everything{}, 0}, kOfProjector);
+      case StateSetKind::state: return done(OfSpace{lettered_space(read.set.letters), 0}, kOfProjector);
       case StateSetKind::target:
         TARN_CHECK(target != nullptr);
-        return done(OfSpace{BasisStates{target->states}, 0}, 1);
+        return done(OfSpace{BasisStates{target->states}, 0}, kOfProjector);
       case StateSetKind::ground:
       case StateSetKind::level: break;
     }
     auto space = level_space(read.set, levels, at.s, settings);
     if (!space) return Unexpected{space.error()};
     const double error = space->error;
-    return done(OfSpace{std::move(space).value(), error}, 1);
+    return done(OfSpace{std::move(space).value(), error}, kOfProjector);
   }
   Outcome operator()(const ReadMean& read) const { return of_words(scaled_words(read.op, coefficients)); }
   Outcome operator()(const ReadMeanEnergy&) const {
@@ -116,10 +118,10 @@ struct InstantReadings::Preparer {
     }
     return done(OfLevels{{(*found)->energies[above] - (*found)->energies[0], 2 * (*found)->residual}}, 0);
   }
-  Outcome operator()(const ReadPurity&) const { return done(OfPurity{}, 2); }
+  Outcome operator()(const ReadPurity&) const { return done(OfPurity{}, 1); }
   Outcome operator()(const ReadCoherence& read) const;
   Outcome operator()(const ReadFidelity& read) const {
-    return done(OfSpace{lettered_space(read.letters), 0}, 1);
+    return done(OfSpace{lettered_space(read.letters), 0}, kOfProjector);
   }
   Outcome operator()(const ReadReduction&) const { return done(None{}, 0); }
 
@@ -143,7 +145,7 @@ InstantReadings::Preparer::Outcome InstantReadings::Preparer::operator()(const R
   }
   SpannedSpace left = space_of(**found, row_first, row_last), right = space_of(**found, column_first, column_last);
   const double error = left.error + right.error;
-  return done(OfCoherence{std::move(left.vectors), std::move(right.vectors), error}, 1);
+  return done(OfCoherence{std::move(left.vectors), std::move(right.vectors), error}, kOfProjector);
 }
 
 Result<InstantReadings, RunError> InstantReadings::make(const Plan& plan, std::span<const std::uint32_t> rows,

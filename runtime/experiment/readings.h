@@ -40,8 +40,8 @@ class InstantReadings {
   void add(const State& state, double weight, ReadingSums& sums) const;
   /// One number for every reading of the plan.
   std::vector<Measured> finish(const ReadingSums& sums) const;
-  /// What a difference of 1 between two states can do to each reading at most, roughly: the norm
-  /// of its operator; 0 for readings of levels only.
+  /// What two states can differ by in each reading, roughly, where they differ by 1 in the mean of a Pauli
+  /// word: the norm of its operator without the identity; 0 for readings of levels only.
   const std::vector<double>& norms() const { return norms_; }
 
  private:

@@ -31,8 +31,8 @@ Answer answer_of(const Plan& plan, Functions& functions, std::uint32_t o, Instan
   }
   const std::vector<double> no_norms(plan.readings.size(), 0.0);
   const Snapshot snapshot{std::move(readings), {}, {}};
-  return answer_with_error(snapshot, 0, observable_rows(plan, functions, at), observable.row, observable.readings,
-                           no_norms);
+  return estimate_answer(snapshot, {}, 0, observable_rows(plan, functions, at), observable.row, observable.readings,
+                         no_norms);
 }
 
 Sample sample_of(const Plan& plan, const Observable& observable, Instant at, Answer answer) {

@@ -1,6 +1,7 @@
 #pragma once
 /// \file Small invented chips and baths for the tests of Davies' equation.
 
+#include <algorithm>
 #include <cmath>
 #include <complex>
 #include <cstdint>
@@ -11,7 +12,7 @@
 #include <span>
 #include <vector>
 
-#include "runtime/equation/davies.h"
+#include "runtime/equation/davies_refinement.h"
 #include "runtime/levels/family.h"
 
 namespace tarn::runtime::testing {
@@ -125,5 +126,36 @@ Density ground_state(const Track<Scalar>& track, double s) {
 }
 
 inline Timeline ramp(double duration, double s0 = 0, double s1 = 1) { return {{{0, duration, s0, s1}}, s0, s1}; }
+
+/// What refinement to a tolerance gave, with its own word on the error.
+struct Refined {
+  std::vector<Density> states;
+  double error = 0;        ///< Of populations in the computational basis.
+  double state_error = 0;  ///< Of the state: Frobenius norm.
+  double leakage = 0;
+  bool converged = false;
+};
+
+/// Refines until the populations are good to the tolerance, or until nothing more can be done.
+template <class Scalar>
+Result<Refined, RunError> refine_to(double tolerance, const DaviesTables<Scalar>& tables, const DaviesRun& run) {
+  DaviesRefinement<Scalar> refinement(tables, run, {});
+  for (;;) {
+    auto answer = refinement.next();
+    if (!answer) return Unexpected{answer.error()};
+    Refined refined{std::move(answer->states), 0, 0, answer->leakage, false};
+    for (const CoarserStates& coarser : answer->coarser)
+      for (std::size_t k = 0; k < refined.states.size(); ++k) {
+        const Density off = coarser.weight * (coarser.states[k] - refined.states[k]);
+        refined.error = std::max(refined.error, off.diagonal().cwiseAbs().maxCoeff());
+        refined.state_error = std::max(refined.state_error, off.norm());
+      }
+    const double floor = answer->floor.empty() ? 0.0 : *std::max_element(answer->floor.begin(), answer->floor.end());
+    refined.error += floor;
+    refined.state_error += floor;
+    refined.converged = refined.error <= tolerance;
+    if (refined.converged || refinement.exhausted()) return refined;
+  }
+}
 
 }  // namespace tarn::runtime::testing

@@ -32,9 +32,7 @@ double largest_difference(const HamiltonianFamily& family, const std::vector<Bat
   run.timeline = ramp(ta);
   run.initial = initial;
   run.times = {0.3 * ta, 0.5 * ta, ta};
-  DaviesOptions options;
-  options.tolerance = 1e-8;
-  const auto answer = run_davies<Scalar>(tables, run, options);
+  const auto answer = refine_to<Scalar>(1e-8, tables, run);
   REQUIRE(answer);
   CHECK(answer->converged);
   const Brute brute{family, baths, track->tolerance()};
@@ -50,7 +48,7 @@ double largest_difference(const HamiltonianFamily& family, const std::vector<Bat
     CHECK((answer->states[k] - state).diagonal().cwiseAbs().maxCoeff() < 5e-8);
     t = run.times[k];
   }
-  CAPTURE(answer->error, answer->state_error, answer->depth);
+  CAPTURE(answer->error, answer->state_error);
   CHECK(most < 10 * answer->state_error + 1e-9);
   return most;
 }
@@ -98,12 +96,9 @@ TEST_CASE("jumps as written and a drive") {
   lower(0, 1) = 1;
   x(0, 1) = x(1, 0) = 1;
   DaviesRun run{ramp(6), random_state(2, 8), {2.5, 6}, {{lower, 0.05}}, [x](double t) -> Eigen::MatrixXcd { return 0.4 * std::cos(3 * t) * x; }};
-  DaviesOptions options;
-  options.tolerance = 1e-7;
-  const auto answer = run_davies<double>(tables, run, options);
+  const auto answer = refine_to<double>(1e-7, tables, run);
   REQUIRE(answer);
   CHECK(answer->converged);
-  CHECK(answer->explicitly);
   const Brute brute{family, {kBath}, track->tolerance(), run.jumps, run.drive};
   const Density middle = brute.run({0, 2.5, 0, 2.5 / 6}, run.initial, 4000), end = brute.run({2.5, 6, 2.5 / 6, 1}, middle, 6000);
   CHECK((answer->states[0] - middle).cwiseAbs().maxCoeff() < 1e-7);

@@ -16,7 +16,7 @@ template <class Scalar>
 Density hold(const HamiltonianFamily& family, const std::vector<BathFunctions>& baths, double s, double t, const Density& initial) {
   const auto track = std::make_shared<const Track<Scalar>>(dense_levels<Scalar>(family), TrackOptions{});
   const DaviesTables<Scalar> tables(track, baths);
-  const auto answer = run_davies<Scalar>(tables, {{{{0, t, s, s}}, s, s}, initial, {t}, {}, {}}, {});
+  const auto answer = refine_to<Scalar>(1e-6, tables, {{{{0, t, s, s}}, s, s}, initial, {t}, {}, {}});
   REQUIRE(answer);
   CHECK(answer->converged);
   return answer->states.front();

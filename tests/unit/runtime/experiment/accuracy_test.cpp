@@ -86,7 +86,8 @@ TEST_CASE("answers that agree by chance still carry the distance of the states")
   const ObservableRows doubled = [](std::span<const double> r) { return std::vector<double>{2 * r[0]}; };
   const std::vector<std::uint32_t> used = {0};
   const std::vector<double> norms = {1};
-  const Answer answer = estimate_answer(coarse, fine, doubled, 0, used, norms);
+  const std::vector<Comparison> against = {{coarse, kOfLooserKet}};
+  const Answer answer = estimate_answer(fine, against, 0, doubled, 0, used, norms);
   CHECK(answer.value == 0.5);
   CHECK(answer.error > 1e-7);
   CHECK(answer.error < 2e-5);
