@@ -32,8 +32,8 @@ class HeaderWriter {
   explicit HeaderWriter(const ir::Module& module) : module_(module) {}
 
   std::string write() {
-    out_ = "/* The compiled model " + quoted(module_.name) + ". Link its object, or load its shared object,\n" +
-           "   and reach it through `tarn_kernel_table`. */\n\n";
+    out_ = "/* The compiled model " + quoted(module_.name) + ". Link its object with `-lmvec -lm`, or load its\n" +
+           "   shared object, and reach it through `tarn_kernel_table`. */\n\n";
     out_ += kInterface;
     out_ += "\n#ifndef TARN_MODEL_NAMES\n#define TARN_MODEL_NAMES\n\nextern const tarn_kernel tarn_kernel_table;\n";
     inputs();

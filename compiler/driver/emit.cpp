@@ -3,6 +3,7 @@
 
 #include "compiler/codegen/header.h"
 #include "compiler/driver/commands.h"
+#include "compiler/driver/messages.h"
 #include "compiler/driver/model.h"
 #include "compiler/driver/prepare.h"
 #include "compiler/ir/text.h"
@@ -25,7 +26,13 @@ Result<std::string, CompileError> stage_of_instance(const std::string& stage, co
   return generate(lowered.module, stage == "asm" ? Product::assembly : Product::object);
 }
 
-int write(const std::string& text, const std::string& path) {
+int complain(const EmitCommand& command, const Message& message, int status) {
+  show(message, command.model.json_diagnostics);
+  return status;
+}
+
+int write(const std::string& text, const EmitCommand& command) {
+  const std::string& path = command.out;
   if (path.empty()) {
     std::fwrite(text.data(), 1, text.size(), stdout);
     return kFine;
@@ -34,13 +41,7 @@ int write(const std::string& text, const std::string& path) {
   out << text;
   out.close();
   if (out) return kFine;
-  std::fprintf(stderr, "tarn: error: cannot write %s\n", path.c_str());
-  return kWrongInput;
-}
-
-int complain(const std::string& message) {
-  std::fprintf(stderr, "tarn: error: %s\n", message.c_str());
-  return kWrongInput;
+  return complain(command, {"not_written", "`" + path + "` cannot be written"}, kWrongInput);
 }
 
 }  // namespace
@@ -48,14 +49,20 @@ int complain(const std::string& message) {
 int emit_stage(const EmitCommand& command) {
   const auto model = load_model(command.model);
   if (!model) return kWrongInput;
-  if (command.stage == "syntax") return write(dump(model->program.ast(0)), command.out);
-  if (command.stage == "program") return write(dump(model->program), command.out);
+  if (command.stage == "syntax") return write(dump(model->program.ast(0)), command);
+  if (command.stage == "program") return write(dump(model->program), command);
   const auto chosen = choose_experiments(*model, command.model, command.experiment);
-  if (!chosen) return kWrongInput;
-  if (chosen->size() != 1) return complain("say which with --experiment NAME: the model has " + std::to_string(chosen->size()) + " experiments");
-  const auto text = stage_of_instance(command.stage, chosen->front().instances.front(), model->program.sources());
-  if (!text) return complain(text.error().message);
-  return write(*text, command.out);
+  if (!chosen || !chosen->complete) return kWrongInput;
+  const std::size_t count = chosen->fitting.size();
+  if (count != 1) {
+    return complain(command,
+                    {"command_line", "the model has " + (count == 0 ? "no" : std::to_string(count)) + " experiments",
+                     count == 0 ? "stages up to `program` need none" : "say which with `--experiment NAME`"},
+                    kWrongInput);
+  }
+  const auto text = stage_of_instance(command.stage, chosen->fitting.front().instances.front(), model->program.sources());
+  if (!text) return complain(command, {"no_kernel", text.error().message}, kIncomplete);
+  return write(*text, command);
 }
 
 }  // namespace tarn::compiler

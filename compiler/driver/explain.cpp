@@ -7,9 +7,12 @@
 
 #include "compiler/driver/commands.h"
 #include "compiler/driver/explain_levels.h"
+#include "compiler/driver/messages.h"
 #include "compiler/driver/model.h"
 #include "lang/quantities/constants.h"
 #include "runtime/experiment/functions.h"
+#include "runtime/experiment/memory.h"
+#include "runtime/experiment/plan_model.h"
 
 namespace tarn::compiler {
 namespace {
@@ -155,6 +158,28 @@ void write_kernels(Out& out, const Prepared& prepared, const EngineReport& repor
        prepared.module.tables.size());
 }
 
+/// What the equation takes: levels and their spacing, transitions, memory.
+void write_cost(Out& out, const Prepared& prepared) {
+  const runtime::Plan& plan = prepared.plan;
+  constexpr double kMib = 1 << 20;
+  const auto need = runtime::memory_needed(plan, runtime::lanes_used(plan, prepared.kernel));
+  if (plan.equation == runtime::Equation::davies) {
+    const std::size_t all = std::size_t{1} << plan.chip.qubits.size();
+    const std::size_t kept = std::min<std::size_t>(all, plan.levels.value_or(static_cast<std::uint32_t>(all)));
+    line(out, "\n  davies: {} of {} levels, {} pairs of them, {} noise operator{}", kept, all, kept * (kept - 1) / 2,
+         plan.chip.couplings.size(), plan.chip.couplings.size() == 1 ? "" : "s");
+    const std::size_t rows = all <= 256 ? 101 : 3;
+    if (const auto spacing = smallest_spacing(prepared, kept, rows)) {
+      line(out, "    smallest spacing of neighbouring levels seen: {:.6g} GHz at s = {:.3g}", spacing->distance / kGigahertz,
+           spacing->s);
+    }
+  }
+  if (plan.equation != runtime::Equation::none) {
+    line(out, "  memory of a run: about {:.3g} MiB, and {:.3g} MiB more for each further job", (need.common + need.each_job) / kMib,
+         need.each_job / kMib);
+  }
+}
+
 }  // namespace
 
 std::string explain(const Instance& instance, const Prepared& prepared, const EngineReport& report) {
@@ -165,6 +190,7 @@ std::string explain(const Instance& instance, const Prepared& prepared, const En
   write_noise(out, prepared, functions);
   write_levels(out, prepared);
   write_kernels(out, prepared, report);
+  write_cost(out, prepared);
   for (const std::string& what : prepared.plan.left_out) line(out, "  left out: {}", what);
   for (const std::string& remark : prepared.plan.remarks) line(out, "  remark: {}", remark);
   return fmt::to_string(out);
@@ -176,17 +202,17 @@ int explain_model(const ExplainCommand& command) {
   const auto chosen = choose_experiments(*model, command.model, command.experiment);
   if (!chosen) return kWrongInput;
   bool first = true;
-  for (const ChosenExperiment& experiment : *chosen) {
+  for (const ChosenExperiment& experiment : chosen->fitting) {
     EngineReport report;
     const auto prepared = prepare(experiment.instances.front(), model->program.sources(), {.cache = command.compile.cache}, report);
     if (!prepared) {
-      fmt::print(stderr, "tarn: error: {}\n", prepared.error().message);
+      show({"no_kernel", prepared.error().message}, command.model.json_diagnostics);
       return kIncomplete;
     }
     fmt::print("{}{}", first ? "" : "\n", explain(experiment.instances.front(), *prepared, report));
     first = false;
   }
-  return kFine;
+  return chosen->complete ? kFine : kWrongInput;
 }
 
 }  // namespace tarn::compiler

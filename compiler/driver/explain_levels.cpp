@@ -73,4 +73,23 @@ LevelSummary levels_along(const Prepared& prepared, std::size_t rows) {
   return summary;
 }
 
+std::optional<Spacing> smallest_spacing(const Prepared& prepared, std::size_t count, std::size_t rows) {
+  const runtime::Functions functions(prepared.kernel, prepared.tables, prepared.plan);
+  ChipLevels levels(prepared.plan, prepared.kernel, functions, [] { return false; });
+  std::optional<Spacing> smallest;
+  for (std::size_t k = 0; k < rows; ++k) {
+    const double s = static_cast<double>(k) / static_cast<double>(rows - 1);
+    const auto found = levels.lowest(s, static_cast<Eigen::Index>(count));
+    if (!found) return std::nullopt;
+    const auto& energies = (*found)->energies;
+    const auto last = std::min<Eigen::Index>(static_cast<Eigen::Index>(count), energies.size());
+    for (Eigen::Index j = 0; j + 1 < last; ++j) {
+      if (runtime::coinciding(**found, j).second > j + 1) continue;
+      const double distance = energies[j + 1] - energies[j];
+      if (!smallest || distance < smallest->distance) smallest = Spacing{distance, s};
+    }
+  }
+  return smallest;
+}
+
 }  // namespace tarn::compiler

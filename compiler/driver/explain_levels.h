@@ -26,4 +26,12 @@ struct LevelSummary {
 
 LevelSummary levels_along(const Prepared& prepared, std::size_t rows);
 
+/// The smallest distance between neighbours among the lowest `count` levels, those that coincide
+/// counting as one, over `rows` >= 2 even s with both ends. None if all coincide or none can be had.
+struct Spacing {
+  double distance = 0;  ///< [rad/ns]
+  double s = 0;
+};
+std::optional<Spacing> smallest_spacing(const Prepared& prepared, std::size_t count, std::size_t rows);
+
 }  // namespace tarn::compiler

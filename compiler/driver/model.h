@@ -16,7 +16,8 @@ struct LoadedModel {
   Overrides overrides;
 };
 
-/// Reads and checks the model; shows its messages on standard error. Nothing if it has errors.
+/// Reads and checks the model; shows its messages on standard error. Nothing if it has errors, but for
+/// experiments that do not fit the memory: those are choose_experiments()'s business.
 std::optional<LoadedModel> load_model(const ModelOptions& options);
 
 /// One experiment chosen to be shown or run.
@@ -25,15 +26,17 @@ struct ChosenExperiment {
   std::vector<Instance> instances;  ///< In grid order; more than one where a count is swept.
 };
 
+struct ChosenExperiments {
+  std::vector<ChosenExperiment> fitting;
+  bool complete = true;  ///< False: some experiment does not fit the memory, as was said.
+};
+
 /// The experiment with this name, or all of the main file; messages on standard error, nothing
 /// after errors. Overrides that change nothing in any of the chosen experiments are errors.
-std::optional<std::vector<ChosenExperiment>> choose_experiments(const LoadedModel& model, const ModelOptions& options,
-                                                                const std::string& name);
+std::optional<ChosenExperiments> choose_experiments(const LoadedModel& model, const ModelOptions& options,
+                                                    const std::string& name);
 
 /// On standard error, as text or as JSON lines.
 void show_diagnostics(const Diagnostics& diagnostics, const SourceSet& sources, bool json);
-
-/// True where standard error is a terminal and NO_COLOR is not set.
-bool colour_wanted();
 
 }  // namespace tarn::compiler

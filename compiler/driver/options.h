@@ -53,15 +53,20 @@ struct EmitCommand {
   std::string stage;
   std::string out;          ///< Empty: standard output.
 };
-/// Text for --help and --version, or a complaint about the command line.
-struct Exit {
-  int status = 0;
-  std::string text;
+/// Text for --help and --version.
+struct HelpCommand { std::string text; };
+/// What is wrong with the command line.
+struct WrongCommandLine {
+  std::string text, remedy;
 };
-using Command = std::variant<CheckCommand, ExplainCommand, RunCommand, TidyCommand, EmitCommand, Exit>;
+using Command =
+    std::variant<CheckCommand, ExplainCommand, RunCommand, TidyCommand, EmitCommand, HelpCommand, WrongCommandLine>;
 
 /// Stages of `tarn emit`, in the order of the flow.
 const std::vector<std::string>& emit_stages();
+
+/// True if the command line asks for `--diagnostics json`, whatever else is wrong with it.
+bool asks_for_json(int argc, const char* const* argv);
 
 Command parse_command_line(int argc, const char* const* argv);
 

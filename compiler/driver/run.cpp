@@ -3,16 +3,21 @@
 #include <fmt/format.h>
 #include <unistd.h>
 
-#include <atomic>
+#include <chrono>
 #include <csignal>
 #include <cstdio>
 #include <filesystem>
+#include <set>
 #include <thread>
 
 #include "compiler/driver/commands.h"
+#include "compiler/driver/messages.h"
 #include "compiler/driver/model.h"
 #include "compiler/driver/prepare.h"
 #include "compiler/jit/digest.h"
+#include "runtime/experiment/memory.h"
+#include "runtime/experiment/notices.h"
+#include "runtime/experiment/plan_model.h"
 #include "runtime/experiment/summary.h"
 
 namespace tarn::compiler {
@@ -35,7 +40,8 @@ void listen_for_stop() {
 /// Points done and time left, on one line that is written over; nothing unless on a terminal.
 class ProgressLine {
  public:
-  explicit ProgressLine(std::string experiment) : experiment_(std::move(experiment)), shown_(isatty(STDERR_FILENO) != 0) {}
+  ProgressLine(std::string experiment, bool wanted)
+      : experiment_(std::move(experiment)), shown_(wanted && isatty(STDERR_FILENO) != 0) {}
   ~ProgressLine() {
     if (shown_) std::fputs("\r\033[K", stderr);
   }
@@ -53,12 +59,37 @@ class ProgressLine {
   bool shown_;
 };
 
-runtime::Provenance provenance_of(const SourceSet& sources) {
+/// A name relative to the main model's folder, so that where the command was given makes no difference.
+std::string name_in_model(const std::string& name, const std::string& main_file) {
+  if (name.starts_with('<')) return name;
+  const std::filesystem::path folder = std::filesystem::path(main_file).lexically_normal().parent_path();
+  const std::filesystem::path path = std::filesystem::path(name).lexically_normal();
+  return folder.empty() ? path.generic_string() : path.lexically_relative(folder).generic_string();
+}
+
+/// Texts that stand in no file: what `--set` gave is found among the parameters and counts.
+std::set<std::uint32_t> settings_of(const Program& program) {
+  std::set<std::uint32_t> files;
+  for (const Module& module : program.loaded->modules) {
+    if (module.path.empty() && !module.library) files.insert(module.ast.file.row);
+  }
+  return files;
+}
+
+runtime::Provenance provenance_of(const LoadedModel& model, const RunCommand& command) {
   runtime::Provenance provenance;
   provenance.version = TARN_VERSION;
+  provenance.build = program_build();
+  const SourceSet& sources = model.program.sources();
+  const std::set<std::uint32_t> settings = settings_of(model.program);
   for (std::uint32_t file = 0; file < sources.size(); ++file) {
     const SourceFile& source = sources.file(FileId{file});
-    provenance.texts.push_back({source.name, to_hex(sha256(source.text))});
+    if (settings.contains(file)) continue;
+    provenance.texts.push_back({name_in_model(source.name, command.model.file), to_hex(sha256(source.text))});
+  }
+  for (const ProgramParameter& parameter : model.program.parameters) {
+    const auto set = model.overrides.find(parameter.name);
+    if (parameter.count && set != model.overrides.end()) provenance.counts[parameter.name] = set->second;
   }
   char host[256] = {};
   if (gethostname(host, sizeof host - 1) == 0) provenance.host = host;
@@ -74,52 +105,128 @@ unsigned jobs_of(const RunCommand& command) {
   return command.jobs > 0 ? command.jobs : std::max(1U, std::thread::hardware_concurrency());
 }
 
-int complain(const std::string& message, int status) {
-  fmt::print(stderr, "tarn: error: {}\n", message);
-  return status;
-}
-
-Result<std::vector<runtime::PlanAndKernel>, CompileError> prepare_all(const ChosenExperiment& experiment,
-                                                                      const SourceSet& sources,
-                                                                      const RunCommand& command,
-                                                                      EngineReport& report) {
+/// An experiment whose kernels are there.
+struct ReadyExperiment {
+  std::string name;
   std::vector<runtime::PlanAndKernel> plans;
-  for (const Instance& instance : experiment.instances) {
-    auto prepared = prepare(instance, sources, {.cache = command.compile.cache}, report);
-    if (!prepared) return Unexpected{prepared.error()};
-    plans.push_back({std::move(prepared->plan), prepared->kernel, std::move(prepared->tables)});
-  }
-  return plans;
-}
-
-void show_timings(const EngineReport& engine, const runtime::RunReport& run) {
-  fmt::print(stderr, "kernels: {} compiled, {} from the cache, {:.3f} s; points: {:.3f} s\n", engine.compiled,
-             engine.cache_hits, engine.seconds, run.seconds);
-}
-
-int run_one(const ChosenExperiment& experiment, const LoadedModel& model, const RunCommand& command,
-            double seconds_left) {
   EngineReport engine;
-  const auto plans = prepare_all(experiment, model.program.sources(), command, engine);
-  for (const std::string& remark : engine.remarks) fmt::print(stderr, "tarn: remark: {}\n", remark);
-  if (!plans) return complain(plans.error().message, kIncomplete);
-  runtime::RunOptions options;
-  options.jobs = jobs_of(command);
-  options.sample = command.sample;
-  options.out = results_folder(command);
-  options.interrupted = [] { return stop_requested != 0; };
-  options.provenance = provenance_of(model.program.sources());
-  if (command.time_limit) options.time_limit = seconds_left;
-  const auto report = [&] {
-    const ProgressLine progress(experiment.name);
-    options.progress = [&](std::uint64_t done, std::uint64_t total, double left) { progress(done, total, left); };
-    return runtime::run_experiment(*plans, options);
-  }();
-  if (!report) return complain(report.error().message, kWrongInput);
-  fmt::print("{}", runtime::summary(*report));
-  fmt::print("results in {}\n", (*options.out / experiment.name).string());
-  if (command.timings) show_timings(engine, *report);
-  return runtime::exit_status(*report);
+};
+
+/// One command while it is carried out.
+class Session {
+ public:
+  Session(const RunCommand& command, const LoadedModel& model) : command_(command), model_(model) {
+    options_.sample = command.sample;
+    options_.out = results_folder(command);
+    options_.interrupted = [] { return stop_requested != 0; };
+    options_.provenance = provenance_of(model, command);
+  }
+
+  std::optional<ReadyExperiment> prepare_experiment(const ChosenExperiment& experiment) const;
+  bool folder_is_fine(const ReadyExperiment& experiment) const;
+  int run(const ReadyExperiment& experiment);
+
+ private:
+  void say(const Message& message) const {
+    show(message, command_.model.json_diagnostics, &model_.program.sources());
+  }
+  void pass_on(const runtime::Notice& notice) const;
+  bool fits_the_memory(const ReadyExperiment& experiment);
+  runtime::RunReport run_with_progress(const ReadyExperiment& experiment) const;
+
+  const RunCommand& command_;
+  const LoadedModel& model_;
+  runtime::RunOptions options_;
+  std::chrono::steady_clock::time_point start_ = std::chrono::steady_clock::now();
+};
+
+std::optional<ReadyExperiment> Session::prepare_experiment(const ChosenExperiment& experiment) const {
+  ReadyExperiment ready{experiment.name, {}, {}};
+  for (const Instance& instance : experiment.instances) {
+    auto prepared = prepare(instance, model_.program.sources(), {.cache = command_.compile.cache}, ready.engine);
+    if (!prepared) {
+      say({"no_kernel", prepared.error().message});
+      return std::nullopt;
+    }
+    ready.plans.push_back({std::move(prepared->plan), prepared->kernel, std::move(prepared->tables)});
+  }
+  for (const std::string& remark : ready.engine.remarks) say({"cache_not_used", remark, "", Severity::remark});
+  return ready;
+}
+
+bool Session::folder_is_fine(const ReadyExperiment& experiment) const {
+  const auto judged = runtime::judge_folder(experiment.plans, options_);
+  if (!judged) say({judged.error().kind, judged.error().message, judged.error().remedy});
+  return judged.has_value();
+}
+
+void Session::pass_on(const runtime::Notice& notice) const {
+  const Severity severity = notice.gravity == runtime::Gravity::error     ? Severity::error
+                            : notice.gravity == runtime::Gravity::warning ? Severity::warning
+                                                                          : Severity::remark;
+  say({notice.kind, notice.text, notice.remedy, severity, notice.place});
+}
+
+/// Sets how many points go at a time: fewer than asked for where the memory is short.
+bool Session::fits_the_memory(const ReadyExperiment& experiment) {
+  constexpr double kGib = 1 << 30;
+  options_.jobs = jobs_of(command_);
+  const std::optional<double> available = runtime::memory_available();
+  if (!available) return true;
+  runtime::MemoryNeed need;
+  for (const runtime::PlanAndKernel& each : experiment.plans) {
+    const runtime::MemoryNeed one = runtime::memory_needed(each.plan, runtime::lanes_used(each.plan, each.kernel));
+    if (one.common + one.each_job > need.common + need.each_job) need = one;
+  }
+  const std::size_t fitting = runtime::jobs_that_fit(need, options_.jobs, *available);
+  if (fitting == options_.jobs) return true;
+  const std::string amounts = fmt::format("a point of `{}` takes about {:.3g} GiB, {:.3g} GiB are free", experiment.name,
+                                          (need.common + need.each_job) / kGib, *available / kGib);
+  if (fitting == 0) {
+    say({"memory_short", amounts, "use fewer qubits or `levels`, or a larger machine"});
+    return false;
+  }
+  say({"fewer_jobs", fmt::format("{}: {} at a time instead of {}", amounts, fitting, options_.jobs), "", Severity::remark});
+  options_.jobs = fitting;
+  return true;
+}
+
+runtime::RunReport Session::run_with_progress(const ReadyExperiment& experiment) const {
+  runtime::RunOptions options = options_;
+  if (command_.time_limit) {
+    const std::chrono::duration<double> used = std::chrono::steady_clock::now() - start_;
+    options.time_limit = std::max(0.0, *command_.time_limit - used.count());
+  }
+  const ProgressLine progress(experiment.name, !command_.model.json_diagnostics);
+  options.progress = [&](std::uint64_t done, std::uint64_t total, double left) { progress(done, total, left); };
+  auto report = runtime::run_experiment(experiment.plans, options);
+  if (report) return std::move(report).value();
+  // The folder changed under our hands since it was judged.
+  runtime::RunReport refused;
+  refused.experiment = experiment.name;
+  refused.any_plan = &experiment.plans.front().plan;
+  refused.not_written = report.error();
+  return refused;
+}
+
+int Session::run(const ReadyExperiment& experiment) {
+  if (!fits_the_memory(experiment)) return kIncomplete;
+  const runtime::RunReport report = run_with_progress(experiment);
+  fmt::print("{}", runtime::summary(report));
+  if (!report.not_written) fmt::print("results in {}\n", (*options_.out / experiment.name).string());
+  std::fflush(stdout);
+  for (const runtime::Notice& notice : runtime::notices_of(report)) pass_on(notice);
+  if (command_.model.json_diagnostics) {
+    for (const runtime::Notice& notice : runtime::failed_claims(report)) pass_on(notice);
+  }
+  if (command_.timings) {
+    const std::string times =
+        fmt::format("kernels: {} compiled, {} from the cache, {:.3f} s; points: {:.3f} s", experiment.engine.compiled,
+                    experiment.engine.cache_hits, experiment.engine.seconds, report.seconds);
+    if (command_.model.json_diagnostics) say({"timings", times, "", Severity::remark});
+    else fmt::print(stderr, "{}\n", times);
+  }
+  return runtime::exit_status(report);
 }
 
 /// The graver of two exit statuses: 2, then 3, then 1, then 0.
@@ -131,19 +238,29 @@ int graver(int a, int b) {
 }  // namespace
 
 int run_model(const RunCommand& command) {
-  const auto start = std::chrono::steady_clock::now();
   const auto model = load_model(command.model);
   if (!model) return kWrongInput;
   const auto chosen = choose_experiments(*model, command.model, command.experiment);
   if (!chosen) return kWrongInput;
-  if (chosen->empty()) return complain("the model has no experiment to run", kWrongInput);
+  int status = chosen->complete ? kFine : kWrongInput;
+  if (chosen->fitting.empty() && chosen->complete) {
+    show({"nothing_to_run", "the model has no experiment", "`experiment NAME { ... }` says what is done with a chip"},
+         command.model.json_diagnostics);
+    return kWrongInput;
+  }
   listen_for_stop();
-  int status = kFine;
-  for (const ChosenExperiment& experiment : *chosen) {
-    const std::chrono::duration<double> used = std::chrono::steady_clock::now() - start;
-    const double left = std::max(0.0, command.time_limit.value_or(0) - used.count());
-    status = graver(status, run_one(experiment, *model, command, left));
-    if (stop_requested != 0) break;
+  Session session(command, *model);
+  std::vector<ReadyExperiment> ready;
+  for (const ChosenExperiment& experiment : chosen->fitting) {
+    auto prepared = session.prepare_experiment(experiment);
+    if (prepared) ready.push_back(std::move(*prepared));
+    else status = graver(status, kIncomplete);
+  }
+  bool refused = false;
+  for (const ReadyExperiment& experiment : ready) refused |= !session.folder_is_fine(experiment);
+  if (refused) return kWrongInput;
+  for (const ReadyExperiment& experiment : ready) {
+    status = graver(status, stop_requested != 0 ? kIncomplete : session.run(experiment));
   }
   return status;
 }

@@ -5,6 +5,7 @@
 #include <fstream>
 
 #include "compiler/driver/commands.h"
+#include "compiler/driver/messages.h"
 #include "compiler/driver/model.h"
 #include "lang/source/loader.h"
 
@@ -52,7 +53,8 @@ int tidy_model(const TidyCommand& command) {
     return kFine;
   }
   if (replace_file(std::filesystem::canonical(command.model.file), *text)) return kFine;
-  std::fprintf(stderr, "tarn: error: cannot write %s\n", command.model.file.c_str());
+  show({"not_written", "`" + command.model.file + "` cannot be written", "look at its permissions and its folder's"},
+       command.model.json_diagnostics);
   return kWrongInput;
 }
 

@@ -164,6 +164,14 @@ Result<Kernel, CompileError> compile(const ir::Module& module, const EngineOptio
   return result;
 }
 
+std::string program_build() {
+  const std::string own = build_id("/proc/self/exe").value_or("");
+  const auto plugin = find_plugin();
+  const std::string generator = plugin ? build_id(*plugin).value_or("") : "";
+  constexpr std::size_t kDigits = 16;
+  return to_hex(sha256(own + "\n" + generator)).substr(0, kDigits);
+}
+
 Result<std::string, CompileError> generate(const ir::Module& module, Product product, const EngineOptions& options) {
   const auto path = plugin_path(options);
   if (!path) return error(path.error().message);

@@ -40,6 +40,10 @@ struct CompileError {
 Result<runtime::Kernel, CompileError> compile(const ir::Module& module, const EngineOptions& options = {},
                                               EngineReport* report = nullptr);
 
+/// 16 hexadecimal digits that are others for another build of this program or of the code generator:
+/// the bits of answers depend on both. Parts that cannot be read count as empty.
+std::string program_build();
+
 enum class Product { llvm, assembly, object };
 
 /// What the code generator makes of a Module: LLVM IR or assembly as text, or an ELF object.

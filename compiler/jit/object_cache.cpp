@@ -6,6 +6,7 @@
 
 #include <atomic>
 #include <cerrno>
+#include <chrono>
 #include <cstdlib>
 #include <cstring>
 #include <filesystem>
@@ -71,6 +72,25 @@ std::string trailer_of(std::string_view bytes, const Digest& key) {
 
 Unexpected<Remark> remark(std::string message) { return Unexpected{Remark{std::move(message)}}; }
 
+/// Files that a living compilation still writes are younger than this.
+constexpr auto kAbandoned = std::chrono::hours(1);
+
+bool is_temporary(const std::filesystem::path& path) {
+  const std::string name = path.filename().string();
+  return name.ends_with(".tmp") || name.ends_with(".tmp.so");
+}
+
+void remove_abandoned(const std::string& directory) {
+  std::error_code failed;
+  const auto oldest = std::filesystem::file_time_type::clock::now() - kAbandoned;
+  for (std::filesystem::directory_iterator entry(directory, failed), end; !failed && entry != end; entry.increment(failed)) {
+    std::error_code unknown;
+    if (!is_temporary(entry->path())) continue;
+    const auto written = std::filesystem::last_write_time(entry->path(), unknown);
+    if (!unknown && written < oldest) std::filesystem::remove(entry->path(), unknown);
+  }
+}
+
 }  // namespace
 
 std::string default_cache_directory() {
@@ -93,6 +113,7 @@ Result<ObjectCache, Remark> ObjectCache::open(const std::string& directory) {
   struct stat info {};
   if (::stat(directory.c_str(), &info) != 0 || !S_ISDIR(info.st_mode)) return remark(directory + ": is not a folder");
   if (!belongs_to_us(info)) return remark(directory + ": is not used, since others may write to it");
+  remove_abandoned(directory);
   return ObjectCache(directory);
 }
 

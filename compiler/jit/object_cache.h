@@ -34,7 +34,8 @@ struct Entry {
 /// A cache folder that belongs to this user alone.
 class ObjectCache {
  public:
-  /// Makes the folder (mode 0700) if it is missing. Remarks: it cannot be made, is another user's, or
+  /// Makes the folder (mode 0700) if it is missing and removes what compilations that were killed left
+  /// in it over an hour ago. Remarks: it cannot be made, is another user's, or
   /// others may write to it.
   static Result<ObjectCache, Remark> open(const std::string& directory);
 

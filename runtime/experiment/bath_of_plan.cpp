@@ -3,6 +3,7 @@
 #include <fmt/format.h>
 
 #include <cmath>
+#include <numbers>
 
 namespace tarn::runtime {
 namespace {
@@ -35,7 +36,47 @@ struct Filled {
   }
 };
 
+/// Internal units in those that answers are shown in: hbar and kB are the SI's exact values.
+constexpr double kGigahertz = 2 * std::numbers::pi;                                            // [rad/ns]
+constexpr double kMillikelvin = 1.380649e-23 * 1e-3 / (6.62607015e-34 / kGigahertz) * 1e-9;    // kB T/hbar [rad/ns]
+
+/// A number of a bath in its unit; eta and exponents are plain.
+std::string shown(std::string_view parameter, double value) {
+  if (parameter == "temperature") return fmt::format("{:.6g} mK", value / kMillikelvin);
+  if (parameter == "eta" || parameter == "s" || parameter.starts_with("rows")) return fmt::format("{:.6g}", value);
+  return fmt::format("{:.6g} GHz", value / kGigahertz);
+}
+
+std::string_view name_of(std::string_view parameter) {
+  if (parameter == "eta") return "strength";
+  if (parameter == "s") return "exponent";
+  return parameter;
+}
+
+/// What is wrong with a bath's numbers, in the user's units, and what would mend it.
+std::string fault_of(const BathError& error) {
+  const std::string value = shown(error.parameter, error.value);
+  const std::string_view name = name_of(error.parameter);
+  switch (error.code) {
+    case BathErrorCode::out_of_range:
+    case BathErrorCode::bad_table:
+      return fmt::format("its {} is {}; it must be {}", name, value, error.range);
+    case BathErrorCode::negative_density:
+      return fmt::format("J(w) is negative or not finite at w = {:.6g} GHz; limit its band or correct it",
+                         error.value / kGigahertz);
+    case BathErrorCode::zero_rate_diverges:
+      return "its rate at zero frequency is infinite; give J(w) that falls with w at small w, at least as w";
+    case BathErrorCode::times_diverge: return to_text(error);
+  }
+  return {};
+}
+
 }  // namespace
+
+RunError bath_error(const Plan& plan, std::uint32_t row, const BathError& error) {
+  const Bath& bath = plan.chip.baths[row];
+  return {"bad_bath", fmt::format("bath `{}`: {}", bath.name, fault_of(error)), bath.place};
+}
 
 Result<ThermalBath, RunError> make_bath(const Plan& plan, std::uint32_t row, std::span<const double> settings,
                                         std::shared_ptr<const Functions> functions) {
@@ -46,7 +87,7 @@ Result<ThermalBath, RunError> make_bath(const Plan& plan, std::uint32_t row, std
   }
   auto made = ThermalBath::make(std::move(density), settings[bath.temperature.row]);
   if (made) return made.value();
-  return Unexpected{RunError{"bad_bath", fmt::format("bath `{}`: {}", bath.name, to_text(made.error())), bath.place}};
+  return Unexpected{bath_error(plan, row, made.error())};
 }
 
 std::vector<double> bath_fingerprint(const Plan& plan, std::uint32_t row, std::span<const double> settings,

@@ -17,6 +17,9 @@ namespace tarn::runtime {
 Result<ThermalBath, RunError> make_bath(const Plan& plan, std::uint32_t row, std::span<const double> settings,
                                         std::shared_ptr<const Functions> functions);
 
+/// `bad_bath` with the fault in the units results are shown in (mK, GHz).
+RunError bath_error(const Plan& plan, std::uint32_t row, const BathError& error);
+
 /// Numbers that two points must share, bit by bit, for the bath to be the same.
 std::vector<double> bath_fingerprint(const Plan& plan, std::uint32_t row, std::span<const double> settings,
                                      const Functions& functions);

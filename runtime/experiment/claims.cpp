@@ -196,6 +196,7 @@ Result<Done, RunError> tally_point(const Plan& plan, const Claim& claim, const C
     }
     const auto judgement = judge(claim.holds, rows, spot.values, spot.errors, spot.at);
     if (!judgement) return Unexpected{judgement.error()};
+    if (judgement->verdict == Verdict::undecided && std::isnan(judgement->margin)) ++tally.valueless;
     add(*judgement, outcome.index, along ? std::optional(spot.at) : std::nullopt, tally);
   }
   return Done{};
@@ -206,6 +207,10 @@ ClaimReport conclude(const Claim& claim, const ClaimTally& tally, bool sampled, 
   if (tally.failing > 0) {
     report.verdict = Verdict::fails;
     report.reason = fmt::format("fails at {} of {} places", tally.failing, tally.selected);
+  } else if (tally.valueless > 0) {
+    report.verdict = Verdict::fails;
+    report.reason = fmt::format("an observable has no value at {} of {} places, which `where` can leave out",
+                                tally.valueless, tally.selected);
   } else if (tally.straddling > 0) {
     report.verdict = Verdict::fails;
     report.reason = fmt::format("the error straddles the limit at {} of {} places", tally.straddling, tally.selected);

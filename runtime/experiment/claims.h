@@ -33,6 +33,7 @@ struct Judgement {
 struct ClaimTally {
   std::uint64_t selected = 0;        ///< Places where `where` holds, or may hold within its error.
   std::uint64_t holding = 0, failing = 0, straddling = 0;
+  std::uint64_t valueless = 0;       ///< Of those straddling: an observable has no value there.
   std::optional<Judgement> weakest;  ///< The smallest margin met, and where.
   std::uint64_t weakest_point = 0;   ///< Grid index.
   std::optional<Instant> weakest_at; ///< The instant, of a claim on a trace or a scan.

@@ -1,6 +1,7 @@
 #include "runtime/experiment/folder.h"
 
 #include <fmt/format.h>
+#include <unistd.h>
 
 #include <array>
 #include <fstream>
@@ -35,25 +36,90 @@ std::optional<std::string> read_file(const fs::path& path) {
   return text.str();
 }
 
-Unexpected<FolderError> refuse(std::string kind, std::string message) {
-  return Unexpected{FolderError{std::move(kind), std::move(message)}};
+constexpr const char* kElsewhere = "choose another folder with --out";
+
+Unexpected<FolderError> refuse(std::string kind, std::string message, std::string remedy = {}) {
+  return Unexpected{FolderError{std::move(kind), std::move(message), std::move(remedy)}};
+}
+
+/// A number as the user would write it.
+std::string number(const ordered_json& value) {
+  return value.is_number() ? fmt::format("{}", value.get<double>()) : value.dump();
+}
+
+/// What differs between two objects of names and values, in the user's words.
+void compare_named(const ordered_json& there, const ordered_json& here, const char* what,
+                   std::vector<std::string>& differences) {
+  for (const auto& [name, value] : here.items()) {
+    if (!there.contains(name)) differences.push_back(fmt::format("{} {} is new", what, name));
+    else if (there[name] != value) {
+      differences.push_back(fmt::format("{} {} is {} there, {} here", what, name, number(there[name]), number(value)));
+    }
+  }
+  for (const auto& [name, value] : there.items()) {
+    if (!here.contains(name)) differences.push_back(fmt::format("{} {} is gone", what, name));
+  }
+}
+
+ordered_json digests(const ordered_json& key) {
+  ordered_json result = ordered_json::object();
+  for (const ordered_json& text : key.value("texts", ordered_json::array())) {
+    result[text.value("name", "")] = text.value("sha256", "");
+  }
+  return result;
+}
+
+/// In what two keys differ, three things at most.
+std::string differences_of(const ordered_json& there, const ordered_json& here) {
+  std::vector<std::string> all;
+  if (there.value("version", "") != here.value("version", "")) {
+    all.push_back(fmt::format("version {} there, {} here", there.value("version", ""), here.value("version", "")));
+  } else if (there.value("build", "") != here.value("build", "")) {
+    all.push_back("another build of the program");
+  }
+  const ordered_json old_texts = digests(there), texts = digests(here);
+  for (const auto& [name, digest] : texts.items()) {
+    if (!old_texts.contains(name)) all.push_back(fmt::format("`{}` was not read", name));
+    else if (old_texts[name] != digest) all.push_back(fmt::format("`{}` has changed", name));
+  }
+  for (const auto& [name, digest] : old_texts.items()) {
+    if (!texts.contains(name)) all.push_back(fmt::format("`{}` is not read any more", name));
+  }
+  for (const char* group : {"parameters", "counts"}) {
+    const ordered_json none = ordered_json::object();
+    const bool count = group[0] == 'c';
+    compare_named(there.value(group, none), here.value(group, none), count ? "count" : "parameter", all);
+  }
+  if (all.empty()) return "another form of record";
+  constexpr std::size_t kMost = 3;
+  std::string text = all.front();
+  for (std::size_t i = 1; i < std::min(kMost, all.size()); ++i) text += "; " + all[i];
+  return all.size() > kMost ? fmt::format("{}; and {} more", text, all.size() - kMost) : text;
+}
+
+/// False where the folder cannot be made or nothing can be written into it.
+bool may_be_written(const fs::path& folder) {
+  std::error_code failure;
+  fs::path place = fs::absolute(folder, failure);
+  while (!fs::exists(place, failure) && place.has_relative_path()) place = place.parent_path();
+  return fs::is_directory(place, failure) && access(place.c_str(), W_OK | X_OK) == 0;
 }
 
 Result<Done, FolderError> check_key(const fs::path& folder, const FolderContents& contents, const ordered_json& key) {
   const auto record = contents.find("run.json");
   if (record == contents.end()) {
     if (contents.empty()) return Done{};
-    return refuse("foreign_file", fmt::format("`{}` has results but no run.json; choose another folder with --out",
-                                              folder.string()));
+    return refuse("foreign_file", fmt::format("`{}` has results but no run.json", folder.string()), kElsewhere);
   }
   const ordered_json run = ordered_json::parse(record->second, nullptr, false);
   if (run.is_discarded() || !run.is_object() || !run.contains("key")) {
-    return refuse("unreadable", fmt::format("`{}` is not a record of this program", (folder / "run.json").string()));
+    return refuse("folder_unreadable",
+                  fmt::format("`{}` is not a record of this program", (folder / "run.json").string()), kElsewhere);
   }
   if (run["key"] == key) return Done{};
-  return refuse("other_key", fmt::format("`{}` holds the results of another text, parameters or version; choose "
-                                         "another folder with --out or remove this one",
-                                         folder.string()));
+  return refuse("other_key",
+                fmt::format("`{}` holds the results of another run: {}", folder.string(), differences_of(run["key"], key)),
+                fmt::format("{}, or remove this one", kElsewhere));
 }
 
 bool write_file(const fs::path& path, const std::string& text) {
@@ -83,21 +149,26 @@ Result<Done, FolderError> replace_file(const fs::path& path, const std::string& 
 Result<FolderContents, FolderError> inspect_folder(const fs::path& folder, const ordered_json& key) {
   FolderContents contents;
   std::error_code failure;
-  if (!fs::exists(fs::symlink_status(folder, failure))) return contents;
-  if (!fs::is_directory(folder, failure)) {
-    return refuse("foreign_file", fmt::format("`{}` is not a folder; choose another with --out", folder.string()));
+  const bool there = fs::exists(fs::symlink_status(folder, failure));
+  if (there && !fs::is_directory(folder, failure)) {
+    return refuse("foreign_file", fmt::format("`{}` is not a folder", folder.string()), kElsewhere);
   }
+  if (!may_be_written(folder)) {
+    return refuse("not_written", fmt::format("nothing can be written into `{}`", folder.string()),
+                  "look at the permissions, or choose another folder with --out");
+  }
+  if (!there) return contents;
   fs::directory_iterator entries(folder, failure);
-  if (failure) return refuse("unreadable", fmt::format("`{}`: {}", folder.string(), failure.message()));
+  if (failure) return refuse("folder_unreadable", fmt::format("`{}`: {}", folder.string(), failure.message()));
   for (const fs::directory_entry& entry : entries) {
     const std::string name = entry.path().filename().string();
     if (!is_ours(name) || !entry.is_regular_file(failure)) {
-      return refuse("foreign_file", fmt::format("`{}` holds `{}`, which is no result of a run; choose another folder "
-                                                "with --out", folder.string(), name));
+      return refuse("foreign_file",
+                    fmt::format("`{}` holds `{}`, which is no result of a run", folder.string(), name), kElsewhere);
     }
     if (name.ends_with(kPart)) continue;
     auto text = read_file(entry.path());
-    if (!text) return refuse("unreadable", fmt::format("`{}` cannot be read", entry.path().string()));
+    if (!text) return refuse("folder_unreadable", fmt::format("`{}` cannot be read", entry.path().string()));
     contents[name] = std::move(*text);
   }
   const auto known = check_key(folder, contents, key);

@@ -1,7 +1,5 @@
 #include "runtime/experiment/observations.h"
 
-#include <fmt/format.h>
-
 #include <algorithm>
 #include <cmath>
 #include <map>
@@ -27,12 +25,7 @@ struct Moments {
     const auto t = finite_setting(at.time, settings, "the time of an observable");
     if (!t) return Unexpected{t.error()};
     const double slack = 1e-12 * line.duration();
-    if (*t < 0 || *t > line.duration() + slack) {
-      return Unexpected{RunError{"time_outside",
-                                 fmt::format("`{}` is asked for at t = {:.6g} ns, but the pace lasts {:.6g} ns",
-                                             observable.name, *t, line.duration()),
-                                 at.time.place}};
-    }
+    if (*t < 0 || *t > line.duration() + slack) return std::vector<Instant>{};
     const double within = std::min(*t, line.duration());
     return std::vector{Instant{within, s_at(line, within)}};
   }
@@ -40,11 +33,7 @@ struct Moments {
     const auto s = finite_setting(at.s, settings, "the s of an observable");
     if (!s) return Unexpected{s.error()};
     const auto instant = instant_of_s(line, *s, at.last);
-    if (instant) return std::vector{*instant};
-    return Unexpected{RunError{"s_never_met",
-                               fmt::format("`{}` is asked for at s = {:.6g}, which the pace never has",
-                                           observable.name, *s),
-                               at.s.place}};
+    return instant ? std::vector{*instant} : std::vector<Instant>{};
   }
   Outcome operator()(const Along& along) const { return even_instants(line, std::max(2u, along.samples)); }
   Outcome operator()(const Static&) const {
@@ -72,10 +61,11 @@ Result<std::vector<Observation>, RunError> observations_of(const Plan& plan, con
       observation.observables.push_back(o);
     }
   }
-  if (plan.distribution_at_end) {
+  // Where no moment ever comes the run is still one, with nothing read on the way.
+  if (plan.distribution_at_end || found.empty()) {
     Observation& end = found[{timeline.duration(), 0, timeline.last_s}];
     end.at = {timeline.duration(), timeline.last_s};
-    end.distribution = true;
+    end.distribution = plan.distribution_at_end;
   }
   std::vector<Observation> observations;
   for (auto& [key, observation] : found) observations.push_back(std::move(observation));

@@ -19,9 +19,9 @@ struct Observation {
 };
 
 /// All observations of a point, ascending in t; each (t, s) once. Observables of parameters only are
-/// looked at once at the end; those of a scan at every s with t = 0.
-/// Errors, with the observable's place: `not_finite`, `time_outside` (`at t` beyond the pace),
-/// `s_never_met` (`at s`).
+/// looked at once at the end; those of a scan at every s with t = 0. A moment that never comes (`at t`
+/// beyond the pace, `at s` that the pace never has) is left out, so that its observable has no value.
+/// Error, with the observable's place: `not_finite`.
 Result<std::vector<Observation>, RunError> observations_of(const Plan& plan, const Timeline& timeline,
                                                            std::span<const double> settings);
 

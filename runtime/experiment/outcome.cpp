@@ -1,6 +1,7 @@
 #include "runtime/experiment/outcome.h"
 
 #include <algorithm>
+#include <cmath>
 
 namespace tarn::runtime {
 
@@ -20,6 +21,14 @@ bool reads_reduction(const Plan& plan, const Observable& observable) {
   return std::any_of(observable.readings.begin(), observable.readings.end(), [&](std::uint32_t row) {
     return std::holds_alternative<ReadReduction>(plan.readings[row]);
   });
+}
+
+bool names_moment(const Observable& observable) {
+  return std::holds_alternative<AtTime>(observable.moment) || std::holds_alternative<AtS>(observable.moment);
+}
+
+bool lacks_value(const std::vector<Sample>& series) {
+  return series.empty() || (series.size() == 1 && std::isnan(series.front().answer.value));
 }
 
 Occurrence occurrence_of(const Plan& plan, const Observable& observable) {

@@ -33,11 +33,19 @@ Occurrence occurrence_of(const Plan& plan, const Observable& observable);
 /// True if the observable reads lowest(), highest() or final() of another.
 bool reads_reduction(const Plan& plan, const Observable& observable);
 
-/// The status of a point that went well, of one whose error stayed above the tolerance, and of one
-/// where an observable is no finite number.
+/// True of an observable `at t` or `at s`, whose moment may never come.
+bool names_moment(const Observable& observable);
+
+/// True if a series holds no value: no moment, or no number.
+bool lacks_value(const std::vector<Sample>& series);
+
+/// The status of a point that went well, of one whose error stayed above the tolerance, of one where an
+/// observable is no finite number, and of one where the moment of an observable never comes. None holds
+/// `: `, which stands in the status of a failed point.
 inline constexpr const char* kStatusOk = "ok";
 inline constexpr const char* kStatusLoose = "tolerance not reached";
 inline constexpr const char* kStatusNotFinite = "answer not finite";
+inline constexpr const char* kStatusNotMet = "moment never met";
 
 struct PointOutcome {
   std::uint64_t index = 0;                   ///< In the grid, first axis slowest.

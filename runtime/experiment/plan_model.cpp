@@ -26,17 +26,29 @@ bool jumps_read_t(const Plan& plan, const Functions& functions) {
   return false;
 }
 
+std::uint32_t generator_of(const Plan& plan) {
+  return plan.equation == Equation::lindblad ? kLiouvillian : kSchroedinger;
+}
+
+bool integrates(const Plan& plan) {
+  return plan.equation == Equation::schroedinger || plan.equation == Equation::lindblad;
+}
+
 }  // namespace
+
+std::size_t lanes_used(const Plan& plan, const Kernel& kernel) {
+  const std::uint32_t generator = generator_of(plan);
+  return integrates(plan) && kernel.lane_apply(generator) && kernel.lane_stage(generator) ? kernel.lanes() : 1;
+}
 
 PlanModel::PlanModel(const Plan& plan, const Kernel& kernel, std::span<const TableNumbers> tables)
     : plan_(plan), kernel_(kernel), tables_(tables),
-      generator_(plan.equation == Equation::lindblad ? kLiouvillian : kSchroedinger) {
-  const bool integrates = plan.equation == Equation::schroedinger || plan.equation == Equation::lindblad;
-  if (!integrates) return;
+      generator_(generator_of(plan)) {
+  if (!integrates(plan)) return;
   TARN_CHECK(kernel.generators() > generator_);
   prepared_ = AlignedArray(std::max<std::size_t>(1, kernel.prepared_doubles(generator_)));
   TARN_CHECK(kernel.prepare(generator_)(prepared_.data()) == TARN_OK);
-  if (kernel.lane_apply(generator_) && kernel.lane_stage(generator_)) lanes_ = kernel.lanes();
+  lanes_ = lanes_used(plan, kernel);
   reads_t_ = !plan.chip.drive.groups.empty();
   if (!reads_t_ && plan.equation == Equation::lindblad) {
     reads_t_ = jumps_read_t(plan, Functions(kernel, tables, plan));

@@ -12,6 +12,9 @@ namespace tarn::runtime {
 
 struct Entries;  // runtime/equation/propagate_linear.h
 
+/// How many points of the plan the kernel integrates together; 1 without lanes.
+std::size_t lanes_used(const Plan& plan, const Kernel& kernel);
+
 class PlanModel {
  public:
   /// Keeps references to all three. Precondition: the kernel has the sets and generators that the

@@ -20,6 +20,14 @@ constexpr std::size_t kMostGroup = 8;
 /// Points that run together, by their position in the list.
 using Group = std::vector<std::size_t>;
 
+/// An observable whose moment never comes has no value; its point is marked.
+void mark_moments_never_met(const Plan& plan, PointOutcome& outcome) {
+  if (outcome.error || outcome.status != kStatusOk) return;
+  for (std::size_t o = 0; o < plan.observables.size(); ++o) {
+    if (names_moment(plan.observables[o]) && lacks_value(outcome.series[o])) outcome.status = kStatusNotMet;
+  }
+}
+
 class Pool {
  public:
   Pool(std::span<const PointItem> items, const PointsOptions& options) : items_(items), options_(options) {
@@ -115,6 +123,7 @@ void Pool::run_group(const Group& group) {
   for (std::size_t k = 0; k < group.size(); ++k) {
     PointOutcome outcome = tasks[k]->take_outcome();
     if (outcome.error && outcome.error->kind == "interrupted") continue;
+    mark_moments_never_met(model.plan(), outcome);
     outcomes_[group[k]] = std::move(outcome);
     ++done_;
   }

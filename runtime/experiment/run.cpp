@@ -30,22 +30,21 @@ class Experiment {
     report_.any_plan = &plans.front().plan;
     for (const PlanAndKernel& each : plans) {
       models_.push_back(std::make_unique<PlanModel>(each.plan, each.kernel, each.tables));
-      for (const std::uint64_t index : each.plan.points) items_.push_back({index, models_.back().get()});
+      for (const std::uint64_t index : each.plan.points) grid_.push_back({index, models_.back().get()});
     }
-    std::sort(items_.begin(), items_.end(), [](const PointItem& a, const PointItem& b) { return a.index < b.index; });
-    if (options.sample && !items_.empty()) take_sample();
-    report_.total = items_.size();
+    std::sort(grid_.begin(), grid_.end(), [](const PointItem& a, const PointItem& b) { return a.index < b.index; });
+    report_.grid = grid_.size();
   }
 
   Result<Done, FolderError> open_folder();
   void restore();
+  void choose();
   void run();
   void judge_claims();
-  Result<Done, FolderError> write();
+  void write();
   RunReport take_report() { return std::move(report_); }
 
  private:
-  void take_sample();
   void keep(std::vector<PointOutcome> fresh);
   bool out_of_time() const { return options_.time_limit && seconds_since(start_) > *options_.time_limit; }
   std::filesystem::path folder() const { return *options_.out / report_.experiment; }
@@ -55,7 +54,8 @@ class Experiment {
   const RunOptions& options_;
   Clock::time_point start_ = Clock::now();
   std::vector<std::unique_ptr<PlanModel>> models_;
-  std::vector<PointItem> items_;  ///< In grid order.
+  std::vector<PointItem> grid_;   ///< In grid order.
+  std::vector<PointItem> items_;  ///< Those asked for, likewise.
   nlohmann::ordered_json key_;
   FolderContents contents_;
   std::map<std::uint64_t, PointOutcome> restored_;
@@ -63,17 +63,9 @@ class Experiment {
   RunReport report_;
 };
 
-void Experiment::take_sample() {
-  std::vector<PointItem> chosen;
-  for (const std::uint64_t i : sample_of_grid(items_.size(), std::max<std::uint64_t>(1, *options_.sample))) {
-    chosen.push_back(items_[i]);
-  }
-  items_ = std::move(chosen);
-}
-
 Result<Done, FolderError> Experiment::open_folder() {
   if (!options_.out) return Done{};
-  key_ = run_key(plans_, options_);
+  key_ = run_key(plans_.front().plan, options_);
   auto contents = inspect_folder(folder(), key_);
   if (!contents) return Unexpected{contents.error()};
   contents_ = std::move(contents).value();
@@ -91,14 +83,14 @@ void Experiment::restore() {
   }
   std::vector<std::uint64_t> indices;
   std::vector<const Plan*> plan_of;
-  for (const PointItem& item : items_) {
+  for (const PointItem& item : grid_) {
     indices.push_back(item.index);
     plan_of.push_back(&item.model->plan());
   }
   auto read = read_tables(tables, indices, plan_of);
   if (!read) return;
   restored_ = std::move(read).value();
-  for (const PointItem& item : items_) {
+  for (const PointItem& item : grid_) {
     const auto found = restored_.find(item.index);
     if (found == restored_.end()) continue;
     Functions functions = item.model->functions_at(item.index);
@@ -110,6 +102,22 @@ void Experiment::restore() {
   report_.leakage = recorded.leakage;
   point_remarks_.insert(recorded.remarks.begin(), recorded.remarks.end());
   report_.reused = restored_.size();
+}
+
+/// The whole grid, or its sample with the rows that are there already: none is ever thrown away.
+void Experiment::choose() {
+  if (!options_.sample || grid_.empty()) {
+    items_ = grid_;
+  } else {
+    std::set<std::uint64_t> chosen;
+    for (const std::uint64_t i : sample_of_grid(grid_.size(), std::max<std::uint64_t>(1, *options_.sample))) {
+      chosen.insert(grid_[i].index);
+    }
+    for (const PointItem& item : grid_) {
+      if (chosen.contains(item.index) || restored_.contains(item.index)) items_.push_back(item);
+    }
+  }
+  report_.total = items_.size();
 }
 
 void Experiment::run() {
@@ -183,24 +191,34 @@ void Experiment::judge_claims() {
       TARN_CHECK(tally_point(plan, plan.claims[c], rows, report_.points[i], tallies[c]));
     }
   }
-  const bool sampled = options_.sample && report_.total < grid_size(plans_.front().plan.axes);
+  const bool sampled = report_.total < report_.grid;
   for (std::size_t c = 0; c < claims.size(); ++c) {
     report_.claims.push_back(conclude(claims[c], tallies[c], sampled, report_.ending != Ending::finished));
   }
 }
 
-Result<Done, FolderError> Experiment::write() {
+void Experiment::write() {
   report_.seconds = seconds_since(start_);
-  if (!options_.out) return Done{};
+  if (!options_.out) return;
   std::vector<const PointOutcome*> points;
   for (const PointOutcome& point : report_.points) points.push_back(&point);
   FolderContents files;
   for (const auto& [name, table] : make_tables(points, report_.plan_of, *report_.any_plan)) files[name] = to_csv(table);
   files["run.json"] = run_record(report_, key_, options_);
-  return write_folder(folder(), files);
+  const auto written = write_folder(folder(), files);
+  if (!written) report_.not_written = written.error();
 }
 
 }  // namespace
+
+Result<Done, FolderError> judge_folder(std::span<const PlanAndKernel> plans, const RunOptions& options) {
+  TARN_CHECK(!plans.empty());
+  if (!options.out) return Done{};
+  const Plan& plan = plans.front().plan;
+  const auto contents = inspect_folder(*options.out / plan.experiment, run_key(plan, options));
+  if (!contents) return Unexpected{contents.error()};
+  return Done{};
+}
 
 Result<RunReport, FolderError> run_experiment(std::span<const PlanAndKernel> plans, const RunOptions& options) {
   TARN_CHECK(!plans.empty());
@@ -208,14 +226,15 @@ Result<RunReport, FolderError> run_experiment(std::span<const PlanAndKernel> pla
   const auto opened = experiment.open_folder();
   if (!opened) return Unexpected{opened.error()};
   experiment.restore();
+  experiment.choose();
   experiment.run();
   experiment.judge_claims();
-  const auto written = experiment.write();
-  if (!written) return Unexpected{written.error()};
+  experiment.write();
   return experiment.take_report();
 }
 
 int exit_status(const RunReport& report) {
+  if (report.not_written) return 2;
   if (report.failed > 0 || report.ending != Ending::finished) return 3;
   const bool claim_failed = std::any_of(report.claims.begin(), report.claims.end(), [](const ClaimReport& claim) {
     return claim.verdict == Verdict::fails;

@@ -4,6 +4,7 @@
 #include <cstdint>
 #include <filesystem>
 #include <functional>
+#include <map>
 #include <optional>
 #include <span>
 #include <string>
@@ -33,7 +34,9 @@ struct Provenance {
     std::string sha256;
   };
   std::string version;      ///< Of the program.
-  std::vector<Text> texts;  ///< Models, tables and the library.
+  std::string build;        ///< Of the program and of its code generator: bits depend on both.
+  std::vector<Text> texts;  ///< Models, tables and the library; names relative to the main model's folder.
+  std::map<std::string, double> counts;  ///< Counts that were set, which no plan shows.
   std::string host;         ///< Stands under `machine`: no part of the key.
 };
 
@@ -42,7 +45,8 @@ using Progress = std::function<void(std::uint64_t done, std::uint64_t total, dou
 
 struct RunOptions {
   std::size_t jobs = 1;                       ///< Threads, >= 1.
-  std::optional<std::uint64_t> sample;        ///< So many grid points only, spread evenly.
+  /// So many grid points only, spread evenly; and those that the folder holds already.
+  std::optional<std::uint64_t> sample;
   std::optional<std::filesystem::path> out;   ///< DIR: results go to DIR/EXPERIMENT. None: no files.
   std::function<bool()> interrupted;          ///< Asked often, from several threads.
   Progress progress;                          ///< Called from one thread at a time.
@@ -55,7 +59,8 @@ enum class Ending : std::uint8_t { finished, interrupted, out_of_time };
 struct RunReport {
   std::string experiment;
   Ending ending = Ending::finished;
-  std::uint64_t total = 0;                    ///< Points asked for: the grid's, or the sample's.
+  std::uint64_t grid = 0;                     ///< Points of the whole grid.
+  std::uint64_t total = 0;                    ///< Points asked for: the grid's, or a sample's.
   std::vector<PointOutcome> points;           ///< Those finished, in grid order.
   std::vector<const Plan*> plan_of;           ///< The plan of each; points into the argument of run_experiment.
   const Plan* any_plan = nullptr;             ///< The first plan: names and axes are those of all.
@@ -66,15 +71,20 @@ struct RunReport {
   double leakage = 0;                         ///< The most that left the levels kept, an upper estimate.
   Counters counters;
   double seconds = 0;
+  std::optional<FolderError> not_written;     ///< The files could not be written; the rest is as computed.
 };
 
+/// Judges DIR/EXPERIMENT as run_experiment() will, so that several can be judged before any is run.
+Result<Done, FolderError> judge_folder(std::span<const PlanAndKernel> plans, const RunOptions& options);
+
 /// Runs the grid. Every bit of points, claims and files, what stands under `machine` in run.json
-/// excepted, is the same for any number of jobs, and for a run that was interrupted and continued.
+/// excepted, is the same for any number of jobs, and for a run that was interrupted and continued or
+/// sampled first.
 /// Errors: those of the folder, found before anything is computed or written.
 Result<RunReport, FolderError> run_experiment(std::span<const PlanAndKernel> plans, const RunOptions& options);
 
-/// The exit status of the command line: 3 if a point failed or the run did not finish, else 1 if a
-/// claim failed, else 0.
+/// The exit status of the command line: 2 if the files could not be written, else 3 if a point failed
+/// or the run did not finish, else 1 if a claim failed, else 0.
 int exit_status(const RunReport& report);
 
 }  // namespace tarn::runtime

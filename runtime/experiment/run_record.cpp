@@ -79,9 +79,10 @@ std::string now_text() {
 
 }  // namespace
 
-ordered_json run_key(std::span<const PlanAndKernel> plans, const RunOptions& options) {
-  const Plan& plan = plans.front().plan;
-  ordered_json key = {{"version", options.provenance.version}, {"experiment", plan.experiment}};
+ordered_json run_key(const Plan& plan, const RunOptions& options) {
+  ordered_json key = {{"version", options.provenance.version},
+                      {"build", options.provenance.build},
+                      {"experiment", plan.experiment}};
   ordered_json texts = ordered_json::array();
   for (const Provenance::Text& text : options.provenance.texts) {
     texts.push_back({{"name", text.name}, {"sha256", text.sha256}});
@@ -93,14 +94,17 @@ ordered_json run_key(std::span<const PlanAndKernel> plans, const RunOptions& opt
         *field_number(parameter_text(parameter.value, parameter.unit));
   }
   key["parameters"] = parameters;
+  key["counts"] = ordered_json::object();
+  for (const auto& [name, value] : options.provenance.counts) key["counts"][name] = value;
   key["seeds"] = ordered_json::object();
-  key["sample"] = options.sample ? ordered_json(*options.sample) : ordered_json(nullptr);
   return key;
 }
 
 std::string run_record(const RunReport& report, const ordered_json& key, const RunOptions& options) {
   ordered_json record = {{"key", key}, {"ending", ending_name(report.ending)}};
-  record["points"] = {{"asked", report.total},
+  record["sample"] = report.total < report.grid;
+  record["points"] = {{"grid", report.grid},
+                      {"asked", report.total},
                       {"done", report.points.size()},
                       {"failed", report.failed},
                       {"marked", report.loose}};
@@ -110,11 +114,12 @@ std::string run_record(const RunReport& report, const ordered_json& key, const R
   record["left out"] = report.left_out;
   record["remarks"] = report.remarks;
   record["leakage"] = report.leakage;
-  record["counters"] = counters_record(report.counters);
+  // Points share work with those that they happen to go with, so that counters tell of this run alone.
   record["machine"] = {{"host", options.provenance.host},
                        {"ended", now_text()},
                        {"seconds", report.seconds},
                        {"jobs", options.jobs},
+                       {"counters", counters_record(report.counters)},
                        {"reused points", report.reused}};
   return record.dump(2) + "\n";
 }
@@ -122,8 +127,8 @@ std::string run_record(const RunReport& report, const ordered_json& key, const R
 Recorded read_record(const std::string& text) {
   Recorded recorded;
   const ordered_json record = ordered_json::parse(text, nullptr, false);
-  if (record.is_discarded() || !record.contains("counters")) return recorded;
-  const ordered_json& found = record["counters"];
+  if (record.is_discarded() || !record.contains("machine") || !record["machine"].contains("counters")) return recorded;
+  const ordered_json& found = record["machine"]["counters"];
   recorded.counters.steps = found.value("steps", std::uint64_t{0});
   recorded.counters.rejected = found.value("rejected", std::uint64_t{0});
   recorded.counters.evaluations = found.value("evaluations", std::uint64_t{0});

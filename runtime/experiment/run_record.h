@@ -2,7 +2,6 @@
 /// \file run.json: what was run, on what, and what came out.
 
 #include <nlohmann/json_fwd.hpp>
-#include <span>
 #include <string>
 
 #include "runtime/experiment/run.h"
@@ -10,7 +9,7 @@
 namespace tarn::runtime {
 
 /// Everything the answers depend on: two runs with the same key have the same answers.
-nlohmann::ordered_json run_key(std::span<const PlanAndKernel> plans, const RunOptions& options);
+nlohmann::ordered_json run_key(const Plan& plan, const RunOptions& options);
 
 /// The text of run.json. What differs from run to run stands under `machine` alone.
 std::string run_record(const RunReport& report, const nlohmann::ordered_json& key, const RunOptions& options);

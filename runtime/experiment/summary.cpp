@@ -4,7 +4,6 @@
 
 #include <algorithm>
 #include <cmath>
-#include <set>
 
 #include "runtime/experiment/grid.h"
 #include "runtime/experiment/tables.h"
@@ -94,35 +93,34 @@ std::string place_of(const ClaimReport& claim, const Plan& plan) {
     }
   }
   if (claim.tally.weakest_at) {
-    add(fmt::format("t = {:.6g} ns", claim.tally.weakest_at->t));
+    if (!plan.scan) add(fmt::format("t = {:.6g} ns", claim.tally.weakest_at->t));
     add(fmt::format("s = {:.6g}", claim.tally.weakest_at->s));
   }
   return text;
 }
 
 std::string claim_line(const ClaimReport& claim, const Plan& plan) {
-  std::string line = fmt::format("{:<9}  {}", verdict_name(claim.verdict), claim.text);
-  if (!claim.reason.empty()) line += fmt::format("  ({})", claim.reason);
-  if (claim.tally.weakest && claim.tally.selected > 0) line += fmt::format("; closest{}", place_of(claim, plan));
-  return line + "\n";
+  return fmt::format("{:<9}  {}\n", verdict_name(claim.verdict), claim_text(claim, plan));
 }
 
-/// What went wrong, in full and once each.
-std::set<std::string> failures_of(const RunReport& report) {
-  std::set<std::string> lines;
-  for (const PointOutcome& point : report.points) {
-    if (point.error) lines.insert(point.status);
-  }
-  return lines;
-}
-
-std::string ending_line(const RunReport& report) {
-  if (report.ending == Ending::finished) return "";
-  return fmt::format("{}: {} of {} points are done\n", report.ending == Ending::interrupted ? "interrupted" : "out of time",
-                     report.points.size(), report.total);
+/// How many points there are, where not all of the grid went well.
+std::string counts(const RunReport& report) {
+  std::string text;
+  if (report.points.size() < report.total) text += fmt::format("{} of {} points are done\n", report.points.size(), report.total);
+  if (report.total < report.grid) text += fmt::format("a sample: {} of the grid's {} points\n", report.total, report.grid);
+  if (report.loose > 0) text += fmt::format("{} of {} points are marked: see status\n", report.loose, report.total);
+  if (report.failed > 0) text += fmt::format("{} of {} points failed: see status\n", report.failed, report.total);
+  return text;
 }
 
 }  // namespace
+
+std::string claim_text(const ClaimReport& claim, const Plan& plan) {
+  std::string text = claim.text;
+  if (!claim.reason.empty()) text += fmt::format("  ({})", claim.reason);
+  if (claim.tally.weakest && claim.tally.selected > 0) text += fmt::format("; closest{}", place_of(claim, plan));
+  return text;
+}
 
 std::string digits_allowed(double value, double error) {
   if (!std::isfinite(value) || value == 0) return fmt::format("{:g}", value);
@@ -150,13 +148,7 @@ std::string summary(const RunReport& report, std::size_t most_rows) {
     if (name != "results.csv") text += fmt::format("{}: {} rows\n", name, table.rows.size());
   }
   for (const ClaimReport& claim : report.claims) text += claim_line(claim, *report.any_plan);
-  for (const std::string& line : report.left_out) text += fmt::format("left out: {}\n", line);
-  for (const std::string& line : report.remarks) text += fmt::format("remark: {}\n", line);
-  if (report.leakage > 0) text += fmt::format("remark: up to {:.2g} of the population left the levels kept\n", report.leakage);
-  if (report.loose > 0) text += fmt::format("{} of {} points are marked: see status\n", report.loose, report.total);
-  if (report.failed > 0) text += fmt::format("{} of {} points failed: see status\n", report.failed, report.total);
-  for (const std::string& line : failures_of(report)) text += fmt::format("failed: {}\n", line);
-  return text + ending_line(report);
+  return text + counts(report);
 }
 
 }  // namespace tarn::runtime

@@ -228,13 +228,9 @@ bool read_distribution(Rows rows, std::size_t keys, PointOutcome& outcome) {
 }
 
 void restore_error(PointOutcome& outcome) {
-  for (const char* answered : {kStatusOk, kStatusLoose, kStatusNotFinite}) {
-    if (outcome.status == answered) return;
-  }
   const std::size_t colon = outcome.status.find(": ");
-  outcome.error = colon == std::string::npos
-                      ? RunError{outcome.status, ""}
-                      : RunError{outcome.status.substr(0, colon), outcome.status.substr(colon + 2)};
+  if (colon == std::string::npos) return;
+  outcome.error = RunError{outcome.status.substr(0, colon), outcome.status.substr(colon + 2)};
   outcome.series.clear();
   outcome.distribution.clear();
 }

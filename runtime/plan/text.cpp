@@ -192,8 +192,8 @@ std::string to_text(const Plan& plan) {
     if (const auto* mean = std::get_if<ReadMean>(&plan.readings[r])) write_operator(out, mean->op, plan.chip.qubits.size());
   }
   for (const Observable& o : plan.observables) {
-    line(out, "observe {} = row {} {}, reads {} [{}]", o.name, o.row, text(o.moment), fmt::join(o.readings, " "),
-         o.unit.label.empty() ? "1" : o.unit.label);
+    line(out, "observe {} = row {} {}, reads {}{} [{}]", o.name, o.row, text(o.moment), fmt::join(o.readings, " "),
+         o.reads_s ? " s" : "", o.unit.label.empty() ? "1" : o.unit.label);
   }
   if (plan.distribution_at_end) line(out, "observe distribution at end");
   write_grid(out, plan);

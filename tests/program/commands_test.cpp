@@ -4,9 +4,11 @@
 
 #include <catch2/catch.hpp>
 #include <chrono>
+#include <map>
 #include <nlohmann/json.hpp>
 #include <sstream>
 #include <thread>
+#include <utility>
 
 #include "tests/program/process.h"
 
@@ -29,14 +31,31 @@ const char* const kLong =
     "chip one { qubit q : site }\nexperiment trial {\n chip one\n begin state(\"0\")\n pace hold for 20 us\n"
     " equation schroedinger\n observe p = population(state(\"1\")) at end\n sweep f over linear(4 GHz, 6 GHz, 4000)\n}\n";
 
-std::vector<fs::path> models_of_the_checkout() {
-  std::vector<fs::path> models;
-  for (const char* folder : {"examples", "stdlib", "tests/program/models"}) {
+/// Every .tarn file of the checkout, and the models that the reference shows, by what they are called.
+std::map<std::string, std::string> models_of_the_checkout() {
+  std::map<std::string, std::string> models;
+  for (const char* folder : {"examples", "stdlib", "tests"}) {
     for (const auto& entry : fs::recursive_directory_iterator(source_root() / folder)) {
-      if (entry.path().extension() == ".tarn") models.push_back(entry.path());
+      if (entry.path().extension() == ".tarn") models[entry.path().string()] = read_file(entry.path());
     }
   }
+  std::istringstream lines(read_file(source_root() / "lang/REFERENCE.md"));
+  std::string text;
+  bool inside = false;
+  for (std::string line; std::getline(lines, line);) {
+    if (inside && line == "```") models["reference " + std::to_string(models.size())] = std::exchange(text, "");
+    else if (inside) text += line + "\n";
+    inside = line == "```tarn" || (inside && line != "```");
+  }
   return models;
+}
+
+std::string without_spaces(const std::string& text) {
+  std::string rest;
+  for (const char c : text) {
+    if (c != ' ' && c != '\n' && c != '\t' && c != '\r') rest += c;
+  }
+  return rest;
 }
 
 }  // namespace
@@ -127,19 +146,30 @@ TEST_CASE("every stage of compilation is shown") {
 }
 
 TEST_CASE("tidy changes layout only, and nothing the second time, on every model of the checkout") {
-  for (const fs::path& model : models_of_the_checkout()) {
-    INFO(model);
+  std::size_t tidied_models = 0;
+  for (const auto& [name, text] : models_of_the_checkout()) {
+    INFO(name);
     const Scratch scratch;
-    const Outcome once = run_tarn({"tidy", model.string()});
-    REQUIRE(once.status == 0);
-    const fs::path tidied = scratch.write("m.tarn", once.out);
-    CHECK(run_tarn({"tidy", tidied.string()}).out == once.out);
-    const fs::path original = scratch.write("n.tarn", read_file(model));
-    CHECK(run_tarn({"emit", tidied.string(), "--stage", "syntax"}).out ==
-          run_tarn({"emit", original.string(), "--stage", "syntax"}).out);
-    REQUIRE(run_tarn({"tidy", "--in-place", original.string()}).status == 0);
+    const fs::path original = scratch.write("n.tarn", text);
+    const Outcome once = run_tarn({"tidy", "n.tarn"}, scratch.path());
+    if (once.status != 0) {
+      // Texts that are shown to be refused, and those alone: they say so themselves.
+      CHECK((text.find("#! ") != std::string::npos || name.ends_with("modules/faulty.tarn")));
+      CHECK(once.out.empty());
+      continue;
+    }
+    ++tidied_models;
+    scratch.write("m.tarn", once.out);
+    CHECK(run_tarn({"tidy", "m.tarn"}, scratch.path()).out == once.out);
+    CHECK(without_spaces(once.out) == without_spaces(text));
+    const Outcome before = run_tarn({"emit", "n.tarn", "--stage", "syntax"}, scratch.path());
+    const Outcome after = run_tarn({"emit", "m.tarn", "--stage", "syntax"}, scratch.path());
+    CHECK(before.status == after.status);
+    CHECK(before.out == after.out);
+    REQUIRE(run_tarn({"tidy", "--in-place", "n.tarn"}, scratch.path()).status == 0);
     CHECK(read_file(original) == once.out);
   }
+  CHECK(tidied_models > 20);
 }
 
 TEST_CASE("explain shows terms, levels, gap and structure") {
@@ -149,6 +179,41 @@ TEST_CASE("explain shows terms, levels, gap and structure") {
     INFO(part << "\n" << outcome.out);
     CHECK(outcome.out.find(part) != std::string::npos);
   }
+}
+
+TEST_CASE("on a terminal the run shows its progress, and messages have colour unless NO_COLOR is set") {
+  const Scratch scratch;
+  scratch.write("m.tarn", kClaim);
+  const Outcome shown = run_tarn_on_terminal({"run", kCrossing.string(), "--out", "r"}, scratch.path());
+  INFO(shown.err);
+  CHECK(shown.status == 0);
+  CHECK(shown.err.find("crossing: 13 of 13 points") != std::string::npos);
+  CHECK(shown.err.find(" s left") != std::string::npos);
+  CHECK(shown.err.ends_with("\r\033[K"));  // the line is taken away at the end
+  CHECK(shown.out.find('\033') == std::string::npos);
+  const std::vector<std::string> wrong{"run", "m.tarn", "--jbos", "3"};
+  CHECK(run_tarn_on_terminal(wrong, scratch.path()).err.find("\033[1;31m") != std::string::npos);
+  CHECK(run_tarn_on_terminal(wrong, scratch.path(), {"NO_COLOR=1"}).err.find('\033') == std::string::npos);
+  const Outcome lines = run_tarn_on_terminal({"run", "m.tarn", "--out", "j", "--diagnostics", "json"}, scratch.path());
+  CHECK(lines.err.find("points") == std::string::npos);  // no progress among JSON lines
+}
+
+TEST_CASE("what killed compilations left in the cache goes, what others write stays") {
+  const Scratch scratch;
+  scratch.write("m.tarn", kClaim);
+  const fs::path cache = scratch.path() / "kernels";
+  fs::create_directory(cache);
+  fs::permissions(cache, fs::perms::owner_all);
+  const auto old = fs::file_time_type::clock::now() - std::chrono::hours(2);
+  for (const char* name : {"abc.1.0.tmp", "abc.1.0.tmp.so"}) fs::last_write_time(scratch.write(std::string("kernels/") + name, "x"), old);
+  fs::last_write_time(scratch.write("kernels/old.so", "x"), old);
+  scratch.write("kernels/def.2.0.tmp", "x");
+  const std::vector<std::string> environment{"TARN_CACHE_DIR=" + cache.string()};
+  REQUIRE(run_tarn({"run", "m.tarn", "--out", "r", "--set", "limit=1"}, scratch.path(), environment).status == 0);
+  CHECK_FALSE(fs::exists(cache / "abc.1.0.tmp"));
+  CHECK_FALSE(fs::exists(cache / "abc.1.0.tmp.so"));
+  CHECK(fs::exists(cache / "def.2.0.tmp"));
+  CHECK(fs::exists(cache / "old.so"));
 }
 
 TEST_CASE("nothing is coloured or written over where no terminal looks") {

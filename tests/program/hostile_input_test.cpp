@@ -106,14 +106,29 @@ TEST_CASE("files that may not be read are refused") {
   CHECK(run_tarn({"check", "folder/m.tarn", "--also-read", "."}, scratch.path()).status == 0);
   check_refused(run_tarn({"check", "missing.tarn"}, scratch.path()), "missing.tarn");
   check_refused(run_tarn({"check", "folder"}, scratch.path()), "folder");
-  if (geteuid() != 0) {
-    const auto secret = scratch.write("secret.tarn", kOneQubit);
-    chmod(secret.c_str(), 0);
-    check_refused(run_tarn({"check", "secret.tarn"}, scratch.path()), "secret.tarn");
-  }
   std::filesystem::create_symlink("../outside.tarn", scratch.path() / "folder/link.tarn");
   scratch.write("folder/n.tarn", "use \"link.tarn\" as o\n");
   check_refused(run_tarn({"check", "folder/n.tarn"}, scratch.path()), "also-read");
+}
+
+TEST_CASE("a file that the user may not read is refused") {
+  const Scratch scratch;
+  const auto secret = scratch.write("secret.tarn", kOneQubit);
+  scratch.write("open.tarn", kOneQubit);
+  chmod(scratch.path().c_str(), 0755);
+  chmod(secret.c_str(), 0);
+  if (geteuid() != 0) {
+    check_refused(run_tarn({"check", "secret.tarn"}, scratch.path()), "secret.tarn");
+    return;
+  }
+  const auto readable = run_tarn_as_nobody({"check", "open.tarn"}, scratch.path());
+  if (!readable || readable->status != 0) {
+    WARN("not tested: root reads everything, and this process cannot become the user `nobody`");
+    return;
+  }
+  const auto refused = run_tarn_as_nobody({"check", "secret.tarn"}, scratch.path());
+  REQUIRE(refused);
+  check_refused(*refused, "file_unreadable");
 }
 
 TEST_CASE("an empty file, a BOM and CRLF are fine") {

@@ -1,6 +1,9 @@
 #include "tests/program/process.h"
 
 #include <fcntl.h>
+#include <grp.h>
+#include <pty.h>
+#include <pwd.h>
 #include <signal.h>
 #include <sys/resource.h>
 #include <sys/wait.h>
@@ -17,20 +20,30 @@ namespace {
 
 namespace fs = std::filesystem;
 
-[[noreturn]] void become_tarn(const std::vector<std::string>& arguments, const fs::path& folder,
-                              const std::vector<std::string>& environment, const fs::path& out, const fs::path& err) {
-  if (chdir(folder.c_str()) != 0) _exit(126);
-  for (const std::string& pair : environment) putenv(const_cast<char*>(pair.c_str()));
+/// What a child process is to become.
+struct Start {
+  const std::vector<std::string>& arguments;
+  const fs::path& folder;
+  const std::vector<std::string>& environment;
+  std::string program = TARN_PROGRAM;
+  int terminal = -1;                   ///< Standard error, instead of a file.
+  const passwd* user = nullptr;        ///< Instead of this one.
+};
+
+[[noreturn]] void become_tarn(const Start& start, const fs::path& out, const fs::path& err) {
   const int out_fd = open(out.c_str(), O_WRONLY | O_CREAT | O_TRUNC, 0600);
-  const int err_fd = open(err.c_str(), O_WRONLY | O_CREAT | O_TRUNC, 0600);
+  const int err_fd = start.terminal >= 0 ? start.terminal : open(err.c_str(), O_WRONLY | O_CREAT | O_TRUNC, 0600);
   const int null_fd = open("/dev/null", O_RDONLY);
   dup2(null_fd, 0);
   dup2(out_fd, 1);
   dup2(err_fd, 2);
-  std::vector<char*> argv{const_cast<char*>(TARN_PROGRAM)};
-  for (const std::string& argument : arguments) argv.push_back(const_cast<char*>(argument.c_str()));
+  if (start.user != nullptr && (setgroups(0, nullptr) != 0 || setgid(start.user->pw_gid) != 0 || setuid(start.user->pw_uid) != 0)) _exit(125);
+  if (chdir(start.folder.c_str()) != 0) _exit(126);
+  for (const std::string& pair : start.environment) putenv(const_cast<char*>(pair.c_str()));
+  std::vector<char*> argv{const_cast<char*>(start.program.c_str())};
+  for (const std::string& argument : start.arguments) argv.push_back(const_cast<char*>(argument.c_str()));
   argv.push_back(nullptr);
-  execv(TARN_PROGRAM, argv.data());
+  execv(start.program.c_str(), argv.data());
   _exit(127);
 }
 
@@ -47,27 +60,68 @@ Outcome collect(int pid, const Scratch& scratch, std::chrono::steady_clock::time
   return outcome;
 }
 
-Outcome spawn(const std::vector<std::string>& arguments, const fs::path& folder,
-              const std::vector<std::string>& environment, const std::function<void(int)>& meanwhile) {
+Outcome spawn(const Start& what, const std::function<void(int)>& meanwhile = {}) {
   const Scratch scratch;
   const auto start = std::chrono::steady_clock::now();
   const int pid = fork();
   if (pid < 0) throw std::runtime_error("fork failed");
-  if (pid == 0) become_tarn(arguments, folder, environment, scratch.path() / "out", scratch.path() / "err");
+  if (pid == 0) become_tarn(what, scratch.path() / "out", scratch.path() / "err");
   if (meanwhile) meanwhile(pid);
   return collect(pid, scratch, start);
+}
+
+/// Everything that is written to the terminal until its last writer is gone.
+std::string read_terminal(int master) {
+  std::string text;
+  char buffer[4096];
+  for (;;) {
+    const ssize_t got = read(master, buffer, sizeof buffer);
+    if (got <= 0) return text;
+    text.append(buffer, static_cast<std::size_t>(got));
+  }
 }
 
 }  // namespace
 
 Outcome run_tarn(const std::vector<std::string>& arguments, const fs::path& folder,
                  const std::vector<std::string>& environment) {
-  return spawn(arguments, folder, environment, {});
+  return spawn({arguments, folder, environment});
 }
 
 Outcome run_tarn_while(const std::vector<std::string>& arguments, const fs::path& folder,
                        const std::function<void(int)>& meanwhile) {
-  return spawn(arguments, folder, {}, meanwhile);
+  return spawn({arguments, folder, {}}, meanwhile);
+}
+
+Outcome run_tarn_on_terminal(const std::vector<std::string>& arguments, const fs::path& folder,
+                             const std::vector<std::string>& environment) {
+  int master = -1, slave = -1;
+  if (openpty(&master, &slave, nullptr, nullptr, nullptr) != 0) throw std::runtime_error("no pseudo-terminal");
+  std::string sent;
+  Start start{arguments, folder, environment};
+  start.terminal = slave;
+  Outcome outcome = spawn(start, [&](int) {
+    close(slave);
+    sent = read_terminal(master);
+  });
+  close(master);
+  outcome.err = sent;
+  return outcome;
+}
+
+std::optional<Outcome> run_tarn_as_nobody(const std::vector<std::string>& arguments, const fs::path& folder) {
+  const passwd* const nobody = getpwnam("nobody");
+  if (geteuid() != 0 || nobody == nullptr) return std::nullopt;
+  // The build folder may be closed to others: a copy stands where everybody may look.
+  const Scratch copy;
+  fs::permissions(copy.path(), fs::perms::owner_all | fs::perms::others_read | fs::perms::others_exec);
+  const fs::path program = copy.path() / "tarn";
+  fs::copy_file(TARN_PROGRAM, program);
+  fs::permissions(program, fs::perms::owner_all | fs::perms::others_read | fs::perms::others_exec);
+  Start start{arguments, folder, {}};
+  start.program = program.string();
+  start.user = nobody;
+  return spawn(start);
 }
 
 Scratch::Scratch() {

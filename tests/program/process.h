@@ -3,6 +3,7 @@
 
 #include <filesystem>
 #include <functional>
+#include <optional>
 #include <string>
 #include <vector>
 
@@ -22,6 +23,14 @@ Outcome run_tarn(const std::vector<std::string>& arguments, const std::filesyste
 /// As run_tarn, but calls `meanwhile` with the process id while it runs.
 Outcome run_tarn_while(const std::vector<std::string>& arguments, const std::filesystem::path& folder,
                        const std::function<void(int pid)>& meanwhile);
+
+/// As run_tarn, with a pseudo-terminal as standard error: `err` is what it was sent.
+Outcome run_tarn_on_terminal(const std::vector<std::string>& arguments, const std::filesystem::path& folder,
+                             const std::vector<std::string>& environment = {});
+
+/// As run_tarn, but with a copy of the program that the user `nobody` runs. None where this process may
+/// not become another user, or there is no such user.
+std::optional<Outcome> run_tarn_as_nobody(const std::vector<std::string>& arguments, const std::filesystem::path& folder);
 
 /// A folder of its own for one test, removed with it; its name is new each time.
 class Scratch {

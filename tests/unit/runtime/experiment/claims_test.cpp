@@ -146,3 +146,25 @@ TEST_CASE("a failed point fails a claim unless `where` leaves it out") {
   REQUIRE(tally_point(plan, claim, rows, point, left_out));
   CHECK(left_out.selected == 0);
 }
+
+TEST_CASE("a claim on an observable without a value fails and says so, unless `where` leaves the point out") {
+  const Plan plan = plan_with(AtEnd{}, AtTime{});
+  Claim claim;
+  claim.text = "b <= 0.5";
+  claim.holds = compare(Relation::less_equal, 1, 3);
+  claim.observables = {1};
+  PointOutcome met, never;
+  met.series = {{{{0, 0}, {0.9, 0}}}, {{{0, 0}, {0.2, 0}}}};
+  never.series = {{{{0, 0}, {0.1, 0}}}, {}};
+  ClaimTally tally;
+  REQUIRE(tally_point(plan, claim, rows, met, tally));
+  CHECK(conclude(claim, tally, false, false).verdict == Verdict::holds);
+  ClaimTally narrowed = tally;
+  REQUIRE(tally_point(plan, claim, rows, never, tally));
+  const ClaimReport report = conclude(claim, tally, false, false);
+  CHECK(report.verdict == Verdict::fails);
+  CHECK(report.reason.find("no value at 1 of 2 places") != std::string::npos);
+  claim.where = compare(Relation::greater, 0, 3);
+  REQUIRE(tally_point(plan, claim, rows, never, narrowed));
+  CHECK(conclude(claim, narrowed, false, false).verdict == Verdict::holds);
+}

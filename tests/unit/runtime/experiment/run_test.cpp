@@ -418,11 +418,22 @@ TEST_CASE("moments: at a time, at an s, and those that are never met") {
   REQUIRE(trace.size() == 11);
   CHECK(answer(report, 0).value == trace[5].answer.value);
   CHECK(answer(report, 1).value == trace[1].answer.value);
-  plan.observables[1].moment = AtTime{setting(0)};
+  // A moment that never comes leaves its own value empty and the others as they are.
+  plan.observables[1].moment = GENERATE(Moment{AtTime{setting(0)}}, Moment{AtS{setting(2), false}});
   plan.pace = {PaceRamp{setting(3), setting(2)}};
-  CHECK(run(plan, hand::one_qubit(false)).points[0].error->kind == "time_outside");
-  plan.observables[1].moment = AtS{setting(2), false};
-  CHECK(run(plan, hand::one_qubit(false)).points[0].error->kind == "s_never_met");
+  const RunReport cut = run(plan, hand::one_qubit(false));
+  REQUIRE_FALSE(cut.points[0].error);
+  CHECK(cut.points[0].status == kStatusNotMet);
+  CHECK(cut.points[0].series[1].empty());
+  CHECK(cut.points[0].series[2].size() == 11);
+  CHECK(answer(cut, 0).value == cut.points[0].series[2].back().answer.value);
+  CHECK(cut.loose == 1);
+  CHECK(exit_status(cut) == 0);
+  CHECK(summary(cut).find(kStatusNotMet) != std::string::npos);
+  Plan alone = plan;
+  alone.observables = {plan.observables[1]};
+  const RunReport nothing = run(alone, hand::one_qubit(false));
+  CHECK(nothing.points[0].status == kStatusNotMet);
   plan.observables.resize(1);
   plan.equation = Equation::none;
   CHECK(run(plan, hand::one_qubit(false)).points[0].error->kind == "no_equation");
