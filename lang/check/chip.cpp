@@ -109,7 +109,7 @@ class ChipWalk {
     const auto kind = resolve_callable(session_, scope, place.kind, {CallableKind::qubit}, "a qubit kind");
     const auto offset = offset_of(scope, place);
     if (!text) {
-      if (kind && session_.generic) try_kind(*kind, {0}, place.kind.span);
+      if (kind && session_.generic) try_kind(*kind, {place.place.span}, place.kind.span);
       return;
     }
     const auto row = static_cast<std::uint32_t>(unrolled_.qubits.size());
@@ -136,7 +136,7 @@ class ChipWalk {
     const auto right = find_qubit(session_, scope, place.right);
     const auto kind = resolve_callable(session_, scope, place.kind, {CallableKind::coupler}, "a coupler kind");
     if (!left || !right) {
-      if (kind && session_.generic) try_kind(*kind, {0, 1}, place.kind.span);
+      if (kind && session_.generic) try_kind(*kind, {place.left.span, place.right.span}, place.kind.span);
       return;
     }
     if (*left == *right) {
@@ -160,10 +160,12 @@ class ChipWalk {
   }
 
   /// Where places are not known: the arguments are checked on a place of its own.
-  void try_kind(const Callable& kind, const std::vector<std::uint32_t>& ends, Span span) {
+  void try_kind(const Callable& kind, const std::vector<Span>& places, Span span) {
     Unrolled apart;
-    for (const std::uint32_t end : ends) {
-      apart.qubits.push_back({fmt::format("place {}", end + 1), {}, {}, {}});
+    std::vector<std::uint32_t> ends;
+    for (const Span place : places) {
+      ends.push_back(static_cast<std::uint32_t>(ends.size()));
+      apart.qubits.push_back({excerpt(session_, place), {}, {}, {}});
       apart.qubit_s.push_back(session_.graph.add({.op = NodeOp::s}));
     }
     elaborate_kind(session_, kind, ends, {apart, ""}, span);

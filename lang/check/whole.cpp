@@ -46,7 +46,8 @@ void check_thermal(Session& session, const Statements& statements, const Instanc
   for (const InstanceBath& bath : instance.baths) {
     temperatures.insert(value_at_defaults(session, bath.temperature).value_or(0));
   }
-  if (temperatures.size() == 1) return;
+  // A bath that could not be read was reported.
+  if (temperatures.size() == 1 || (temperatures.empty() && session.diagnostics.has_errors())) return;
   session.report(statements.begin->span, diag::thermal_temperature, temperatures.size()).remedy("`thermal(15 mK)` gives it");
 }
 
@@ -94,7 +95,6 @@ void check_target(Session& session, const Instance& instance, Span span) {
   }
   if (other <= 1e-12 * diagonal) return;
   session.report(span, diag::target_not_diagonal);
-  session.remark("`target`: the Hamiltonian is not diagonal at s = 1; the lowest states of its diagonal are meant");
 }
 
 void check_targets(Session& session, const Statements& statements, const Instance& instance) {

@@ -165,6 +165,7 @@ std::string other_notation(const Stop& stop) {
   if (here == Code::times && before == Code::times) return "a power is written `^`";
   if (here == Code::over_sign && before == Code::over_sign) return "a comment starts with `#`";
   if (here == Code::open_square && stop.expects("a value")) return "several values are `list(a, b, ...)`";
+  if (here == Code::open_round && stop.code_at(-2) == Code::observe) return "an answer has a name: " + quote("observe x = " + stop.text(-1) + "(...)");
   if (here == Code::assign && before == Code::colon) return "a default follows `=`, a type `:`; one may be left out";
   if (is_number(here) && before == Code::comma && stop.expects("a name")) return "several values are `list(a, b, ...)`";
   if (is_number(here) && stop.expects("`t =` or `s =`")) {
@@ -175,7 +176,7 @@ std::string other_notation(const Stop& stop) {
 
 /// A word of another notation, or a slip in a reserved word where the grammar has no list of them.
 std::string meant_word(const Stop& stop) {
-  if (!is_word(stop.here()) || is_reserved(stop.here())) return {};
+  if (stop.here() != Code::word && stop.here() != Code::unit_word) return {};
   const std::string word = stop.text(0);
   std::string_view meant = statement_for(word);
   std::vector<std::string_view> reserved;

@@ -1,5 +1,6 @@
 #include <catch2/catch.hpp>
 
+#include <array>
 #include <cmath>
 #include <fstream>
 
@@ -128,6 +129,38 @@ TEST_CASE("settings override defaults, counts included") {
     Checked again = check_text(ring("scan s over linear(0, 1, 3) observe gap"));
     read_overrides(again.program, {{name, text}}, again.diagnostics);
     CHECK(kinds(again.diagnostics) == std::vector<std::string>{kind});
+  }
+}
+
+TEST_CASE("a message about a setting shows the option as it was typed") {
+  for (const auto& [name, text, shown] : std::vector<std::array<std::string, 3>>{
+           {"ta", "3 GHz", "3 GHz"}, {"ta", "5", "5"}, {"tb", "3 ns", "tb"}, {"eta", "2*", ""}}) {
+    Checked checked = check_text(ring("scan s over linear(0, 1, 3) observe gap"));
+    read_overrides(checked.program, {{name, text}}, checked.diagnostics);
+    REQUIRE(checked.diagnostics.all().size() == 1);
+    const Span span = checked.diagnostics.all().front().span;
+    CHECK(checked.program.sources().file(span.file).text == "--set " + name + "=" + text);
+    CHECK(checked.program.sources().text(span) == shown);
+  }
+}
+
+TEST_CASE("warnings of the check are not made again when an experiment is unrolled") {
+  Checked checked = check_text(with_qubit("energy -2*pi*1 GHz/2*X"));
+  CHECK(kinds(checked.diagnostics) == std::vector<std::string>{"counted_twice"});
+  Diagnostics later;
+  CHECK(instances(checked.program, 0, {}, later).size() == 1);
+  CHECK(later.all().empty());
+}
+
+TEST_CASE("a schedule given with arguments bound is read at the kind's s") {
+  const Instance made = instance_of(R"(
+schedule ramp(s, high : frequency, low : frequency = 0 GHz) = low + (high - low)*s
+qubit site(drive : schedule) { energy drive(s)*Z }
+chip pair { qubit a : site(ramp(3 GHz, low = 1 GHz)) offset 0.25  qubit b : site(drive = ramp(high = 2 GHz)) }
+experiment run { chip pair scan s over linear(0, 1, 3) observe gap })");
+  for (const double s : {0.0, 0.3, 0.75}) {
+    CHECK(energy(made, {0, 2}, s) == Approx(kGigahertz * (1 + 2*(s + 0.25))));
+    CHECK(energy(made, {0, 1}, s) == Approx(kGigahertz * 2*s).margin(1e-12));
   }
 }
 

@@ -83,6 +83,9 @@ TEST_CASE("faulty unit texts say where and why") {
 
 TEST_CASE("near units") {
   CHECK(near_unit("ghz") == "GHz");
+  CHECK(near_unit("Mhz") == "MHz");
+  CHECK(near_unit("mhz") == "MHz");  // Not the millihertz.
+  CHECK(near_unit("mk") == "mK");
   CHECK(near_unit("sec") == "s");
   CHECK(near_unit("GHzz") == "GHz");
   CHECK(near_unit("drive").empty());
