@@ -50,7 +50,7 @@ std::string two_qubits(const std::string& density, const std::string& equation) 
          "chip two { qubit q[i] : site for i in 0 .. 1  coupler q[0] -- q[1] : link }\n"
          "experiment trial {\n chip two\n begin ground\n pace ramp to 1 over ta, hold for 5 ns\n equation " + equation +
          "\n observe p = population(target) at end\n observe z = mean(Z(q[0])) along 5\n observe distribution at end\n"
-         " sweep ta over log(3 ns, 60 ns, 6)\n}\n";
+         " sweep ta over log(3 ns, 20 ns, 4)\n}\n";
 }
 
 }  // namespace

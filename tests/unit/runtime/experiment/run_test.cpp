@@ -305,7 +305,7 @@ TEST_CASE("the files are the same for 1, 2 and 5 jobs") {
     RunOptions options;
     options.jobs = jobs;
     options.out = folder;
-    options.provenance = {"0.1", {{"model.tarn", "00ff"}}, "somewhere"};
+    options.provenance = {"0.1", "b1", {{"model.tarn", "00ff"}}, {}, "somewhere"};
     const RunReport report = run(plan, kernel, options);
     CHECK(report.ending == Ending::finished);
     const auto files = files_of(folder / "trial");
@@ -321,7 +321,7 @@ TEST_CASE("an interrupted run keeps its rows, and continued it ends with the sam
   const Kernel kernel = hand::two_qubits(false);
   const fs::path whole = fresh_folder(), parts = fresh_folder();
   RunOptions options;
-  options.provenance = {"0.1", {{"model.tarn", "00ff"}}, "somewhere"};
+  options.provenance = {"0.1", "b1", {{"model.tarn", "00ff"}}, {}, "somewhere"};
   options.out = whole;
   run(plan, kernel, options);
 
