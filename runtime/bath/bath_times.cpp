@@ -31,7 +31,7 @@ void add(Moments& sum, const Moments& part) {
 /// accuracy at long times, so the demand on a panel must not be relative to the panel.
 constexpr double kZerothTolerance = 1e-12;
 constexpr double kFirstTolerance = 3e-11;
-constexpr int kDeepest = 10;
+constexpr int kMostHalvings = 10;
 
 Moments moments(const Correlation& c, double a, double b, const Moments& before, int depth = 0) {
   using Rule = boost::math::quadrature::gauss_kronrod<double, 31>;
@@ -47,7 +47,7 @@ Moments moments(const Correlation& c, double a, double b, const Moments& before,
   Moments part{value.real(), value.imag() * b, error, error * b};
   const bool zeroth_good = error <= kZerothTolerance * (before.zeroth + part.zeroth);
   const bool first_good = error * b <= kFirstTolerance * (before.first + part.first);
-  if ((zeroth_good && first_good) || depth == kDeepest) return part;
+  if ((zeroth_good && first_good) || depth == kMostHalvings) return part;
   const double middle = 0.5 * (a + b);
   part = moments(c, a, middle, before, depth + 1);
   add(part, moments(c, middle, b, before, depth + 1));

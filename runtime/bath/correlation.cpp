@@ -15,7 +15,7 @@ Term rational_term(std::vector<DensityPole> poles, double theta) {
   return [poles = std::move(poles), theta](double t) { return rational_correlation(poles, theta, t); };
 }
 
-Term component_term(const ThermalBath& bath, std::size_t row) {
+Term correlation_of_component(const ThermalBath& bath, std::size_t row) {
   const Component& component = bath.components()[row];
   const double theta = bath.theta();
   if (const auto* c = std::get_if<PowerLaw>(&component))
@@ -29,7 +29,7 @@ Term component_term(const ThermalBath& bath, std::size_t row) {
 }  // namespace
 
 CorrelationFunction::CorrelationFunction(const ThermalBath& bath) {
-  for (std::size_t row = 0; row < bath.components().size(); ++row) terms_.push_back(component_term(bath, row));
+  for (std::size_t row = 0; row < bath.components().size(); ++row) terms_.push_back(correlation_of_component(bath, row));
 }
 
 Complex CorrelationFunction::at(double t) const {

@@ -12,9 +12,9 @@ namespace tarn::runtime {
 namespace {
 
 using Eigen::ArrayXd;
-using Term = std::function<double(double)>;
+using ShiftTerm = std::function<double(double)>;
 
-Term shift_term(const PowerLaw& law, double theta) {
+ShiftTerm shift_term(const PowerLaw& law, double theta) {
   if (theta == 0.0 && law.s == 1.0) return [law](double w) { return cold_ohmic_shift(law.eta, law.cutoff, w); };
   const double lambda = law.eta * law.cutoff * std::tgamma(law.s);
   auto transform = std::make_shared<const PowerLawTransform>(law, theta);
@@ -22,18 +22,18 @@ Term shift_term(const PowerLaw& law, double theta) {
 }
 
 template <class Rational>
-Term rational_term(const Rational& density, double theta) {
+ShiftTerm rational_term(const Rational& density, double theta) {
   return [poles = poles_of(density, theta), theta](double w) { return rational_transform(poles, theta, w).imag(); };
 }
-Term shift_term(const Drude& drude, double theta) { return rational_term(drude, theta); }
-Term shift_term(const LorentzianPeak& peak, double theta) { return rational_term(peak, theta); }
+ShiftTerm shift_term(const Drude& drude, double theta) { return rational_term(drude, theta); }
+ShiftTerm shift_term(const LorentzianPeak& peak, double theta) { return rational_term(peak, theta); }
 
-Term panel_term(const ThermalBath& bath, std::size_t row) {
+ShiftTerm panel_term(const ThermalBath& bath, std::size_t row) {
   auto panels = std::make_shared<const DensityPanels>(*bath.panels(row));
   return [panels](double w) { return panel_shift(*panels, w); };
 }
 
-Term component_term(const ThermalBath& bath, std::size_t row) {
+ShiftTerm shift_of_component(const ThermalBath& bath, std::size_t row) {
   const Component& component = bath.components()[row];
   if (const auto* c = std::get_if<PowerLaw>(&component)) return shift_term(*c, bath.theta());
   if (const auto* c = std::get_if<Drude>(&component)) return shift_term(*c, bath.theta());
@@ -65,7 +65,7 @@ double occupation_factor(double w, double theta) {
 ShiftFunction::ShiftFunction(const ThermalBath& bath)
     : kinks_{{0.0, nullptr, 0}}, theta_(bath.theta()), lambda_(bath.reorganisation()) {
   for (std::size_t row = 0; row < bath.components().size(); ++row) {
-    terms_.push_back(component_term(bath, row));
+    terms_.push_back(shift_of_component(bath, row));
     append_kinks(bath.components()[row], kinks_);
   }
   std::stable_sort(kinks_.begin(), kinks_.end(), [](const DensityKink& a, const DensityKink& b) { return a.w < b.w; });
@@ -73,7 +73,7 @@ ShiftFunction::ShiftFunction(const ThermalBath& bath)
 
 double ShiftFunction::at(double w) const {
   double sum = 0.0;
-  for (const Term& term : terms_) sum += term(w);
+  for (const ShiftTerm& term : terms_) sum += term(w);
   return sum;
 }
 

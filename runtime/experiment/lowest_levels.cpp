@@ -1,12 +1,13 @@
 #include "runtime/experiment/lowest_levels.h"
 
-#include <Eigen/Eigenvalues>
 #include <algorithm>
 #include <cmath>
 #include <cstdint>
+#include <utility>
 #include <vector>
 
 #include "lang/support/check.h"
+#include "runtime/linear/eigensystem.h"
 
 namespace tarn::runtime {
 namespace {
@@ -88,9 +89,9 @@ class Space {
   }
 
   void solve() {
-    const Eigen::SelfAdjointEigenSolver<Matrix<Scalar>> solver(projected_.topLeftCorner(size_, size_));
-    values_ = solver.eigenvalues();
-    mixing_ = solver.eigenvectors();
+    auto system = eigensystem(Matrix<Scalar>(projected_.topLeftCorner(size_, size_)));
+    values_ = std::move(system.values);
+    mixing_ = std::move(system.vectors);
   }
   /// H times basis vector k.
   Vector<Scalar> image(Index k) const { return image_.col(k); }
@@ -249,13 +250,13 @@ Result<Levels, RunError> search_levels(Index dimension, Index count, const Produ
 Levels all_levels(const MatrixXcd& matrix) {
   Levels levels;
   if (matrix.imag().isZero(0)) {
-    const Eigen::SelfAdjointEigenSolver<Eigen::MatrixXd> solver(matrix.real());
-    levels.energies = solver.eigenvalues();
-    levels.vectors = solver.eigenvectors().cast<std::complex<double>>();
+    const auto system = eigensystem(Eigen::MatrixXd(matrix.real()));
+    levels.energies = system.values;
+    levels.vectors = system.vectors.cast<std::complex<double>>();
   } else {
-    const Eigen::SelfAdjointEigenSolver<MatrixXcd> solver(matrix);
-    levels.energies = solver.eigenvalues();
-    levels.vectors = solver.eigenvectors();
+    auto system = eigensystem(matrix);
+    levels.energies = std::move(system.values);
+    levels.vectors = std::move(system.vectors);
   }
   levels.width = levels.energies[levels.energies.size() - 1] - levels.energies[0];
   // Backward error of the symmetric QR algorithm: a small multiple of the rounding unit.

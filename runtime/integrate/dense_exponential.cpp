@@ -1,15 +1,17 @@
 #include "runtime/integrate/dense_exponential.h"
 
-#include <Eigen/Eigenvalues>
 #include <complex>
+#include <utility>
 #include <unsupported/Eigen/MatrixFunctions>
+
+#include "runtime/linear/eigensystem.h"
 
 namespace tarn::runtime {
 
 SkewSpectrum skew_spectrum(const Eigen::MatrixXcd& g) {
   const Eigen::MatrixXcd h = std::complex<double>(0, 0.5) * (g - g.adjoint());
-  const Eigen::SelfAdjointEigenSolver<Eigen::MatrixXcd> solver(h);
-  return {solver.eigenvalues(), solver.eigenvectors()};
+  auto system = eigensystem(h);
+  return {std::move(system.values), std::move(system.vectors)};
 }
 
 Eigen::VectorXcd evolve(const SkewSpectrum& g, double t, const Eigen::VectorXcd& x) {

@@ -1,6 +1,5 @@
 #include "runtime/levels/family.h"
 
-#include <Eigen/Eigenvalues>
 #include <bit>
 #include <complex>
 #include <limits>
@@ -9,6 +8,7 @@
 
 #include "lang/support/check.h"
 #include "runtime/levels/product.h"
+#include "runtime/linear/eigensystem.h"
 
 namespace tarn::runtime {
 namespace {
@@ -87,14 +87,14 @@ struct DenseFamily {
 
 template <class Scalar>
 Frame<Scalar> solve_dense(const Matrix<Scalar>& hamiltonian, double s, Eigen::Index count) {
-  const Eigen::SelfAdjointEigenSolver<Matrix<Scalar>> solver(hamiltonian);
-  TARN_CHECK(solver.info() == Eigen::Success);
+  const Eigensystem<Scalar> all_levels = eigensystem(hamiltonian);
+  TARN_CHECK(all_levels.converged);
   Frame<Scalar> frame;
   frame.s = s;
-  frame.energies = solver.eigenvalues().head(count);
-  frame.vectors = solver.eigenvectors().leftCols(count);
+  frame.energies = all_levels.values.head(count);
+  frame.vectors = all_levels.vectors.leftCols(count);
   const bool all = count == hamiltonian.rows();
-  frame.next = all ? std::numeric_limits<double>::infinity() : solver.eigenvalues()[count];
+  frame.next = all ? std::numeric_limits<double>::infinity() : all_levels.values[count];
   frame.residual = (product<Scalar>(hamiltonian, frame.vectors) - frame.vectors * frame.energies.asDiagonal())
                        .colwise()
                        .norm()

@@ -114,7 +114,7 @@ class Builder {
   bool avoided(const Frame<Scalar>& frame, const Matrix<Scalar>& basis, const Eigen::VectorXd& energies,
                const std::vector<std::pair<Eigen::Index, Eigen::Index>>& pairs, double s) const {
     Matrix<Scalar> vectors = frame.vectors;
-    if (basis.size() != 0) vectors = frame.vectors * basis;
+    if (basis.size() != 0) vectors = product<Scalar>(frame.vectors, basis);
     const Matrix<Scalar> slope = product<Scalar>(vectors.adjoint(), model_.slope(s, vectors));
     return std::any_of(pairs.begin(), pairs.end(), [&](const auto& pair) {
       const auto [a, b] = pair;

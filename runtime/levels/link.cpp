@@ -1,6 +1,6 @@
 #include "runtime/levels/link.h"
 
-#include <Eigen/Dense>
+#include <Eigen/SVD>
 #include <algorithm>
 #include <cmath>
 #include <complex>
@@ -10,6 +10,7 @@
 #include "lang/support/check.h"
 #include "runtime/levels/product.h"
 #include "runtime/levels/rotation.h"
+#include "runtime/linear/eigensystem.h"
 
 namespace tarn::runtime {
 namespace {
@@ -42,11 +43,10 @@ Matrix<Scalar> adapt_columns(Matrix<Scalar>& overlap, const Labels& columns, con
     Eigen::VectorXd weight = Eigen::VectorXd::Zero(count_of(rows));
     for (Eigen::Index r = 0; r < row_weight.size(); ++r) weight[rows[static_cast<std::size_t>(r)]] += row_weight[r];
     if (weight.maxCoeff() > static_cast<double>(manifold.size()) - 0.5) continue;
-    const Matrix<Scalar> projected = block.adjoint() * ordinal.asDiagonal() * block;
-    const Eigen::SelfAdjointEigenSolver<Matrix<Scalar>> solver(projected);
+    const Matrix<Scalar> turn = eigensystem(product<Scalar>(block.adjoint(), ordinal.asDiagonal() * block)).vectors;
     if (basis.size() == 0) basis = Matrix<Scalar>::Identity(overlap.cols(), overlap.cols());
-    basis(manifold, manifold) = solver.eigenvectors();
-    overlap(Eigen::all, manifold) = block * solver.eigenvectors();
+    basis(manifold, manifold) = turn;
+    overlap(Eigen::all, manifold) = product<Scalar>(block, turn);
   }
   return basis;
 }
@@ -88,8 +88,10 @@ Labels match(const Matrix<Scalar>& overlap, const Labels& columns, const Labels&
 
 template <class Scalar>
 Matrix<Scalar> polar_factor(const Matrix<Scalar>& matrix) {
-  const Eigen::JacobiSVD<Matrix<Scalar>> svd(matrix, Eigen::ComputeFullU | Eigen::ComputeFullV);
-  return svd.matrixU() * svd.matrixV().adjoint();
+  TARN_CHECK(matrix.rows() == matrix.cols());
+  // Only other shapes need a QR decomposition first.
+  const Eigen::JacobiSVD<Matrix<Scalar>, Eigen::NoQRPreconditioner> svd(matrix, Eigen::ComputeFullU | Eigen::ComputeFullV);
+  return product<Scalar>(svd.matrixU(), svd.matrixV().adjoint());
 }
 
 /// The same, by hand for a single level.
@@ -127,8 +129,8 @@ void align(Matrix<Scalar>& overlap, Matrix<Scalar>& basis, const Labels& left, c
     const auto size = static_cast<Eigen::Index>(group.size());
     if ((turn - Matrix<Scalar>::Identity(size, size)).cwiseAbs().maxCoeff() <= 1e-13) continue;
     const Matrix<Scalar> rows = overlap(group, Eigen::all), columns = basis(Eigen::all, group);
-    overlap(group, Eigen::all) = turn.adjoint() * rows;
-    basis(Eigen::all, group) = columns * turn;
+    overlap(group, Eigen::all) = product<Scalar>(turn.adjoint(), rows);
+    basis(Eigen::all, group) = product<Scalar>(columns, turn);
   }
 }
 
@@ -153,7 +155,7 @@ void set_energies(Link<Scalar>& link, const LevelModel<Scalar>& model, const Fra
   const double ds = link.s_right - link.s_left;
   const auto turned = [](const Frame<Scalar>& frame, const Matrix<Scalar>& basis) -> Matrix<Scalar> {
     if (basis.size() == 0) return frame.vectors;
-    return frame.vectors * basis;
+    return product<Scalar>(frame.vectors, basis);
   };
   link.left_energies = adapted<Scalar>(left.energies, link.left_basis);
   link.right_energies = adapted<Scalar>(right.energies, link.right_basis);
@@ -206,7 +208,7 @@ Link<Scalar> make_link(const LevelModel<Scalar>& model, const Frame<Scalar>& lef
 template <class Scalar>
 void orient(Frame<Scalar>& right, Link<Scalar>& link) {
   if (link.right_basis.size() == 0) return;
-  right.vectors = Matrix<Scalar>(right.vectors * link.right_basis);
+  right.vectors = product<Scalar>(right.vectors, link.right_basis);
   right.energies = link.right_energies;
   link.right_basis.resize(0, 0);
 }

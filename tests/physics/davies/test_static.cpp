@@ -1,12 +1,14 @@
 // A chip at rest: steady states, decay times, and what every generator must keep.
-#include <Eigen/Dense>
 #include <algorithm>
 #include <catch2/catch.hpp>
 
 #include "brute.h"
+#include "tests/support/dense.h"
 
 using namespace tarn::runtime;
 using namespace tarn::runtime::testing;
+using tarn::test::dense_levels_of;
+using tarn::test::product_of;
 
 namespace {
 
@@ -23,16 +25,16 @@ Density hold(const HamiltonianFamily& family, const std::vector<BathFunctions>& 
 }
 
 Density gibbs(const HamiltonianFamily& family, double s, double theta) {
-  const Eigen::SelfAdjointEigenSolver<Density> eigen(Brute::at(family.hamiltonian, family, s));
-  const Eigen::VectorXd weight = (-(eigen.eigenvalues().array() - eigen.eigenvalues()[0]) / theta).exp();
-  return eigen.eigenvectors() * (weight / weight.sum()).cast<std::complex<double>>().asDiagonal() * eigen.eigenvectors().adjoint();
+  const auto [energies, vectors] = dense_levels_of(Brute::at(family.hamiltonian, family, s));
+  const Eigen::VectorXd weight = (-(energies.array() - energies[0]) / theta).exp();
+  return product_of(vectors * (weight / weight.sum()).asDiagonal(), vectors.adjoint());
 }
 
 Density mixed_start(Eigen::Index size, unsigned seed) {
   std::mt19937 engine(seed);
   std::normal_distribution<double> normal;
   const Eigen::MatrixXcd root = Eigen::MatrixXcd::NullaryExpr(size, size, [&] { return std::complex<double>(normal(engine), normal(engine)); });
-  const Density square = root * root.adjoint();
+  const Density square = product_of(root, root.adjoint());
   return square / square.trace();
 }
 
@@ -85,8 +87,8 @@ TEST_CASE("one qubit decays with its T1 and T2") {
   const Density start = mixed_start(2, 3), steady = gibbs(family, 0.5, kTheta);
   const double t = 100;
   const Density end = hold<double>(family, baths, 0.5, t, start);
-  const Eigen::SelfAdjointEigenSolver<Density> eigen(Brute::at(family.hamiltonian, family, 0.5));
-  const auto level = [&](const Density& rho) -> Density { return eigen.eigenvectors().adjoint() * rho * eigen.eigenvectors(); };
+  const Density vectors = dense_levels_of(Brute::at(family.hamiltonian, family, 0.5)).vectors;
+  const auto level = [&](const Density& rho) -> Density { return product_of(product_of(vectors.adjoint(), rho), vectors); };
   const double left = (level(end)(0, 0) - level(steady)(0, 0)).real() / (level(start)(0, 0) - level(steady)(0, 0)).real();
   CHECK(-t / std::log(left) == Approx(t1).epsilon(1e-9));
   CHECK(-t / std::log(std::abs(level(end)(0, 1) / level(start)(0, 1))) == Approx(t2).epsilon(1e-9));
@@ -108,7 +110,7 @@ TEST_CASE("a generator keeps trace and Hermiticity and is completely positive") 
   const auto map = [&](const Density& rho) { return hold<double>(family, baths, 0.5, t, rho); };
   const Density matrix = choi(map, 4);
   CHECK((matrix - matrix.adjoint()).cwiseAbs().maxCoeff() < 1e-12);
-  CHECK(Eigen::SelfAdjointEigenSolver<Density>(matrix).eigenvalues().minCoeff() > -1e-12);
+  CHECK(dense_levels_of(matrix).energies.minCoeff() > -1e-12);
   for (Eigen::Index i = 0; i < 4; ++i)
     for (Eigen::Index j = 0; j < 4; ++j) CHECK(std::abs(matrix.block(i * 4, j * 4, 4, 4).trace() - (i == j ? 1.0 : 0.0)) < 1e-12);
 }

@@ -1,4 +1,4 @@
-#include <Eigen/Dense>
+#include <Eigen/Core>
 #include <bit>
 #include <catch2/catch.hpp>
 #include <complex>

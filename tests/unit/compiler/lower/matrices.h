@@ -1,7 +1,7 @@
 #pragma once
 /// \file Pauli words and sums as dense matrices, built from Kronecker products of the 2 x 2 ones.
 
-#include <Eigen/Dense>
+#include <Eigen/Core>
 #include <complex>
 #include <vector>
 

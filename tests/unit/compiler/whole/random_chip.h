@@ -1,7 +1,7 @@
 #pragma once
 /// \file Random chips as text, beside the matrices that they mean, a pure function of the seed.
 
-#include <Eigen/Dense>
+#include <Eigen/Core>
 #include <functional>
 #include <map>
 #include <random>

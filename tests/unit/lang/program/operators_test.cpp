@@ -2,7 +2,7 @@
 
 #include <catch2/catch.hpp>
 
-#include <Eigen/Dense>
+#include <Eigen/Core>
 #include <bit>
 #include <map>
 

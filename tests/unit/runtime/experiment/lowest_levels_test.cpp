@@ -1,10 +1,10 @@
 #include <catch2/catch.hpp>
 
-#include <Eigen/Eigenvalues>
 #include <cmath>
 #include <numbers>
 
 #include "runtime/experiment/lowest_levels.h"
+#include "tests/support/dense.h"
 
 using namespace tarn::runtime;
 using Eigen::Index;
@@ -71,7 +71,8 @@ TEST_CASE("a complex Hermitian matrix against a dense solve") {
   const Product product = [&](const Complex* x, Complex* y) {
     Eigen::Map<Eigen::VectorXcd>(y, size) = m * Eigen::Map<const Eigen::VectorXcd>(x, size);
   };
-  const Levels dense = all_levels(m);
+  const auto dense = tarn::test::dense_levels_of(m);
+  CHECK((all_levels(m).energies - dense.energies).norm() < 1e-11);
   const auto few = lowest_levels(size, 5, product, false, {}, {});
   REQUIRE(few);
   for (Index k = 0; k < 5; ++k) {

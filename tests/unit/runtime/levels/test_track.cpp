@@ -1,9 +1,9 @@
-#include <Eigen/Dense>
 #include <catch2/catch.hpp>
 #include <cmath>
 
 #include "runtime/levels/rotation.h"
 #include "runtime/levels/track.h"
+#include "runtime/linear/eigensystem.h"
 
 using namespace tarn::runtime;
 
@@ -14,12 +14,12 @@ LevelModel<double> model_of(Eigen::Index size, std::function<Eigen::MatrixXd(dou
   LevelModel<double> model;
   model.dimension = size;
   model.solve = [=](double s, Eigen::Index count) {
-    const Eigen::SelfAdjointEigenSolver<Eigen::MatrixXd> eigen(hamiltonian(s));
+    const auto eigen = eigensystem(hamiltonian(s));
     Frame<double> frame;
     frame.s = s;
-    frame.energies = eigen.eigenvalues().head(count);
-    frame.vectors = eigen.eigenvectors().leftCols(count);
-    frame.next = count < size ? eigen.eigenvalues()[count] : INFINITY;
+    frame.energies = eigen.values.head(count);
+    frame.vectors = eigen.vectors.leftCols(count);
+    frame.next = count < size ? eigen.values[count] : INFINITY;
     return frame;
   };
   model.slope = [=](double s, const Matrix<double>& columns) -> Matrix<double> {
