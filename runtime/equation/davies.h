@@ -24,26 +24,28 @@
 
 namespace tarn::runtime {
 
-/// The generator at the middle of every step of a track, made when first asked for: depends on
+/// The generator at the middle of every step of a track, made when asked for: depends on
 /// track and baths alone. Shared between runs and threads.
 template <class Scalar>
 class DaviesTables {
  public:
-  /// `baths` has one entry for every coupling.
-  DaviesTables(std::shared_ptr<const Track<Scalar>> track, std::vector<BathFunctions> baths);
+  /// `baths` has one entry for every coupling. Tables are kept while there is `memory`; none: all of them.
+  DaviesTables(std::shared_ptr<const Track<Scalar>> track, std::vector<BathFunctions> baths,
+               std::shared_ptr<MemoryBudget> memory = {});
   ~DaviesTables();
   DaviesTables(const DaviesTables&) = delete;
   DaviesTables& operator=(const DaviesTables&) = delete;
 
   const Track<Scalar>& track() const { return *track_; }
   std::span<const BathFunctions> baths() const { return baths_; }
-  /// One table for each of track().steps(interval, depth).
-  const std::vector<DaviesTable>& steps(std::size_t interval, int depth) const;
+  /// One table for each step of `steps`, which are those of track().stretch(interval, depth).
+  std::shared_ptr<const std::vector<DaviesTable>> of_steps(std::size_t interval, int depth, const Steps<Scalar>& steps) const;
 
  private:
   struct Cache;
   std::shared_ptr<const Track<Scalar>> track_;
   std::vector<BathFunctions> baths_;
+  std::shared_ptr<MemoryBudget> memory_;
   std::vector<std::unique_ptr<Cache>> cache_;
 };
 

@@ -1,8 +1,6 @@
 #include <algorithm>
-#include <array>
 #include <cmath>
 #include <limits>
-#include <mutex>
 #include <optional>
 
 #include "lang/support/check.h"
@@ -13,33 +11,6 @@
 namespace tarn::runtime {
 
 using Complex = std::complex<double>;
-
-template <class Scalar>
-struct DaviesTables<Scalar>::Cache {
-  std::array<std::once_flag, Track<Scalar>::kMaxDepth + 1> made;
-  std::array<std::vector<DaviesTable>, Track<Scalar>::kMaxDepth + 1> depth;
-};
-
-template <class Scalar>
-DaviesTables<Scalar>::DaviesTables(std::shared_ptr<const Track<Scalar>> track, std::vector<BathFunctions> baths)
-    : track_(std::move(track)), baths_(std::move(baths)) {
-  TARN_CHECK(baths_.size() == track_->model().couplings);
-  for (std::size_t i = 0; i < track_->intervals(); ++i) cache_.push_back(std::make_unique<Cache>());
-}
-
-template <class Scalar>
-DaviesTables<Scalar>::~DaviesTables() = default;
-
-template <class Scalar>
-const std::vector<DaviesTable>& DaviesTables<Scalar>::steps(std::size_t interval, int depth) const {
-  Cache& cache = *cache_[interval];
-  const auto row = static_cast<std::size_t>(depth);
-  std::call_once(cache.made[row], [&] {
-    for (const auto& step : track_->steps(interval, depth))
-      cache.depth[row].push_back(davies_table<Scalar>(track_->model(), step.middle, step.groups, baths_));
-  });
-  return cache.depth[row];
-}
 
 namespace {
 
@@ -176,8 +147,10 @@ class Walk {
   /// Depth beyond that of the pass, so that pairs that rotate do not lose their coherence within
   /// one step. `duration` of the complete interval.
   int extra_depth(std::size_t interval, double duration) const {
-    const auto& step = track_.steps(interval, 0).front();
-    const auto& loss = tables_.steps(interval, 0).front().loss;
+    const Stretch<Scalar> stretch = track_.stretch(interval, 0);
+    const auto tables = tables_.of_steps(interval, 0, *stretch.steps);
+    const auto& step = stretch.steps->front();
+    const auto& loss = tables->front().loss;
     double most = 0;
     for (Eigen::Index b = 0; b < loss.cols(); ++b)
       for (Eigen::Index a = 0; a < b; ++a)
@@ -195,9 +168,10 @@ class Walk {
 
   void cached_piece(const Piece& piece) {
     const int depth = depth_of(piece);
-    const auto& steps = track_.steps(piece.interval, depth);
-    const auto& tables = tables_.steps(piece.interval, depth);
-    const auto frames = track_.frames(piece.interval, depth);
+    const Stretch<Scalar> stretch = track_.stretch(piece.interval, depth);
+    const auto tables = tables_.of_steps(piece.interval, depth, *stretch.steps);
+    const Steps<Scalar>& steps = *stretch.steps;
+    const auto& frames = stretch.frames;
     const bool backward = piece.s1 < piece.s0;
     const std::size_t count = steps.size();
     change_basis(*(backward ? frames.back() : frames.front()));
@@ -205,7 +179,7 @@ class Walk {
       const std::size_t at = backward ? count - 1 - k : k;
       const double t0 = k == 0 ? piece.t0 : between(piece, k, count), t1 = k + 1 == count ? piece.t1 : between(piece, k + 1, count);
       samples_within(*frames[backward ? at + 1 : at], piece, t0, t1);
-      take(steps[at], tables[at], t1 - t0, backward);
+      take(steps[at], (*tables)[at], t1 - t0, backward);
       at_node_ = frames[backward ? at : at + 1];
       emit_at(*at_node_, t1);
     }
@@ -350,8 +324,6 @@ Result<DaviesPass, RunError> davies_pass(const DaviesTables<Scalar>& tables, con
   return Walk<Scalar>(tables, run, depth, options, explicitly || must_be).walk();
 }
 
-template class DaviesTables<double>;
-template class DaviesTables<Complex>;
 template Result<DaviesPass, RunError> davies_pass<double>(const DaviesTables<double>&, const DaviesRun&, int, const DaviesOptions&, bool);
 template Result<DaviesPass, RunError> davies_pass<Complex>(const DaviesTables<Complex>&, const DaviesRun&, int, const DaviesOptions&, bool);
 

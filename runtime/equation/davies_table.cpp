@@ -47,12 +47,19 @@ Spectra evaluate(std::span<const BathFunctions> baths, const std::vector<Jump>& 
   std::vector<double> w;
   for (const Jump& jump : jumps) w.push_back(jump.w);
   Spectra spectra;
-  for (const auto& bath : baths) {
+  for (std::size_t c = 0; c < baths.size(); ++c) {
+    const auto twin = std::find_if(baths.begin(), baths.begin() + static_cast<std::ptrdiff_t>(c),
+                                   [&](const BathFunctions& other) { return other.alike >= 0 && other.alike == baths[c].alike; });
+    if (const auto before = static_cast<std::size_t>(twin - baths.begin()); before < c) {
+      spectra.rate.push_back(spectra.rate[before]);
+      spectra.shift.push_back(spectra.shift[before]);
+      continue;
+    }
     spectra.rate.emplace_back(w.size(), 0.0);
     spectra.shift.emplace_back(w.size(), 0.0);
     if (w.empty()) continue;
-    bath.rate(w, spectra.rate.back().data());
-    if (bath.shift) bath.shift(w, spectra.shift.back().data());
+    baths[c].rate(w, spectra.rate.back().data());
+    if (baths[c].shift) baths[c].shift(w, spectra.shift.back().data());
   }
   return spectra;
 }

@@ -24,6 +24,7 @@ using SpectralFunction = std::function<void(std::span<const double> w, double* o
 struct BathFunctions {
   SpectralFunction rate;   ///< gamma(w) >= 0, 1/ns; positive w: the system loses energy.
   SpectralFunction shift;  ///< S(w), rad/ns.
+  int alike = -1;          ///< Couplings of one number >= 0 have baths that are copies of each other.
 };
 
 /// Everything but -i [H, .]: a sparse map on the K x K matrix, pair (a, b) numbered a + K b.

@@ -11,12 +11,15 @@
 #include "runtime/bath/shift.h"
 #include "runtime/equation/davies_refinement.h"
 #include "runtime/experiment/bath_of_plan.h"
+#include "runtime/experiment/memory.h"
 #include "runtime/experiment/words.h"
 
 namespace tarn::runtime {
 namespace {
 
 constexpr std::size_t kMostQubits = 10;
+constexpr double kOfAvailable = 0.3;   ///< Of the memory there is: what tracks and tables may keep.
+constexpr double kUsualMemory = 4e9;   ///< Where the system does not tell.
 constexpr double kOfDistance = 0.03;  ///< Error of an answer over what the distance of the states could do to it.
 constexpr std::size_t kKeySamples = 257;
 constexpr double kNarrowest = 0.02;  ///< A track covers at least so much of s.
@@ -101,7 +104,10 @@ Result<std::vector<BathFunctions>, RunError> baths_of(const PointTask& task, std
     };
   }
   std::vector<BathFunctions> of_coupling;
-  for (const Coupling& coupling : plan.chip.couplings) of_coupling.push_back(made[coupling.bath]);
+  for (const Coupling& coupling : plan.chip.couplings) {
+    of_coupling.push_back(made[coupling.bath]);
+    of_coupling.back().alike = static_cast<int>(coupling.bath);
+  }
   return of_coupling;
 }
 
@@ -177,7 +183,9 @@ std::shared_ptr<const Functions> functions_of(const PointTask& task) {
 
 }  // namespace
 
-DaviesPoints::DaviesPoints(const PlanModel& model, std::size_t kept) : model_(model), tracks_(kept), tables_(kept) {}
+DaviesPoints::DaviesPoints(const PlanModel& model, std::size_t kept)
+    : model_(model), memory_(std::make_shared<MemoryBudget>(kOfAvailable * memory_available().value_or(kUsualMemory))),
+      tracks_(kept), tables_(kept) {}
 
 std::vector<double> DaviesPoints::track_key(const Functions& functions) const {
   std::vector<double> key;
@@ -202,6 +210,7 @@ DaviesPoints::AnyTrack DaviesPoints::make_track(const PointTask& task, const Int
   const HamiltonianFamily family = family_of(model_, functions_of(task), task.positions());
   TrackOptions options = track_options(task);
   options.interrupted = interrupted;
+  options.memory = memory_;
   if (is_real(family)) return std::make_shared<const Track<double>>(dense_levels<double>(family), options);
   using Complex = std::complex<double>;
   return std::make_shared<const Track<Complex>>(dense_levels<Complex>(family), options);
@@ -213,7 +222,7 @@ Result<DaviesPoints::AnyTables, RunError> DaviesPoints::make_tables(const PointT
   if (!baths) return Unexpected{baths.error()};
   return std::visit(
       [&]<class Scalar>(const TrackOf<Scalar>& track) -> AnyTables {
-        return std::make_shared<const DaviesTables<Scalar>>(track, std::move(baths).value());
+        return std::make_shared<const DaviesTables<Scalar>>(track, std::move(baths).value(), memory_);
       },
       any);
 }

@@ -15,7 +15,8 @@ namespace tarn::runtime {
 /// which thread made a track, or when.
 class DaviesPoints {
  public:
-  /// `kept` >= 1 tracks, and the tables of as many baths on them, stay in memory.
+  /// `kept` >= 1 tracks, and the tables of as many baths on them, stay in memory, as far as a part of what the machine
+  /// has left holds them; the rest is made anew when needed.
   DaviesPoints(const PlanModel& model, std::size_t kept);
 
   /// What points must share, bit by bit, to share a track: the coefficients of the Hamiltonian and
@@ -41,6 +42,7 @@ class DaviesPoints {
   Result<AnyTables, RunError> make_tables(const PointTask& task, const AnyTrack& track) const;
 
   const PlanModel& model_;
+  std::shared_ptr<MemoryBudget> memory_;
   KeyedCache<AnyTrack> tracks_;
   KeyedCache<Result<AnyTables, RunError>> tables_;
 };

@@ -13,12 +13,33 @@ namespace tarn::runtime {
 
 using Complex = std::complex<double>;
 
-/// Each depth is made as a whole by the first thread that asks.
+/// Of one base interval. Each depth is made as a whole, by one thread at a time.
 template <class Scalar>
 struct Track<Scalar>::Refinements {
-  std::array<std::once_flag, kMaxDepth + 1> made;
-  std::array<std::vector<StepFrames<Scalar>>, kMaxDepth + 1> depth;
+  std::mutex making;
+  std::array<std::shared_ptr<const Steps<Scalar>>, kMaxDepth + 1> depth;
+  std::size_t bytes = 0;
 };
+
+namespace {
+
+template <class Scalar>
+std::size_t bytes_of(const Link<Scalar>& link) {
+  const Eigen::Index matrices = link.left_basis.size() + link.right_basis.size() + link.rotation.size();
+  return static_cast<std::size_t>(matrices) * sizeof(Scalar) + static_cast<std::size_t>(6 * link.lost.size()) * sizeof(double);
+}
+
+template <class Scalar>
+std::size_t bytes_of(const Steps<Scalar>& steps) {
+  std::size_t sum = 0;
+  for (const auto& step : steps) {
+    sum += sizeof step + static_cast<std::size_t>(step.middle.vectors.size()) * sizeof(Scalar);
+    sum += bytes_of(step.first) + bytes_of(step.second) + (step.groups.order.size() + step.groups.start.size()) * sizeof(std::uint32_t);
+  }
+  return sum;
+}
+
+}  // namespace
 
 template <class Scalar>
 Matrix<Scalar> coupling_elements(const LevelModel<Scalar>& model, std::size_t coupling, const Frame<Scalar>& frame) {
@@ -41,7 +62,8 @@ StepFrames<Scalar> make_step(const LevelModel<Scalar>& model, const Frame<Scalar
 }
 
 template <class Scalar>
-Track<Scalar>::Track(LevelModel<Scalar> model, const TrackOptions& options) : model_(std::move(model)) {
+Track<Scalar>::Track(LevelModel<Scalar> model, const TrackOptions& options)
+    : model_(std::move(model)), memory_(options.memory) {
   BaseGrid<Scalar> grid = base_grid<Scalar>(model_, options);
   levels_ = grid.levels;
   width_ = grid.width;
@@ -52,34 +74,48 @@ Track<Scalar>::Track(LevelModel<Scalar> model, const TrackOptions& options) : mo
 }
 
 template <class Scalar>
-Track<Scalar>::~Track() = default;
-
-template <class Scalar>
-const std::vector<StepFrames<Scalar>>& Track<Scalar>::steps(std::size_t interval, int depth) const {
-  TARN_CHECK(depth >= 0 && depth <= kMaxDepth);
-  Refinements& refinements = *refinements_[interval];
-  const auto row = static_cast<std::size_t>(depth);
-  std::call_once(refinements.made[row], [&] {
-    const auto ends = frames(interval, depth);
-    auto& steps = refinements.depth[row];
-    steps.reserve(ends.size() - 1);
-    for (std::size_t k = 0; k + 1 < ends.size(); ++k) steps.push_back(make_step<Scalar>(model_, *ends[k], *ends[k + 1], tolerance()));
-  });
-  return refinements.depth[row];
+Track<Scalar>::~Track() {
+  if (!memory_) return;
+  for (const auto& refinements : refinements_) memory_->give_back(refinements->bytes);
 }
 
 template <class Scalar>
-std::vector<const Frame<Scalar>*> Track<Scalar>::frames(std::size_t interval, int depth) const {
-  if (depth == 0) return {&nodes_[interval], &nodes_[interval + 1]};
-  const auto coarse = frames(interval, depth - 1);
-  const auto& middles = steps(interval, depth - 1);
-  std::vector<const Frame<Scalar>*> fine;
-  for (std::size_t k = 0; k < middles.size(); ++k) {
-    fine.push_back(coarse[k]);
-    fine.push_back(&middles[k].middle);
+Stretch<Scalar> Track<Scalar>::stretch(std::size_t interval, int depth) const {
+  TARN_CHECK(depth >= 0 && depth <= kMaxDepth);
+  const std::scoped_lock lock(refinements_[interval]->making);
+  return find_or_make(interval, depth);
+}
+
+/// Precondition: the interval is locked.
+template <class Scalar>
+Stretch<Scalar> Track<Scalar>::find_or_make(std::size_t interval, int depth) const {
+  Stretch<Scalar> stretch;
+  if (depth == 0) {
+    stretch.frames = {&nodes_[interval], &nodes_[interval + 1]};
+  } else {
+    Stretch<Scalar> coarse = find_or_make(interval, depth - 1);
+    for (std::size_t k = 0; k < coarse.steps->size(); ++k) {
+      stretch.frames.push_back(coarse.frames[k]);
+      stretch.frames.push_back(&(*coarse.steps)[k].middle);
+    }
+    stretch.frames.push_back(coarse.frames.back());
+    stretch.owners = std::move(coarse.owners);
+    stretch.owners.push_back(std::move(coarse.steps));
   }
-  fine.push_back(coarse.back());
-  return fine;
+  Refinements& refinements = *refinements_[interval];
+  auto& kept = refinements.depth[static_cast<std::size_t>(depth)];
+  stretch.steps = kept;
+  if (kept) return stretch;
+  Steps<Scalar> steps;
+  steps.reserve(stretch.frames.size() - 1);
+  for (std::size_t k = 0; k + 1 < stretch.frames.size(); ++k)
+    steps.push_back(make_step<Scalar>(model_, *stretch.frames[k], *stretch.frames[k + 1], tolerance()));
+  const std::size_t bytes = bytes_of(steps);
+  stretch.steps = std::make_shared<const Steps<Scalar>>(std::move(steps));
+  if (memory_ && !memory_->take(bytes)) return stretch;
+  refinements.bytes += bytes;
+  kept = stretch.steps;
+  return stretch;
 }
 
 template <class Scalar>

@@ -4,7 +4,7 @@
 ///
 /// A track has base nodes, close enough together for every rotation between neighbours to be small
 /// and every avoided crossing to be resolved, and under each base interval dyadic refinements
-/// that are made when first asked for. What they hold depends on the chip alone, so that threads
+/// that are made when asked for. What they hold depends on the chip alone, so that threads
 /// which share a track get the same bits in any order.
 
 #include <Eigen/Core>
@@ -13,6 +13,7 @@
 #include <memory>
 #include <vector>
 
+#include "runtime/levels/budget.h"
 #include "runtime/levels/family.h"
 #include "runtime/levels/groups.h"
 #include "runtime/levels/link.h"
@@ -25,6 +26,7 @@ struct TrackOptions {
   double max_rotation = 0.15;  ///< Largest element of a rotation between base nodes [rad].
   int initial_intervals = 16;
   int max_intervals = 20000;
+  std::shared_ptr<MemoryBudget> memory = {};  ///< For refinements; none: as much as they take.
   std::function<bool()> interrupted = {};  ///< True ends the refinement: the track is then of no use.
 };
 
@@ -44,6 +46,18 @@ StepFrames<Scalar> make_step(const LevelModel<Scalar>& model, const Frame<Scalar
 /// <a|A_c|b> among the levels of a frame, K x K.
 template <class Scalar>
 Matrix<Scalar> coupling_elements(const LevelModel<Scalar>& model, std::size_t coupling, const Frame<Scalar>& frame);
+
+/// The equal steps of a stretch, in the order of rising s.
+template <class Scalar>
+using Steps = std::vector<StepFrames<Scalar>>;
+
+/// Steps with the frames at their ends, one more than steps; valid as long as this is.
+template <class Scalar>
+struct Stretch {
+  std::shared_ptr<const Steps<Scalar>> steps;
+  std::vector<const Frame<Scalar>*> frames;
+  std::vector<std::shared_ptr<const Steps<Scalar>>> owners;  ///< Of the frames between.
+};
 
 /// Immutable to its users; safe to share between threads.
 template <class Scalar>
@@ -70,10 +84,9 @@ class Track {
 
   std::size_t intervals() const { return nodes_.size() - 1; }
   const std::vector<Frame<Scalar>>& nodes() const { return nodes_; }
-  /// The 2^depth equal steps of a base interval, in the order of rising s.
-  const std::vector<StepFrames<Scalar>>& steps(std::size_t interval, int depth) const;
-  /// The 2^depth + 1 frames between them.
-  std::vector<const Frame<Scalar>*> frames(std::size_t interval, int depth) const;
+  /// The 2^depth equal steps of a base interval, whose first and last frame are nodes(); kept while there is memory,
+  /// else made anew each time.
+  Stretch<Scalar> stretch(std::size_t interval, int depth) const;
   /// Levels at any s within the range; not cached. Energies ascend.
   Frame<Scalar> at(double s) const { return model_.solve(s, levels_); }
   /// Index of the base interval that holds s.
@@ -81,12 +94,14 @@ class Track {
 
  private:
   struct Refinements;
+  Stretch<Scalar> find_or_make(std::size_t interval, int depth) const;
 
   LevelModel<Scalar> model_;
   Eigen::Index levels_ = 0;
   double width_ = 0, energy_error_ = 0;
   bool resolved_ = true;
   std::vector<Frame<Scalar>> nodes_;
+  std::shared_ptr<MemoryBudget> memory_;
   std::vector<std::unique_ptr<Refinements>> refinements_;
 };
 

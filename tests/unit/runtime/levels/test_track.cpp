@@ -30,7 +30,7 @@ LevelModel<double> model_of(Eigen::Index size, std::function<Eigen::MatrixXd(dou
 
 double largest_rotation(const Track<double>& track) {
   double most = 0;
-  for (std::size_t i = 0; i < track.intervals(); ++i) most = std::max(most, track.steps(i, 0)[0].first.rotation.cwiseAbs().maxCoeff());
+  for (std::size_t i = 0; i < track.intervals(); ++i) most = std::max(most, track.stretch(i, 0).steps->front().first.rotation.cwiseAbs().maxCoeff());
   return most;
 }
 
@@ -66,8 +66,10 @@ TEST_CASE("an avoided crossing is resolved however narrow") {
   CHECK(track.resolved());
   CHECK(largest_rotation(track) < 0.15);
   double turned = 0;  // From one diabatic state to the other: the mixing angle (atan2(gap, -2 x0) - atan2(gap, 2 x1))/2.
-  for (std::size_t i = 0; i < track.intervals(); ++i)
-    for (const auto& step : track.steps(i, 0)) turned += step.first.rotation(0, 1) + step.second.rotation(0, 1);
+  for (std::size_t i = 0; i < track.intervals(); ++i) {
+    const auto stretch = track.stretch(i, 0);
+    for (const auto& step : *stretch.steps) turned += step.first.rotation(0, 1) + step.second.rotation(0, 1);
+  }
   CHECK(std::abs(turned) == Approx((std::atan2(gap, -2 * 0.37) - std::atan2(gap, 2 * 0.63)) / 2).epsilon(1e-9));
 }
 
@@ -84,4 +86,27 @@ TEST_CASE("frequencies coincide where chains of them are close") {
   CHECK_FALSE(is_simple(frequency_groups(product, 1e-8), 4));
   CHECK(is_simple(frequency_groups(generic, 1e-8), 4));
   CHECK(shared_groups(frequency_groups(product, 1e-8), generic, 1e-8).count() == 13);
+}
+
+// What does not fit is made again, and the same again.
+TEST_CASE("refinements without memory are those with it") {
+  const auto model = model_of(2, [](double s) -> Eigen::MatrixXd {
+    Eigen::Matrix2d h;
+    h << s - 0.4, 0.05, 0.05, 0.4 - s;
+    return h;
+  });
+  TrackOptions poor;
+  poor.memory = std::make_shared<MemoryBudget>(2000);
+  const Track<double> rich(model, {}), track(model, poor);
+  for (int depth = 0; depth <= 4; ++depth) {
+    const auto kept = rich.stretch(3, depth), made = track.stretch(3, depth);
+    REQUIRE(made.frames.size() == kept.frames.size());
+    for (std::size_t k = 0; k < kept.steps->size(); ++k) {
+      CHECK((*made.steps)[k].middle.vectors == (*kept.steps)[k].middle.vectors);
+      CHECK((*made.steps)[k].second.rotation == (*kept.steps)[k].second.rotation);
+      CHECK(made.frames[k]->vectors == kept.frames[k]->vectors);
+    }
+  }
+  CHECK(track.stretch(3, 4).steps != track.stretch(3, 4).steps);
+  CHECK(rich.stretch(3, 4).steps == rich.stretch(3, 4).steps);
 }
