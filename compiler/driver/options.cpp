@@ -3,6 +3,7 @@
 #include <fmt/format.h>
 
 #include <CLI/CLI.hpp>
+#include <algorithm>
 #include <charconv>
 #include <filesystem>
 #include <string_view>
@@ -33,6 +34,19 @@ std::string check_override(const std::string& text) {
              : "";
 }
 
+/// The candidate that a word may be a slip for: nearly alike, or the same letters in another order.
+std::string_view meant(std::string_view word, const std::vector<std::string_view>& candidates) {
+  if (const std::string_view near = near_word(word, candidates); !near.empty()) return near;
+  const auto sorted = [](std::string_view text) {
+    std::string letters(text);
+    std::sort(letters.begin(), letters.end());
+    return letters;
+  };
+  const auto same = std::find_if(candidates.begin(), candidates.end(),
+                                 [&](std::string_view candidate) { return sorted(candidate) == sorted(word); });
+  return same == candidates.end() ? std::string_view() : *same;
+}
+
 /// A whole number from 1 to `most`.
 CLI::Validator whole_number(std::uint64_t most) {
   return CLI::Validator(
@@ -51,7 +65,7 @@ CLI::Validator one_of(std::vector<std::string> words) {
       [words = std::move(words)](const std::string& text) {
         if (std::find(words.begin(), words.end(), text) != words.end()) return std::string();
         const std::vector<std::string_view> views(words.begin(), words.end());
-        const std::string_view near = near_word(text, views);
+        const std::string_view near = meant(text, views);
         return fmt::format("`{}` is none of {}{}", text, fmt::join(words, ", "),
                            near.empty() ? "" : fmt::format("; did you mean `{}`?", near));
       },
@@ -197,7 +211,7 @@ WrongCommandLine unknown_command(const CLI::App& app, const std::string& word) {
   std::vector<std::string> names;
   for (const CLI::App* command : app.get_subcommands([](const CLI::App*) { return true; })) names.push_back(command->get_name());
   const std::vector<std::string_view> views(names.begin(), names.end());
-  const std::string_view near = near_word(word, views);
+  const std::string_view near = meant(word, views);
   const std::string remedy = near.empty() ? fmt::format("one of {}; `tarn --help` says what they do", fmt::join(names, ", "))
                                           : fmt::format("did you mean `{}`?", near);
   return {word.empty() ? "a command is needed" : fmt::format("there is no command `{}`", word), remedy};
@@ -214,7 +228,7 @@ WrongCommandLine unknown_words(const CLI::App& command) {
   }
   const std::vector<std::string_view> views(names.begin(), names.end());
   const std::string option = word.substr(0, word.find('='));
-  const std::string_view near = near_word(option, views);
+  const std::string_view near = meant(option, views);
   return {fmt::format("there is no option `{}`", option),
           near.empty() ? help_of(command) : fmt::format("did you mean `{}`?", near)};
 }
