@@ -175,7 +175,8 @@ void bind_given(Session& session, const Scope& scope, Callable& callable, const 
       while (next < args.size() && callable.bound.contains(args[next].name.text)) ++next;
       if (next >= args.size()) {
         session.report(span, diag::too_many_arguments, callable_name(callable), counted(args.size() - std::min(skip, args.size()), "argument"))
-            .note(declaration_span(callable), "declared here");
+            .note(declaration_span(callable), "declared here")
+            .remedy(args.size() <= skip ? fmt::format("it is given by its name: `{}`", callable_name(callable)) : std::string());
         evaluate(session, scope, given.value);
         continue;
       }

@@ -31,6 +31,11 @@ Value report_operands(Session& session, std::string_view symbol, const Operand& 
   auto tail = session.report(cover(left.span, right.span), diag::wrong_operands, std::string(symbol),
                              describe(left.value), describe(right.value));
   if (first != second && numbers && symbol != "/") tail.remedy("multiply the number by `I`");
+  for (const Operand* operand : {&left, &right}) {
+    const auto* callable = operand->value.get<Callable>();
+    if (callable == nullptr || callable->kind != CallableKind::schedule) continue;
+    tail.remedy(fmt::format("a schedule is read at some s: `{}(s)`", excerpt(session, operand->span)));
+  }
   return {};
 }
 

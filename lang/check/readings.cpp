@@ -202,8 +202,11 @@ Value read_reduction(Session& session, const Scope& scope, const ast::Path& path
   const bool plain = argument->steps.size() == 1 && !argument->call;
   if (plain && readings.broken.contains(name)) return {};
   if (found == readings.by_name.end() || !plain) {
+    std::vector<std::string> known;
+    for (const auto& [observed_name, row] : readings.by_name) known.push_back(observed_name);
+    const std::string_view near = near_word(name, known);
     session.report(argument->span, diag::not_observed, excerpt(session, argument->span))
-        .remedy(fmt::format("`observe {} along 101` or a scan before it", name));
+        .remedy(near.empty() ? fmt::format("`observe {} along 101` or a scan before it", name) : fmt::format("did you mean `{}`?", near));
     return {};
   }
   const ObservableI observed = (*readings.observables)[found->second];

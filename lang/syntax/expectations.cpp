@@ -164,6 +164,8 @@ std::string other_notation(const Stop& stop) {
   const Code here = stop.here(), before = stop.before();
   if (here == Code::times && before == Code::times) return "a power is written `^`";
   if (here == Code::over_sign && before == Code::over_sign) return "a comment starts with `#`";
+  if (here == Code::open_square && before == Code::in) return "a range is written `LOW .. HIGH`";
+  if (here == Code::in && stop.after() == Code::open_square) return "`in [unit]` stands before `at` and `along`";
   if (here == Code::open_square && stop.expects("a value")) return "several values are `list(a, b, ...)`";
   if (here == Code::open_round && stop.code_at(-2) == Code::observe) return "an answer has a name: " + quote("observe x = " + stop.text(-1) + "(...)");
   if (here == Code::assign && before == Code::colon) return "a default follows `=`, a type `:`; one may be left out";

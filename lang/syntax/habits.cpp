@@ -27,6 +27,7 @@ constexpr auto kValues = std::to_array<Habit>({
     {"arcsin", "`asin`"}, {"arccos", "`acos`"}, {"arctan", "`atan`"}, {"fabs", "`abs`"},
     {"linspace", "`linear(a, b, n)`"}, {"logspace", "`log(a, b, n)`"},
     {"k_B", "`kB`"}, {"kb", "`kB`"}, {"Pi", "`pi`"},
+    {"distribution", "the distribution is its own answer: `observe distribution at end`"},
     {"w", "w is the argument of a spectrum: `spectrum j(w) = ...`, which a bath names as `density j`"},
 });
 
