@@ -235,7 +235,7 @@ void relax(const DaviesTable& table, double duration, Eigen::MatrixXcd& rho) {
       for (const auto& term : table.terms) next[term.target] += term.value * power[term.source];
       power = (step / order) * next;
       state += power;
-      if (power.cwiseAbs().maxCoeff() < 1e-18) break;
+      if (power.cwiseAbs2().maxCoeff() < 1e-36) break;
     }
   }
   for (std::size_t p = 0; p < size; ++p) rho.data()[table.coupled[p]] = state[static_cast<Eigen::Index>(p)];
