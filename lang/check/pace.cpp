@@ -100,7 +100,7 @@ class PaceReader {
       if (to && over) instance_.pace.push_back(PaceRampI{*to, *over});
     }
     if (const auto* hold = std::get_if<ast::HoldPiece>(&kind)) {
-      if (const auto time = duration(hold->duration)) instance_.pace.push_back(PaceHoldI{*time});
+      if (const auto time = duration(hold->duration, true)) instance_.pace.push_back(PaceHoldI{*time});
     }
     if (const auto* step = std::get_if<ast::StepPiece>(&kind)) {
       if (const auto to = position(step->s)) instance_.pace.push_back(PaceStepI{*to});
@@ -117,12 +117,12 @@ class PaceReader {
     return s;
   }
 
-  std::optional<NodeId> duration(ast::ExprId id) {
+  std::optional<NodeId> duration(ast::ExprId id, bool may_be_zero = false) {
     const auto time = evaluate_quantity(session_, scope_, id, kTime);
     if (!time) return std::nullopt;
     const auto value = value_at_defaults(session_, *time);
     const Span span = span_of(session_, scope_, id);
-    if (value && !(*value > 0)) {
+    if (value && !(*value > 0) && !(may_be_zero && *value == 0)) {
       session_.report(span, diag::not_positive, "a duration", format_quantity(*value, kTime)).remedy("`step to` is sudden");
     }
     return time;

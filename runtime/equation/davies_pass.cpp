@@ -310,7 +310,7 @@ std::optional<RunError> refuse(const DaviesTables<Scalar>& tables, const DaviesR
   if (leaves) return RunError{"s_out_of_range", "the pace leaves the stretch of s whose levels are tracked"};
   const bool needs_all = run.drive || !run.jumps.empty();
   if (needs_all && tables.track().levels() < tables.track().model().dimension)
-    return RunError{"too_many_levels", "jumps as written and terms in t need all levels: ask for `levels all`"};
+    return RunError{"too_many_levels", "jumps as written and terms in t need all levels; leave out `levels`"};
   return std::nullopt;
 }
 

@@ -87,8 +87,7 @@ Result<std::vector<BathFunctions>, RunError> baths_of(const PointTask& task, std
     auto bath = make_bath(plan, b, task.settings(), functions);
     if (!bath) return Unexpected{bath.error()};
     if (const auto zero = bath->zero_rate(); !zero) {
-      return Unexpected{RunError{"bad_bath", fmt::format("bath `{}`: {}", plan.chip.baths[b].name, to_text(zero.error())),
-                                 plan.chip.baths[b].place}};
+      return Unexpected{bath_error(plan, b, zero.error())};
     }
     const auto shared = std::make_shared<const ThermalBath>(std::move(bath).value());
     BathFunctions& both = made.emplace_back();
@@ -231,7 +230,8 @@ Result<DaviesPoints::AnyTables, RunError> DaviesPoints::tables_for(PointTask& ta
   const Chip& chip = model_.plan().chip;
   if (chip.qubits.size() > kMostQubits) {
     return Unexpected{RunError{"too_large", fmt::format("`davies` keeps a density matrix: {} qubits are more than the {} "
-                                                        "it takes", chip.qubits.size(), kMostQubits)}};
+                                                        "it takes; use `schroedinger` or a smaller chip",
+                                                        chip.qubits.size(), kMostQubits)}};
   }
   const std::shared_ptr<const Functions> functions = functions_of(task);
   std::vector<double> key = track_key(*functions);

@@ -14,8 +14,8 @@ constexpr double kComplex = 16;  // bytes
 /// The stages of the explicit pair with state, argument and error, and the states read on the way.
 constexpr double kVectors = 20;
 
-/// Frames of a track with their links and tables: base nodes and two refinements of a usual chip.
-constexpr double kFrames = 600;
+/// Base nodes of a usual chip's track. Refinements and tables take no more than what is left (budget.h).
+constexpr double kNodes = 1500;
 
 bool reads_levels(const Plan& plan) {
   return std::any_of(plan.readings.begin(), plan.readings.end(), [](const Reading& reading) {
@@ -38,9 +38,7 @@ MemoryNeed memory_needed(const Plan& plan, std::size_t lanes) {
   if (plan.equation == Equation::lindblad) need.each_job += kVectors * kComplex * dimension * dimension * points;
   if (plan.equation == Equation::davies) {
     const double kept = plan.levels ? std::min(dimension, static_cast<double>(*plan.levels)) : dimension;
-    const double frame = dimension * kept + 6 * kept * kept;
-    need.common = kFrames * 8 * frame;
-    need.each_job += kFrames * 8 * frame + 20 * kComplex * dimension * dimension;
+    need.each_job += kNodes * 8 * dimension * kept + 20 * kComplex * dimension * dimension;
   }
   return need;
 }

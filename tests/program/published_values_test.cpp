@@ -1,6 +1,7 @@
 // The real program against published closed forms.
 #include <catch2/catch.hpp>
 #include <cmath>
+#include <complex>
 
 #include "tests/program/process.h"
 
@@ -57,4 +58,29 @@ TEST_CASE("free oscillation follows the Rabi formula") {
     const double flipped = std::pow(std::sin(omega * t / 2) / omega, 2);
     CHECK(std::abs(csv.number(row, "flipped") - flipped) < 1e-8);
   }
+}
+
+// Rev. Mod. Phys. 59, 1 (1987): the renormalised tunnelling amplitude at T = 0, to first order in alpha = 2 eta, is
+// D (1 + alpha (ln(D/wc) + 0.57721566)), with an exponential cut-off and D << wc. Quantum Dissipative Systems
+// (World Scientific): the oscillation decays with 1/(2 T1), 1/T1 = pi alpha D exp(-D/wc) at T = 0.
+TEST_CASE("the Lamb shift slows tunnelling as published, and `shift = off` leaves it out") {
+  const auto at_end = [](const std::string& equation) {
+    const Scratch scratch;
+    scratch.write("m.tarn", "use spectra\nbath cold { density spectra.ohmic(strength = 1e-4, cutoff = 50 GHz)  temperature 1 mK }\n"
+                            "qubit site { energy -1 GHz/2*X  noise Z ~ cold }\nchip one { qubit q : site }\n"
+                            "experiment trial {\n chip one\n begin state(\"0\")\n pace hold for 100 ns\n equation " + equation +
+                            "\n observe z = mean(Z(q)) at end\n observe y = mean(Y(q)) at end\n}\n");
+    const Outcome outcome = run_tarn({"run", "m.tarn", "--out", "r"}, scratch.path());
+    INFO(outcome.err);
+    REQUIRE(outcome.status == 0);
+    const Csv results = read_csv(scratch.path() / "r/trial/results.csv");
+    return std::complex<double>(results.number(0, "z"), results.number(0, "y"));  // turns as exp(i D t): D t is 100 cycles
+  };
+  const double d = 2 * kPi, cutoff = 50 * d, alpha = 2e-4;
+  const std::complex<double> with = at_end("davies"), without = at_end("davies(shift = off)");
+  const double amplitude = std::exp(-kPi * alpha * d * std::exp(-d / cutoff) * 100 / 2);
+  CHECK(std::arg(without) == Approx(0).margin(1e-9));
+  CHECK(std::abs(without) == Approx(amplitude).epsilon(1e-9));
+  CHECK(std::arg(with) == Approx(alpha * d * (std::log(d / cutoff) + 0.57721566) * 100).epsilon(2e-3));
+  CHECK(std::abs(with) == Approx(amplitude).epsilon(1e-9));
 }

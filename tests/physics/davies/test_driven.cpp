@@ -1,5 +1,6 @@
 // Anneals with a known answer, the order of the steps, and whether error estimates hold.
 #include <Eigen/Dense>
+#include <unsupported/Eigen/KroneckerProduct>
 #include <catch2/catch.hpp>
 #include <thread>
 
@@ -111,6 +112,41 @@ TEST_CASE("fewer levels: the answer is close and the leakage says how close") {
   CHECK(kept->leakage < 1e-2);
   CHECK((exact->states[0] - kept->states[0]).diagonal().cwiseAbs().maxCoeff() < kept->leakage + 1e-6);
   CHECK(kept->states[0].trace().real() == Approx(1).margin(1e-9));
+}
+
+// Qubits that nothing joins evolve each on its own, exactly. Together, every frequency of one qubit comes 32 times, once for
+// each state of the others, and levels cross all along.
+TEST_CASE("six qubits without bonds are six times one") {
+  const std::vector<double> h = {0.31, -0.47, 0.62, -0.23, 0.55, 0.41}, g = {1.0, 1.13, 0.92, 1.07, 0.85, 1.21};
+  const BathFunctions bath{ohmic_rate(5e-3, kTwoPi * 8, kTheta), smooth_shift(5e-3, kTwoPi * 8)};
+  const Timeline pace = ramp(2, 0.4, 0.6);
+  const auto start = [](std::size_t q) {
+    Eigen::VectorXcd state(2);
+    state << std::cos(0.3 + 0.2 * static_cast<double>(q)), std::complex<double>(0, std::sin(0.3 + 0.2 * static_cast<double>(q)));
+    return state;
+  };
+  Density product = Density::Identity(1, 1), initial = product;
+  for (std::size_t q = 0; q < 6; ++q) {
+    const auto track = track_of(ising(1, usual_schedules(), {h[q]}, {}, {g[q]}));
+    const DaviesTables<double> tables(track, {bath});
+    const auto one = refine_to<double>(1e-8, tables, {pace, projector(start(q)), {2}, {}, {}});
+    REQUIRE(one);
+    product = Density(Eigen::kroneckerProduct(product, one->states[0]));
+    initial = Density(Eigen::kroneckerProduct(initial, projector(start(q))));
+  }
+  const auto family = ising(6, usual_schedules(), h, {}, g);
+  TrackOptions options;
+  options.s_min = 0.4;
+  options.s_max = 0.6;
+  const auto track = std::make_shared<const Track<double>>(dense_levels<double>(family), options);
+  CHECK(track->levels() == 64);
+  const DaviesTables<double> tables(track, same_baths(6, bath));
+  const auto all = refine_to<double>(1e-6, tables, {pace, initial, {2}, {}, {}});
+  REQUIRE(all);
+  CHECK(all->converged);
+  CHECK((all->states[0] - product).diagonal().cwiseAbs().maxCoeff() < all->error);
+  CHECK((all->states[0] - product).norm() < all->state_error);
+  CHECK((product - initial).norm() > 0.1);
 }
 
 TEST_CASE("threads that share a track get the same bits") {
