@@ -37,6 +37,16 @@ TEST_CASE("transverse-field rings have the published ground energy") {
   }
 }
 
+TEST_CASE("a ring where both terms are alike tends to -4 J/pi a spin") {
+  // Ann. Phys. 57, 79 (1970). Finite rings differ by even powers of 1/n: two steps of extrapolation leave about n^-6.
+  const Csv csv = results("ring_levels", "per_spin");
+  REQUIRE(csv.rows.size() == 3);
+  const double e3 = csv.number(0, "spin [rad/ns]"), e6 = csv.number(1, "spin [rad/ns]"), e12 = csv.number(2, "spin [rad/ns]");
+  const double coarse = (4 * e6 - e3) / 3, fine = (4 * e12 - e6) / 3;
+  CHECK((16 * fine - coarse) / 15 == Approx(-4 / kPi).epsilon(1e-5));
+  CHECK(std::abs(e12 + 4 / kPi) > 1e-3);
+}
+
 TEST_CASE("unstructured search has the published gap") {
   // Phys. Rev. A 65, 042308 (2002): gap(s) = sqrt(1 - 4 (1 - 1/N) s (1 - s)), N = 8 here.
   const Csv csv = results("search", "gap_along");
