@@ -20,6 +20,14 @@ constexpr std::size_t kKeptAmplitudes = std::size_t{1} << 24;
 constexpr double kEpsilon = std::numeric_limits<double>::epsilon();
 constexpr double kFirstTolerance = 0.3;  ///< Of the tolerance asked: most points need two runs then.
 
+double largest_coherence(const Density& rho) {
+  double most = 0;
+  for (Eigen::Index b = 0; b < rho.cols(); ++b) {
+    for (Eigen::Index a = 0; a < b; ++a) most = std::max(most, std::abs(rho(a, b)));
+  }
+  return most;
+}
+
 bool any_reading(const Plan& plan, bool (*holds)(const Reading&)) {
   for (const Observable& observable : plan.observables) {
     for (const std::uint32_t r : observable.readings) {
@@ -70,12 +78,14 @@ Result<Done, RunError> PointTask::prepare() {
   if (!begin) return Unexpected{begin.error()};
   begin_ = std::move(begin).value();
   tolerance_ = kFirstTolerance * plan_.tolerance;
-  shared_.assign(observations_.size(), kEpsilon * largest_phase());
+  rounding_ = kEpsilon * largest_phase();
+  shared_.assign(observations_.size(), rounding_);
   wants_run_ = true;
   return Done{};
 }
 
-/// Bound on the phase that any two levels gather in the run [rad]: what the rounding of energies acts on.
+/// Bound on the phase that any two levels gather in the run [rad]: the rounding of energies acts on it, and it
+/// on coherences.
 double PointTask::largest_phase() const {
   const auto width = [&](double s, double t) {
     const std::vector<double> coefficients = functions_.values(kCoefficients, s, t);
@@ -173,6 +183,7 @@ void PointTask::visit(std::size_t index, const State& state, double weight) {
     const InstantReadings* readings = readings_of(i);
     if (readings == nullptr) return;
     readings->add(state, weight, sums_[i]);
+    if (const auto* rho = std::get_if<Density>(&state)) shared_[i] = rounding_ * largest_coherence(*rho);
     fine_[i].readings = readings->finish(sums_[i]);
     fine_[i].probes = sums_[i].probes;
     if (!observations_[i].distribution) continue;

@@ -96,6 +96,7 @@ class PointTask {
   };
   std::vector<Snapshot> fine_;
   std::vector<CoarserRun> coarser_;
+  double rounding_ = 0;                            ///< Of coherences, by the phase they have gathered.
   std::vector<double> shared_;                     ///< Error of the state at each observation that all runs share.
   double tolerance_ = 0;
   bool wants_run_ = false;

@@ -146,3 +146,16 @@ TEST_CASE("a long hold carries the rounding of its phase") {
     }
   }
 }
+
+// What has decayed has no phase to be rounded: after a second, six orders beyond the lifetime, the answer is exact.
+TEST_CASE("a hold far beyond the lifetime is as good as the tolerance asks") {
+  const Scratch scratch;
+  scratch.write("m.tarn", "qubit site { energy -4 GHz/2*Z  jump sqrt(1 [1/us])*|0><1| }\nchip one { qubit q : site }\nexperiment trial {\n"
+                          " chip one\n begin plus\n pace hold for 1 s\n equation lindblad\n observe z = mean(Z(q)) at end\n tolerance 1e-9\n}\n");
+  const Outcome outcome = run_tarn({"run", "m.tarn", "--out", "r"}, scratch.path());
+  INFO(outcome.err);
+  REQUIRE(outcome.status == 0);
+  const Csv results = read_csv(scratch.path() / "r/trial/results.csv");
+  CHECK(results.number(0, "z") == Approx(1).margin(1e-12));
+  CHECK(results.number(0, "z error") < 1e-9);
+}
