@@ -88,7 +88,7 @@ std::vector<std::uint32_t> reads(const Graph& graph, NodeId root, NodeOp op) {
   return found;
 }
 
-runtime::Scale scale(const Dimension& dimension) {
+runtime::Scale display_scale(const Dimension& dimension) {
   if (dimension.is_number()) return runtime::Scale::plain;
   if (dimension == kFrequency || dimension == kEnergy) return runtime::Scale::energy;
   return dimension == kRate ? runtime::Scale::rate : runtime::Scale::answer;
@@ -104,7 +104,7 @@ runtime::Observable lower_observable(const ObservableI& observable, const Instan
   result.row = rows.row(runtime::kObservables, observable.value);
   result.readings = reads(instance.graph, observable.value, NodeOp::reading);
   result.reads_s = dependence(instance.graph, observable.value).s;
-  result.scale = scale(instance.graph[observable.value].dimension);
+  result.scale = display_scale(instance.graph[observable.value].dimension);
   result.place = sources.place(observable.span);
   return result;
 }

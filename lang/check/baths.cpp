@@ -11,12 +11,12 @@ struct BathNodes {
   bool has_density = false, has_temperature = false, refused = false;
 };
 
-void refuse(Session& session, Span span, std::string_view word, BathNodes& nodes) {
+void refuse_bath_entry(Session& session, Span span, std::string_view word, BathNodes& nodes) {
   session.report(span, diag::not_available, fmt::format("`{}` of a bath", word), "`density` and `temperature`");
   nodes.refused = true;
 }
 
-std::string_view word_of(ast::BathSetting setting) {
+std::string_view word_of_setting(ast::BathSetting setting) {
   switch (setting) {
     case ast::BathSetting::density: return "density";
     case ast::BathSetting::psd: return "psd";
@@ -53,15 +53,15 @@ void elaborate_temperature(Session& session, const Scope& scope, const ast::Bath
 void elaborate_setting(Session& session, const Scope& scope, const ast::BathValue& setting, BathNodes& nodes) {
   const bool density = setting.setting == ast::BathSetting::density;
   if (!density && setting.setting != ast::BathSetting::temperature) {
-    return refuse(session, setting.word, word_of(setting.setting), nodes);
+    return refuse_bath_entry(session, setting.word, word_of_setting(setting.setting), nodes);
   }
   bool& has = density ? nodes.has_density : nodes.has_temperature;
-  if (has) session.report(setting.word, diag::statement_twice, std::string(word_of(setting.setting)));
+  if (has) session.report(setting.word, diag::statement_twice, std::string(word_of_setting(setting.setting)));
   has = true;
   density ? elaborate_density(session, scope, setting, nodes) : elaborate_temperature(session, scope, setting, nodes);
 }
 
-BathNodes elaborate_entries(Session& session, Scope& scope, const ast::Bath& bath) {
+BathNodes elaborate_bath_entries(Session& session, Scope& scope, const ast::Bath& bath) {
   BathNodes nodes;
   Site site{.where = "in a bath"};
   site.operators = false;
@@ -72,7 +72,7 @@ BathNodes elaborate_entries(Session& session, Scope& scope, const ast::Bath& bat
   for (const ast::BathEntry& entry : bath.entries) {
     if (const auto* let = std::get_if<ast::Let>(&entry)) look_up(session, scope, let->name);
     if (const auto* setting = std::get_if<ast::BathValue>(&entry)) elaborate_setting(session, scope, *setting, nodes);
-    if (const auto* band = std::get_if<ast::BathBand>(&entry)) refuse(session, band->span, "band", nodes);
+    if (const auto* band = std::get_if<ast::BathBand>(&entry)) refuse_bath_entry(session, band->span, "band", nodes);
   }
   scope.site = nullptr;
   if (!nodes.refused && !nodes.has_density) session.report(bath.name.span, diag::bath_incomplete, bath.name.text, "density");
@@ -87,7 +87,7 @@ std::optional<std::uint32_t> elaborate_bath(Session& session, const Callable& ca
   Scope scope{nullptr, callable.module, nullptr, {}};
   if (!complete_arguments(session, callable, scope, span)) return std::nullopt;
   const FrameGuard frame(session, span, fmt::format("`{}` is used here", bath.name.text));
-  const BathNodes nodes = elaborate_entries(session, scope, bath);
+  const BathNodes nodes = elaborate_bath_entries(session, scope, bath);
   if (!nodes.density || !nodes.temperature) return std::nullopt;
   const InstanceBath made{bath.name.text, *nodes.density, *nodes.temperature, bath.name.span};
   for (std::uint32_t row = 0; row < unrolled.baths.size(); ++row) {
@@ -101,7 +101,7 @@ std::optional<std::uint32_t> elaborate_bath(Session& session, const Callable& ca
 void check_bath(Session& session, const Callable& callable) {
   Scope scope{nullptr, callable.module, nullptr, {}};
   declare_opaque(session, callable, scope);
-  elaborate_entries(session, scope, std::get<ast::Bath>(*callable.item));
+  elaborate_bath_entries(session, scope, std::get<ast::Bath>(*callable.item));
 }
 
 }  // namespace tarn

@@ -35,7 +35,7 @@ std::string bare_remedy(std::string_view text) {
 }
 
 /// `2 s`, which is seconds, where 2*s may be meant; empty for other texts.
-std::string place_remedy(std::string_view text) {
+std::string time_place_remedy(std::string_view text) {
   if (!text.ends_with('s')) return {};
   text.remove_suffix(1);
   while (text.ends_with(' ')) text.remove_suffix(1);
@@ -129,7 +129,7 @@ std::string factor_remedy(Dimension expected, Dimension found) {
 std::string dimension_remedy(const Session& session, Span span, Dimension expected, Dimension found) {
   std::string text;
   if (found.is_number()) text = unit_remedy(session, span, expected);
-  if (found == kTime) text = place_remedy(session.text(span));
+  if (found == kTime) text = time_place_remedy(session.text(span));
   if (expected.is_number() && text.empty()) text = bare_remedy(session.text(span));
   return text.empty() ? factor_remedy(expected, found) : text;
 }

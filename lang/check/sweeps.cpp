@@ -10,7 +10,7 @@ namespace tarn {
 namespace {
 
 /// Row of the parameter that a path names: ta, base.sp.
-std::optional<std::uint32_t> find_parameter(Session& session, const Scope& scope, const ast::Path& path) {
+std::optional<std::uint32_t> parameter_row(Session& session, const Scope& scope, const ast::Path& path) {
   std::uint32_t module = scope.module;
   std::size_t step = 0;
   while (step + 1 < path.steps.size()) {
@@ -125,7 +125,7 @@ std::vector<SweptAxis> elaborate_sweeps(Session& session, const Scope& scope, co
   for (const ast::Sweep* sweep : statements.sweeps) {
     SweptAxis together;
     for (const ast::SweepAxis& axis : sweep->axes) {
-      const auto row = find_parameter(session, scope, axis.parameter);
+      const auto row = parameter_row(session, scope, axis.parameter);
       if (!row) continue;
       const ProgramParameter& parameter = session.program.parameters[*row];
       const auto [before, is_new] = swept.try_emplace(*row, axis.parameter.span);

@@ -52,8 +52,8 @@ std::string with_greek_mu(std::string_view text) {
 
 }  // namespace
 
-std::vector<NodeId> roots(const std::vector<Node>& nodes) {
-  std::vector<NodeId> result;
+std::vector<SyntaxNodeId> roots(const std::vector<SyntaxNode>& nodes) {
+  std::vector<SyntaxNodeId> result;
   for (auto end = nodes.size(); end > 0; end -= nodes[end - 1].size) {
     result.push_back({static_cast<std::uint32_t>(end - 1)});
   }
@@ -61,16 +61,16 @@ std::vector<NodeId> roots(const std::vector<Node>& nodes) {
   return result;
 }
 
-std::vector<NodeId> Builder::children(NodeId id) const {
-  std::vector<NodeId> result;
+std::vector<SyntaxNodeId> Builder::children(SyntaxNodeId id) const {
+  std::vector<SyntaxNodeId> result;
   const std::uint32_t first = id.row + 1 - node(id).size;
   for (std::uint32_t end = id.row; end > first; end -= nodes_[end - 1].size) result.push_back({end - 1});
   std::reverse(result.begin(), result.end());
   return result;
 }
 
-std::optional<NodeId> Builder::child(NodeId id, Tag tag) const {
-  for (const NodeId c : children(id)) {
+std::optional<SyntaxNodeId> Builder::child(SyntaxNodeId id, Tag tag) const {
+  for (const SyntaxNodeId c : children(id)) {
     if (node(c).tag == tag) return c;
   }
   return std::nullopt;
@@ -94,7 +94,7 @@ ast::ExprId Builder::add(Span span, ast::ExprNode content, unsigned height) {
   return id;
 }
 
-ast::ExprId Builder::expression(NodeId id) {
+ast::ExprId Builder::expression(SyntaxNodeId id) {
   const Tag tag = node(id).tag;
   if (tag == Tag::number) return number(id);
   if (tag == Tag::text) return add(span(id), quoted(id), 1);
@@ -106,7 +106,7 @@ ast::ExprId Builder::expression(NodeId id) {
   return fold_left(id);
 }
 
-ast::Name Builder::name(NodeId id) const {
+ast::Name Builder::name(SyntaxNodeId id) const {
   return {span(id), with_greek_mu(text(span(id)))};
 }
 
@@ -120,12 +120,12 @@ std::optional<double> Builder::number_value(Span place) {
   return std::nullopt;
 }
 
-ast::ExprId Builder::number(NodeId id) {
+ast::ExprId Builder::number(SyntaxNodeId id) {
   const Span digits = token_span(node(id).begin);
   const std::optional<double> value = number_value(digits);
   std::optional<ast::UnitText> in_unit;
   bool bad = !value;
-  for (const NodeId c : children(id)) {
+  for (const SyntaxNodeId c : children(id)) {
     in_unit = unit(c);
     bad = bad || !in_unit;
   }
@@ -137,7 +137,7 @@ ast::ExprId Builder::number(NodeId id) {
   return add(span(id), ast::Number{*value, std::string(text(digits)), std::move(in_unit)}, 1);
 }
 
-std::optional<ast::UnitText> Builder::unit(NodeId id) {
+std::optional<ast::UnitText> Builder::unit(SyntaxNodeId id) {
   const Span place = span(id);
   if (node(id).tag == Tag::unit) {
     const std::string_view word = text(place);
@@ -157,7 +157,7 @@ std::optional<ast::UnitText> Builder::unit(NodeId id) {
 }
 
 /// The tokens of the bracket that hold the bytes `begin` .. `end` of its joined text.
-Span Builder::part_of_unit(NodeId bracket, std::size_t begin, std::size_t end) const {
+Span Builder::part_of_unit(SyntaxNodeId bracket, std::size_t begin, std::size_t end) const {
   std::optional<Span> part;
   std::size_t at = 0;
   for (std::uint32_t t = node(bracket).begin + 1; t + 1 < node(bracket).end; ++t) {
@@ -168,7 +168,7 @@ Span Builder::part_of_unit(NodeId bracket, std::size_t begin, std::size_t end) c
   return part ? *part : span(bracket);
 }
 
-void Builder::report_unit(NodeId bracket, const UnitError& error) {
+void Builder::report_unit(SyntaxNodeId bracket, const UnitError& error) {
   const Span place = part_of_unit(bracket, error.begin, error.end);
   switch (error.reason) {
     case UnitError::Reason::bad_exponent:
@@ -187,7 +187,7 @@ void Builder::report_unit(NodeId bracket, const UnitError& error) {
   }
 }
 
-ast::Text Builder::quoted(NodeId id) {
+ast::Text Builder::quoted(SyntaxNodeId id) {
   const Span place = span(id);
   std::string_view content = text(place).substr(1);
   if (content.ends_with('"')) content.remove_suffix(1);
@@ -215,14 +215,14 @@ ast::Text Builder::quoted(NodeId id) {
   return result;
 }
 
-ast::ExprId Builder::ketbra(NodeId id) {
+ast::ExprId Builder::ketbra(SyntaxNodeId id) {
   const Span place = token_span(node(id).begin);
   const std::string_view token = text(place);
   const auto middle = token.find('>');
   ast::Ketbra result{std::string(token.substr(1, middle - 1)),
                      std::string(token.substr(middle + 2, token.size() - middle - 3)), {}};
   unsigned tallest = 0;
-  for (const NodeId c : children(id)) {
+  for (const SyntaxNodeId c : children(id)) {
     result.places.push_back(path(c));
     tallest = std::max(tallest, height_of(result.places.back()));
   }
@@ -233,9 +233,9 @@ ast::ExprId Builder::ketbra(NodeId id) {
   return add(span(id), std::move(result), tallest + 1);
 }
 
-ast::Given Builder::given(NodeId id) {
+ast::Given Builder::given(SyntaxNodeId id) {
   ast::Given result{span(id), std::nullopt, {}};
-  for (const NodeId c : children(id)) {
+  for (const SyntaxNodeId c : children(id)) {
     if (node(c).tag == Tag::given_name) {
       result.name = name(c);
     } else {
@@ -245,13 +245,13 @@ ast::Given Builder::given(NodeId id) {
   return result;
 }
 
-ast::Path Builder::path(NodeId id) {
+ast::Path Builder::path(SyntaxNodeId id) {
   ast::Path result{span(id), {}, false, {}};
-  for (const NodeId c : children(id)) {
-    const std::vector<NodeId> parts = children(c);
+  for (const SyntaxNodeId c : children(id)) {
+    const std::vector<SyntaxNodeId> parts = children(c);
     if (node(c).tag == Tag::call) {
       result.call = true;
-      for (const NodeId g : parts) result.given.push_back(given(g));
+      for (const SyntaxNodeId g : parts) result.given.push_back(given(g));
     } else {
       ast::Step step{name(parts.front()), std::nullopt};
       if (parts.size() > 1) step.index = expression(parts.back());
@@ -270,15 +270,15 @@ unsigned Builder::height_of(const ast::Path& path) const {
   return tallest;
 }
 
-ast::ExprId Builder::use(NodeId id) {
+ast::ExprId Builder::use(SyntaxNodeId id) {
   ast::Use result;
-  for (const NodeId c : children(id)) {
+  for (const SyntaxNodeId c : children(id)) {
     if (node(c).tag == Tag::path) {
       result.path = path(c);
     } else if (node(c).tag == Tag::under) {
       result.under = name(children(c).front());
     } else {
-      const std::vector<NodeId> parts = children(c);
+      const std::vector<SyntaxNodeId> parts = children(c);
       result.held.push_back({span(c), path(parts.front()), quoted(parts.back())});
     }
   }
@@ -287,7 +287,7 @@ ast::ExprId Builder::use(NodeId id) {
   return add(span(id), std::move(result), tallest + 1);
 }
 
-ast::ExprId Builder::parenthesised(NodeId id) {
+ast::ExprId Builder::parenthesised(SyntaxNodeId id) {
   const ast::ExprId inner = expression(children(id).front());
   ast_.exprs[inner.row].parenthesised = true;
   ast_.exprs[inner.row].span = span(id);
@@ -300,8 +300,8 @@ ast::ExprId Builder::binary(ast::BinaryOp op, ast::ExprId left, ast::ExprId righ
   return add(place, ast::Binary{op, left, right}, std::max(height(left), height(right)) + 1);
 }
 
-ast::ExprId Builder::fold_left(NodeId id) {
-  const std::vector<NodeId> parts = children(id);
+ast::ExprId Builder::fold_left(SyntaxNodeId id) {
+  const std::vector<SyntaxNodeId> parts = children(id);
   ast::ExprId result = expression(parts.front());
   for (std::size_t i = 1; i + 1 < parts.size(); i += 2) {
     const ast::BinaryOp op = binary_op(first_code(parts[i]));
@@ -310,7 +310,7 @@ ast::ExprId Builder::fold_left(NodeId id) {
   return result;
 }
 
-ast::ExprId Builder::signed_value(NodeId id) {
+ast::ExprId Builder::signed_value(SyntaxNodeId id) {
   const bool negation = node(id).tag == Tag::negation;
   const ast::UnaryOp op = negation ? ast::UnaryOp::logical_not : ast::UnaryOp::negate;
   const ast::ExprId operand = expression(children(id).back());
@@ -319,8 +319,8 @@ ast::ExprId Builder::signed_value(NodeId id) {
   return add(span(id), ast::Unary{op, once}, height(once) + 1);
 }
 
-ast::ExprId Builder::choice(NodeId id) {
-  const std::vector<NodeId> parts = children(id);
+ast::ExprId Builder::choice(SyntaxNodeId id) {
+  const std::vector<SyntaxNodeId> parts = children(id);
   const ast::ExprId condition = expression(parts[0]);
   const ast::ExprId yes = expression(parts[1]);
   const ast::ExprId no = expression(parts[2]);
@@ -344,8 +344,8 @@ void Builder::warn_divided_unit(ast::ExprId left, ast::ExprId right) {
               std::string(text(denominator->unit->span)) + "` for the other");
 }
 
-ast::Range Builder::range(NodeId id) {
-  const std::vector<NodeId> parts = children(id);
+ast::Range Builder::range(SyntaxNodeId id) {
+  const std::vector<SyntaxNodeId> parts = children(id);
   const ast::ExprId low = expression(parts.front());
   return {span(id), low, expression(parts.back())};
 }

@@ -3,15 +3,15 @@
 
 namespace tarn {
 
-ast::Experiment Builder::experiment(NodeId id) {
-  const std::vector<NodeId> parts = children(id);
+ast::Experiment Builder::experiment(SyntaxNodeId id) {
+  const std::vector<SyntaxNodeId> parts = children(id);
   ast::Experiment result{span(id), name(parts.front()), {}, {}};
   for (std::size_t i = 1; i < parts.size(); ++i) result.statements.push_back(statement(parts[i]));
   return result;
 }
 
-ast::Statement Builder::statement(NodeId id) {
-  const std::vector<NodeId> parts = children(id);
+ast::Statement Builder::statement(SyntaxNodeId id) {
+  const std::vector<SyntaxNodeId> parts = children(id);
   const Span place = span(id);
   const Tag tag = node(id).tag;
   if (tag == Tag::let) return let(id);
@@ -35,14 +35,14 @@ ast::Statement Builder::statement(NodeId id) {
   throw InternalError("no statement");
 }
 
-ast::Pace Builder::pace(NodeId id) {
+ast::Pace Builder::pace(SyntaxNodeId id) {
   ast::Pace result{span(id), {}};
-  for (const NodeId c : children(id)) result.pieces.push_back(piece(c));
+  for (const SyntaxNodeId c : children(id)) result.pieces.push_back(piece(c));
   return result;
 }
 
-ast::Piece Builder::piece(NodeId id) {
-  const std::vector<NodeId> parts = children(id);
+ast::Piece Builder::piece(SyntaxNodeId id) {
+  const std::vector<SyntaxNodeId> parts = children(id);
   const Span place = span(id);
   const Tag tag = node(id).tag;
   if (tag == Tag::start_piece) return {place, ast::StartPiece{expression(parts[0])}};
@@ -56,9 +56,9 @@ ast::Piece Builder::piece(NodeId id) {
   throw InternalError("no piece of a pace");
 }
 
-ast::EquationChoice Builder::equation_choice(NodeId id) {
+ast::EquationChoice Builder::equation_choice(SyntaxNodeId id) {
   ast::EquationChoice result{span(id), std::nullopt, {}};
-  for (const NodeId c : children(id)) {
+  for (const SyntaxNodeId c : children(id)) {
     if (node(c).tag == Tag::name) {
       result.label = name(c);
     } else {
@@ -68,25 +68,25 @@ ast::EquationChoice Builder::equation_choice(NodeId id) {
   return result;
 }
 
-ast::Equation Builder::equation(NodeId id) {
+ast::Equation Builder::equation(SyntaxNodeId id) {
   ast::Equation result{span(id), false, {}};
-  const NodeId only = children(id).front();
+  const SyntaxNodeId only = children(id).front();
   if (node(only).tag == Tag::each) {
     result.each = true;
-    for (const NodeId c : children(only)) result.choices.push_back(equation_choice(c));
+    for (const SyntaxNodeId c : children(only)) result.choices.push_back(equation_choice(c));
   } else {
     result.choices.push_back({span(only), std::nullopt, path(only)});
   }
   return result;
 }
 
-ast::Levels Builder::levels(NodeId id) {
+ast::Levels Builder::levels(SyntaxNodeId id) {
   ast::Levels result{span(id), std::nullopt};
-  for (const NodeId c : children(id)) result.count = expression(c);
+  for (const SyntaxNodeId c : children(id)) result.count = expression(c);
   return result;
 }
 
-ast::Draws Builder::draws(NodeId id) {
+ast::Draws Builder::draws(SyntaxNodeId id) {
   const Code word = first_code(id);
   const ast::DrawKind kind = word == Code::trajectories ? ast::DrawKind::trajectories
                              : word == Code::ensemble   ? ast::DrawKind::ensemble
@@ -95,18 +95,18 @@ ast::Draws Builder::draws(NodeId id) {
   return {span(id), kind, count, child_value(id, Tag::seed)};
 }
 
-ast::AtPoint Builder::at_point(NodeId id) {
-  const std::vector<NodeId> parts = children(id);
+ast::AtPoint Builder::at_point(SyntaxNodeId id) {
+  const std::vector<SyntaxNodeId> parts = children(id);
   ast::AtPoint result{name(parts[0]), expression(parts[1]), ast::Meeting::unsaid};
   if (node(parts.back()).tag == Tag::first) result.meeting = ast::Meeting::first;
   if (node(parts.back()).tag == Tag::last) result.meeting = ast::Meeting::last;
   return result;
 }
 
-ast::Observe Builder::observe(NodeId id) {
+ast::Observe Builder::observe(SyntaxNodeId id) {
   ast::Observe result;
   result.span = span(id);
-  for (const NodeId c : children(id)) {
+  for (const SyntaxNodeId c : children(id)) {
     const Tag tag = node(c).tag;
     if (tag == Tag::name) result.name = name(c);
     if (tag == Tag::value) result.value = expression(children(c).front());
@@ -118,23 +118,23 @@ ast::Observe Builder::observe(NodeId id) {
   return result;
 }
 
-ast::Sweep Builder::sweep(NodeId id) {
+ast::Sweep Builder::sweep(SyntaxNodeId id) {
   ast::Sweep result{span(id), false, {}};
-  for (const NodeId c : children(id)) {
+  for (const SyntaxNodeId c : children(id)) {
     if (node(c).tag == Tag::together) {
       result.together = true;
       continue;
     }
-    const std::vector<NodeId> parts = children(c);
+    const std::vector<SyntaxNodeId> parts = children(c);
     result.axes.push_back({span(c), path(parts[0]), expression(parts[1])});
   }
   return result;
 }
 
-ast::Fit Builder::fit(NodeId id) {
+ast::Fit Builder::fit(SyntaxNodeId id) {
   ast::Fit result;
   result.span = span(id);
-  for (const NodeId c : children(id)) {
+  for (const SyntaxNodeId c : children(id)) {
     if (node(c).tag == Tag::path) result.parameters.push_back(path(c));
     if (node(c).tag == Tag::name) result.data = name(c);
     if (node(c).tag == Tag::fit_each) result.each = path(children(c).front());

@@ -27,7 +27,7 @@ enum class Tag : std::uint8_t {
   number, text, ketbra, use, path, step, call, given, given_name, held, under, bracket, unit, name, op,
 };
 
-struct Node {
+struct SyntaxNode {
   Tag tag;
   std::uint32_t begin;  ///< First token.
   std::uint32_t end;    ///< One past the last token.
@@ -47,7 +47,7 @@ struct OpenBlock {
 };
 
 struct Recognised {
-  std::vector<Node> nodes;
+  std::vector<SyntaxNode> nodes;
   std::vector<Failure> failures;
   std::vector<OpenBlock> open_blocks;
 };

@@ -30,7 +30,7 @@ Ast parse(const SourceFile& file, Diagnostics& diagnostics) {
   const Recognised recognised = recognise(tokens);
   report_all(file, tokens, recognised, diagnostics);
   Builder builder(file, tokens, recognised.nodes, diagnostics);
-  for (const NodeId root : roots(recognised.nodes)) builder.item(root);
+  for (const SyntaxNodeId root : roots(recognised.nodes)) builder.item(root);
   Ast ast = builder.take();
   ast.comments = std::move(tokens.comments);
   attach_docs(ast, file);

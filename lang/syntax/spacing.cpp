@@ -7,15 +7,15 @@ bool opens(Code code) { return code == Code::open_round || code == Code::open_sq
 bool closes(Code code) { return code == Code::close_round || code == Code::close_square; }
 
 /// Marks the operators of an index or loop bound, not those inside its brackets.
-void mark_tight(const Tokens& tokens, const Node& node, std::vector<bool>& tight) {
+void mark_tight(const Tokens& tokens, const SyntaxNode& node, std::vector<bool>& tight) {
   for (std::uint32_t t = node.begin; t < node.end; ++t) {
     const Code code = tokens.code(t);
     if (code == Code::plus || code == Code::minus) tight[t] = true;
   }
 }
 
-void mark_loop(const Tokens& tokens, const Node& loop, std::vector<bool>& tight) {
-  Node bounds = loop;
+void mark_loop(const Tokens& tokens, const SyntaxNode& loop, std::vector<bool>& tight) {
+  SyntaxNode bounds = loop;
   while (bounds.begin < loop.end && tokens.code(bounds.begin) != Code::in) ++bounds.begin;
   bounds.end = bounds.begin;
   while (bounds.end < loop.end && tokens.code(bounds.end) != Code::where) ++bounds.end;
@@ -24,10 +24,10 @@ void mark_loop(const Tokens& tokens, const Node& loop, std::vector<bool>& tight)
 
 }  // namespace
 
-Roles roles_of(const Tokens& tokens, const std::vector<Node>& nodes) {
+Roles roles_of(const Tokens& tokens, const std::vector<SyntaxNode>& nodes) {
   const std::size_t n = tokens.size();
   Roles roles{std::vector<bool>(n), std::vector<bool>(n), std::vector<bool>(n), std::vector<bool>(n)};
-  for (const Node& node : nodes) {
+  for (const SyntaxNode& node : nodes) {
     if (node.tag == Tag::name || node.tag == Tag::ketbra) roles.name[node.begin] = true;
     if (node.tag == Tag::sign) roles.sign[node.begin] = true;
     if (node.tag == Tag::loop) mark_loop(tokens, node, roles.tight);

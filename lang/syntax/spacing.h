@@ -15,7 +15,7 @@ struct Roles {
   std::vector<bool> unit;    ///< Inside the brackets of a unit.
 };
 
-Roles roles_of(const Tokens& tokens, const std::vector<Node>& nodes);
+Roles roles_of(const Tokens& tokens, const std::vector<SyntaxNode>& nodes);
 
 /// Precondition: i > 0. Whether a space stands between tokens i-1 and i.
 bool space_before(std::size_t i, const Tokens& tokens, const Roles& roles);

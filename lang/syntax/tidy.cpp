@@ -30,7 +30,7 @@ bool is_item(Tag tag) { return tag <= Tag::experiment; }
 
 class Tidier {
  public:
-  Tidier(const SourceFile& file, Ast& ast, const Tokens& tokens, const std::vector<Node>& nodes)
+  Tidier(const SourceFile& file, Ast& ast, const Tokens& tokens, const std::vector<SyntaxNode>& nodes)
       : file_(file), tokens_(tokens), comments_(ast.comments), roles_(roles_of(tokens, nodes)) {
     lay_out(nodes);
     place_comments(documented(ast, file));
@@ -52,14 +52,14 @@ class Tidier {
   std::uint32_t line(std::uint32_t offset) const { return line_of(file_, offset); }
   std::uint32_t token_line(std::size_t t) const { return line(tokens_.places[t].begin); }
 
-  void lay_out(const std::vector<Node>& nodes) {
+  void lay_out(const std::vector<SyntaxNode>& nodes) {
     const std::size_t n = tokens_.size();
     layout_.breaks.assign(n, Break::none);
     layout_.depth.assign(n + 1, 0);
     for (std::size_t t = 1; t < n; ++t) {
       if (token_line(t) > line(tokens_.places[t - 1].end)) layout_.breaks[t] = Break::continuation;
     }
-    for (const Node& node : nodes) {
+    for (const SyntaxNode& node : nodes) {
       if (is_item(node.tag) || is_block_entry(node.tag)) layout_.breaks[node.begin] = Break::statement;
     }
     std::size_t depth = 0;
@@ -70,13 +70,13 @@ class Tidier {
       if (tokens_.code(t) == Code::open_curly) ++depth;
       if (tokens_.code(t) == Code::open_curly && layout_.breaks[t] != Break::none) layout_.breaks[t] = Break::statement;
     }
-    for (const Node& node : nodes) {
+    for (const SyntaxNode& node : nodes) {
       if (is_item(node.tag) && fits_one_line(node)) join(node);
     }
   }
 
   /// A block written on one line, without comments, whose tidy line is not too wide.
-  bool fits_one_line(const Node& node) const {
+  bool fits_one_line(const SyntaxNode& node) const {
     if (tokens_.code(node.end - 1) != Code::close_curly || token_line(node.begin) != token_line(node.end - 1)) return false;
     std::size_t width = 0;
     for (std::size_t t = node.begin; t < node.end; ++t) {
@@ -85,7 +85,7 @@ class Tidier {
     }
     return width <= kTidyWidth;
   }
-  void join(const Node& node) {
+  void join(const SyntaxNode& node) {
     for (std::size_t t = node.begin + 1; t < node.end; ++t) {
       if (layout_.breaks[t] == Break::statement && starts_entry(t)) spaced_.resize(tokens_.size());
       if (layout_.breaks[t] == Break::statement && starts_entry(t)) spaced_[t] = true;

@@ -22,11 +22,11 @@ ShiftTerm shift_term(const PowerLaw& law, double theta) {
 }
 
 template <class Rational>
-ShiftTerm rational_term(const Rational& density, double theta) {
+ShiftTerm rational_shift_term(const Rational& density, double theta) {
   return [poles = poles_of(density, theta), theta](double w) { return rational_transform(poles, theta, w).imag(); };
 }
-ShiftTerm shift_term(const Drude& drude, double theta) { return rational_term(drude, theta); }
-ShiftTerm shift_term(const LorentzianPeak& peak, double theta) { return rational_term(peak, theta); }
+ShiftTerm shift_term(const Drude& drude, double theta) { return rational_shift_term(drude, theta); }
+ShiftTerm shift_term(const LorentzianPeak& peak, double theta) { return rational_shift_term(peak, theta); }
 
 ShiftTerm panel_term(const ThermalBath& bath, std::size_t row) {
   auto panels = std::make_shared<const DensityPanels>(*bath.panels(row));

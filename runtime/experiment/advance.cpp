@@ -16,7 +16,7 @@ struct Job {
   std::size_t ket = 0;  ///< Of its mixture; 0 for a density matrix.
 };
 
-LinearRun run_of(const PointTask& task) { return {&task.timeline(), task.breaks(), task.times(), task.tolerance()}; }
+LinearRun linear_run_of(const PointTask& task) { return {&task.timeline(), task.breaks(), task.times(), task.tolerance()}; }
 
 /// The inputs of up to W tasks, a lane each; idle lanes repeat the first.
 InputBlock lane_inputs(const PlanModel& model, std::span<const Job> jobs) {
@@ -46,7 +46,7 @@ Outcomes propagate(const PlanModel& model, std::span<const Job> jobs, const Inte
   const bool density = model.plan().equation == Equation::lindblad;
   const std::vector<Visit> visits = visits_of(jobs, density);
   std::vector<LinearRun> runs;
-  for (const Job& job : jobs) runs.push_back(run_of(*job.task));
+  for (const Job& job : jobs) runs.push_back(linear_run_of(*job.task));
   const InputBlock inputs = lane_inputs(model, jobs);
   const Entries entries = model.entries();
   if (density) {
@@ -62,7 +62,7 @@ Outcomes propagate(const PlanModel& model, std::span<const Job> jobs, const Inte
 }
 
 /// Nothing moves: the state at every instant is the first.
-void stand_still(PointTask& task, bool density) {
+void stay(PointTask& task, bool density) {
   const Mixture& begin = task.begin();
   for (std::size_t index = 0; index < task.times().size(); ++index) {
     if (density) task.visit(index, density_of(begin), 1);
@@ -74,7 +74,7 @@ std::vector<Job> jobs_of(std::span<PointTask* const> tasks, bool density) {
   std::vector<Job> jobs;
   for (PointTask* task : tasks) {
     if (task->timeline().segments.empty()) {
-      stand_still(*task, density);
+      stay(*task, density);
       continue;
     }
     const std::size_t count = density ? 1 : task->begin().kets.size();

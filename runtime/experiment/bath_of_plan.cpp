@@ -41,7 +41,7 @@ constexpr double kGigahertz = 2 * std::numbers::pi;                             
 constexpr double kMillikelvin = 1.380649e-23 * 1e-3 / (6.62607015e-34 / kGigahertz) * 1e-9;    // kB T/hbar [rad/ns]
 
 /// A number of a bath in its unit; eta and exponents are plain.
-std::string shown(std::string_view parameter, double value) {
+std::string shown_value(std::string_view parameter, double value) {
   if (parameter == "temperature") return fmt::format("{:.6g} mK", value / kMillikelvin);
   if (parameter == "eta" || parameter == "s" || parameter.starts_with("rows")) return fmt::format("{:.6g}", value);
   return fmt::format("{:.6g} GHz", value / kGigahertz);
@@ -55,7 +55,7 @@ std::string_view name_of(std::string_view parameter) {
 
 /// What is wrong with a bath's numbers, in the user's units, and what would mend it.
 std::string fault_of(const BathError& error) {
-  const std::string value = shown(error.parameter, error.value);
+  const std::string value = shown_value(error.parameter, error.value);
   const std::string_view name = name_of(error.parameter);
   switch (error.code) {
     case BathErrorCode::out_of_range:

@@ -49,7 +49,7 @@ ChipLevels::ChipLevels(const Plan& plan, const Kernel& kernel, const Functions& 
     : plan_(plan), kernel_(kernel), functions_(functions), interrupted_(std::move(interrupted)),
       dimension_(Index{1} << plan.chip.qubits.size()), real_(has_real_matrix(plan.chip.hamiltonian)) {}
 
-Product ChipLevels::product(const std::vector<double>& coefficients) {
+HermitianProduct ChipLevels::product(const std::vector<double>& coefficients) {
   if (prepared_.size() == 0) {
     prepared_ = AlignedArray(kernel_.prepared_doubles(kHamiltonian) + 1);
     TARN_CHECK(kernel_.prepare(kHamiltonian)(prepared_.data()) == TARN_OK);

@@ -38,7 +38,7 @@ class ChipLevels {
   /// Fills `levels_` with at least `count` levels at s, or finds them there.
   Result<Done, RunError> solve(double s, Eigen::Index count);
   Result<Levels, RunError> solve_fresh(double s, Eigen::Index count);
-  Product product(const std::vector<double>& coefficients);
+  HermitianProduct product(const std::vector<double>& coefficients);
 
   const Plan& plan_;
   const Kernel& kernel_;

@@ -43,7 +43,7 @@ Unexpected<FolderError> refuse(std::string kind, std::string message, std::strin
 }
 
 /// A number as the user would write it.
-std::string number(const ordered_json& value) {
+std::string number_as_written(const ordered_json& value) {
   return value.is_number() ? fmt::format("{}", value.get<double>()) : value.dump();
 }
 
@@ -53,7 +53,7 @@ void compare_named(const ordered_json& there, const ordered_json& here, const ch
   for (const auto& [name, value] : here.items()) {
     if (!there.contains(name)) differences.push_back(fmt::format("{} {} is new", what, name));
     else if (there[name] != value) {
-      differences.push_back(fmt::format("{} {} is {} there, {} here", what, name, number(there[name]), number(value)));
+      differences.push_back(fmt::format("{} {} is {} there, {} here", what, name, number_as_written(there[name]), number_as_written(value)));
     }
   }
   for (const auto& [name, value] : there.items()) {

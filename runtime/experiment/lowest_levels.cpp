@@ -24,7 +24,7 @@ using Matrix = Eigen::Matrix<Scalar, Eigen::Dynamic, Eigen::Dynamic>;
 
 constexpr double kResidual = 1e-10;  ///< Of the spectral width.
 constexpr Index kBlock = 4;
-constexpr int kPowers = 4;
+constexpr int kBlockPowers = 4;
 constexpr Index kLargeDimension = Index{1} << 17;
 constexpr Index kProductsPerLevel = 4000;
 
@@ -50,11 +50,31 @@ class Noise {
   std::uint64_t state_ = 1;
 };
 
+// Every form of product that Eigen meets is compiled anew: these are all that a space needs.
+
+/// The parts of v along the first `size` columns.
+template <class Scalar>
+Vector<Scalar> parts(const Matrix<Scalar>& columns, Index size, const Vector<Scalar>& v) {
+  return columns.leftCols(size).adjoint() * v;
+}
+
+template <class Scalar>
+Vector<Scalar> mixed(const Matrix<Scalar>& columns, Index size, const Vector<Scalar>& parts) {
+  return columns.leftCols(size) * parts;
+}
+
+/// The first `size` columns become their first `mixing.cols()` mixtures.
+template <class Scalar>
+void mix(Matrix<Scalar>& columns, Index size, const Matrix<Scalar>& mixing) {
+  const Matrix<Scalar> mixtures = columns.leftCols(size) * mixing;
+  columns.leftCols(mixing.cols()) = mixtures;
+}
+
 /// An orthonormal basis, its image under H, and the projection of H on it.
 template <class Scalar>
 class Space {
  public:
-  Space(Index dimension, Index capacity, const Product& product)
+  Space(Index dimension, Index capacity, const HermitianProduct& product)
       : basis_(dimension, capacity), image_(dimension, capacity),
         projected_(Matrix<Scalar>::Zero(capacity, capacity)), product_(product) {}
 
@@ -71,8 +91,7 @@ class Space {
     v /= before;
     // Once more where the first pass took away so much that rounding shows.
     for (double left = 0; left < 0.7;) {
-      const Vector<Scalar> inside = basis_.leftCols(size_).adjoint() * v;
-      v.noalias() -= basis_.leftCols(size_) * inside;
+      v -= mixed<Scalar>(basis_, size_, parts<Scalar>(basis_, size_, v));
       left = v.norm();
       if (!(left > 1e-13)) return false;
       v /= left;
@@ -81,7 +100,7 @@ class Space {
     apply(v, size_);
     ++products_;
     ++size_;
-    const Vector<Scalar> column = basis_.leftCols(size_).adjoint() * image_.col(size_ - 1);
+    const Vector<Scalar> column = parts<Scalar>(basis_, size_, image_.col(size_ - 1));
     projected_.block(0, size_ - 1, size_, 1) = column;
     projected_.block(size_ - 1, 0, 1, size_) = column.adjoint();
     projected_(size_ - 1, size_ - 1) = std::real(column[size_ - 1]);
@@ -96,18 +115,17 @@ class Space {
   /// H times basis vector k.
   Vector<Scalar> image(Index k) const { return image_.col(k); }
   const VectorXd& values() const { return values_; }
-  Vector<Scalar> vector(Index k) const { return basis_.leftCols(size_) * mixing_.col(k); }
+  Vector<Scalar> vector(Index k) const { return mixed<Scalar>(basis_, size_, mixing_.col(k)); }
   Vector<Scalar> residual(Index k) const {
-    return image_.leftCols(size_) * mixing_.col(k) - values_[k] * vector(k);
+    return mixed<Scalar>(image_, size_, mixing_.col(k)) - values_[k] * vector(k);
   }
 
   /// Shrinks the space to its `keep` lowest solutions.
   void restart(Index keep) {
     keep = std::min(keep, size_);
-    const Matrix<Scalar> basis = basis_.leftCols(size_) * mixing_.leftCols(keep);
-    const Matrix<Scalar> image = image_.leftCols(size_) * mixing_.leftCols(keep);
-    basis_.leftCols(keep) = basis;
-    image_.leftCols(keep) = image;
+    const Matrix<Scalar> mixing = mixing_.leftCols(keep);
+    mix<Scalar>(basis_, size_, mixing);
+    mix<Scalar>(image_, size_, mixing);
     projected_.setZero();
     projected_.diagonal().head(keep) = values_.head(keep).template cast<Scalar>();
     size_ = keep;
@@ -128,7 +146,7 @@ class Space {
   }
 
   Matrix<Scalar> basis_, image_, projected_;
-  const Product& product_;
+  const HermitianProduct& product_;
   Index size_ = 0, products_ = 0;
   VectorXd values_;
   Matrix<Scalar> mixing_;
@@ -137,7 +155,7 @@ class Space {
 
 /// Highest minus lowest Ritz value of a short Lanczos run: a lower estimate, off by a few percent.
 template <class Scalar>
-double estimate_width(Index dimension, const Product& product, Noise& noise) {
+double estimate_width(Index dimension, const HermitianProduct& product, Noise& noise) {
   const Index steps = std::min<Index>(24, dimension);
   Space<Scalar> space(dimension, steps, product);
   if (!space.add(noise.vector<Scalar>(dimension))) return 0;
@@ -186,7 +204,7 @@ Index expand(const Search<Scalar>& search) {
   for (Vector<Scalar>& addition : additions) space.add(std::move(addition));
   if (space.size() == first) space.add(search.noise.template vector<Scalar>(space.vector_size()));
   // A few more powers of H on the new vectors before the next solution of the small problem.
-  for (int power = 1; power < kPowers && space.capacity() - space.size() >= block; ++power) {
+  for (int power = 1; power < kBlockPowers && space.capacity() - space.size() >= block; ++power) {
     const Index last = space.size();
     for (Index k = first; k < last; ++k) space.add(space.image(k));
     first = last;
@@ -220,7 +238,7 @@ Levels take(const Search<Scalar>& search, double width) {
 }
 
 template <class Scalar>
-Result<Levels, RunError> search_levels(Index dimension, Index count, const Product& product,
+Result<Levels, RunError> search_levels(Index dimension, Index count, const HermitianProduct& product,
                                        const Matrix<Scalar>& start, const Interrupted& interrupted) {
   Noise noise;
   const double width = estimate_width<Scalar>(dimension, product, noise);
@@ -265,7 +283,7 @@ Levels all_levels(const MatrixXcd& matrix) {
   return levels;
 }
 
-Result<Levels, RunError> lowest_levels(Index dimension, Index count, const Product& product, bool real,
+Result<Levels, RunError> lowest_levels(Index dimension, Index count, const HermitianProduct& product, bool real,
                                        const MatrixXcd& start, const Interrupted& interrupted) {
   TARN_CHECK(count >= 1 && 8 * count <= dimension);
   if (real) return search_levels<double>(dimension, count, product, start.real(), interrupted);

@@ -19,7 +19,7 @@ struct Levels {
 };
 
 /// y = H x; both have N amplitudes.
-using Product = std::function<void(const std::complex<double>* x, std::complex<double>* y)>;
+using HermitianProduct = std::function<void(const std::complex<double>* x, std::complex<double>* y)>;
 
 /// All levels of a dense Hermitian matrix; a real one is solved in real arithmetic.
 Levels all_levels(const Eigen::MatrixXcd& matrix);
@@ -33,7 +33,7 @@ Levels all_levels(const Eigen::MatrixXcd& matrix);
 /// Errors: `levels_not_found` after 4000 products per level, `interrupted`, `not_finite`.
 /// Precondition: 1 <= count, 8 count <= N.
 /// Method: thick restarts as in SIAM J. Matrix Anal. Appl. 22, 602 (2000), with a block of residuals.
-Result<Levels, RunError> lowest_levels(Eigen::Index dimension, Eigen::Index count, const Product& product,
+Result<Levels, RunError> lowest_levels(Eigen::Index dimension, Eigen::Index count, const HermitianProduct& product,
                                        bool real, const Eigen::MatrixXcd& start, const Interrupted& interrupted);
 
 }  // namespace tarn::runtime

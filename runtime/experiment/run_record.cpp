@@ -14,7 +14,7 @@ namespace {
 using nlohmann::ordered_json;
 
 /// JSON knows no infinity and no NaN.
-ordered_json number(double value) { return std::isfinite(value) ? ordered_json(value) : ordered_json(nullptr); }
+ordered_json json_number(double value) { return std::isfinite(value) ? ordered_json(value) : ordered_json(nullptr); }
 
 const char* ending_name(Ending ending) {
   switch (ending) {
@@ -53,8 +53,8 @@ ordered_json claim_record(const ClaimReport& claim, const Plan& plan) {
       weakest["t [ns]"] = claim.tally.weakest_at->t;
       weakest["s"] = claim.tally.weakest_at->s;
     }
-    weakest["margin"] = number(claim.tally.weakest->margin);
-    weakest["error"] = number(claim.tally.weakest->error);
+    weakest["margin"] = json_number(claim.tally.weakest->margin);
+    weakest["error"] = json_number(claim.tally.weakest->error);
     record["weakest"] = weakest;
   }
   return record;

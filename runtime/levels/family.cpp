@@ -37,6 +37,10 @@ Complex power_of_i(int exponent) {
   return kPowers[exponent % 4];
 }
 
+}  // namespace
+
+// Named, because the functions handed out hold them: GCC warns of that where sources are joined.
+
 /// One operator as dense matrices, each with the row of its coefficient.
 template <class Scalar>
 struct DenseSum {
@@ -84,6 +88,8 @@ struct DenseFamily {
     return out;
   }
 };
+
+namespace {
 
 template <class Scalar>
 Frame<Scalar> solve_dense(const Matrix<Scalar>& hamiltonian, double s, Eigen::Index count) {

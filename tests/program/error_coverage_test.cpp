@@ -41,7 +41,7 @@ struct Kind {
   std::vector<std::string> swept;  ///< Columns the model depends on.
 };
 
-std::string model(const Kind& kind, const std::string& tolerance) {
+std::string model_of_kind(const Kind& kind, const std::string& tolerance) {
   std::string text = "use spectra\nparameter a = 3 GHz\nparameter b = 3 GHz\nparameter h : number = 1\nparameter k : number = 1\n"
                      "parameter stop = 0.5\nparameter rest : number = 0.1\nparameter ta = 10 ns\nparameter eta = 1e-4\n"
                      "parameter th = 20 mK\n"
@@ -61,10 +61,10 @@ std::string model(const Kind& kind, const std::string& tolerance) {
   return text + axes + "\n}\n";
 }
 
-Csv answers(const Kind& kind, const std::string& table, const std::string& tolerance) {
+Csv answers_of_kind(const Kind& kind, const std::string& table, const std::string& tolerance) {
   const Scratch scratch;
   scratch.write("chips.csv", table);
-  scratch.write("m.tarn", model(kind, tolerance));
+  scratch.write("m.tarn", model_of_kind(kind, tolerance));
   const Outcome outcome = run_tarn({"run", "m.tarn", "--out", "r"}, scratch.path());
   INFO(outcome.err);
   REQUIRE(outcome.status == 0);
@@ -79,7 +79,7 @@ struct Coverage {
 
 void compare(const Kind& kind, unsigned seed, std::size_t rows, Coverage& coverage) {
   const std::string table = random_table(seed, rows);
-  const Csv plain = answers(kind, table, "1e-4"), tight = answers(kind, table, "1e-6");
+  const Csv plain = answers_of_kind(kind, table, "1e-4"), tight = answers_of_kind(kind, table, "1e-6");
   REQUIRE(plain.rows.size() == rows);
   coverage.runs += rows;
   for (std::size_t o = 0; o < kObservables.size(); ++o) {
@@ -92,7 +92,7 @@ void compare(const Kind& kind, unsigned seed, std::size_t rows, Coverage& covera
   }
 }
 
-void check(Coverage coverage) {
+void check_coverage(Coverage coverage) {
   REQUIRE(coverage.runs == 500);
   for (std::size_t o = 0; o < kObservables.size(); ++o) {
     INFO(kObservables[o] << " is covered in " << coverage.covered[o] << " of 500");
@@ -110,7 +110,7 @@ TEST_CASE("errors reported under davies cover the truth") {
   Coverage coverage;
   compare({"davies", 1, "noise Z ~ cold", {"a [GHz]", "b [GHz]", "h", "stop", "rest", "ta [ns]", "eta", "th [mK]"}}, 2001, 350, coverage);
   compare({"davies", 2, "noise Z ~ cold", kColumns}, 2002, 150, coverage);
-  check(std::move(coverage));
+  check_coverage(std::move(coverage));
 }
 
 TEST_CASE("errors reported under lindblad cover the truth") {
@@ -118,13 +118,13 @@ TEST_CASE("errors reported under lindblad cover the truth") {
   Coverage coverage;
   compare({"lindblad", 1, jump, {"a [GHz]", "b [GHz]", "h", "stop", "rest", "ta [ns]", "eta"}}, 2003, 300, coverage);
   compare({"lindblad", 2, jump, {"a [GHz]", "b [GHz]", "h", "k", "stop", "rest", "ta [ns]", "eta"}}, 2004, 200, coverage);
-  check(std::move(coverage));
+  check_coverage(std::move(coverage));
 }
 
 TEST_CASE("errors reported under schroedinger cover the truth") {
   Coverage coverage;
   compare({"schroedinger", 2, "", {"a [GHz]", "b [GHz]", "h", "k", "stop", "rest", "ta [ns]"}}, 2005, 500, coverage);
-  check(std::move(coverage));
+  check_coverage(std::move(coverage));
 }
 
 // A qubit at rest turns by exactly 4 GHz: cos(2 pi 4e6) = 1 after a millisecond, and the energy is known to one part in

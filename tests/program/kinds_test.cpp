@@ -45,7 +45,7 @@ bool makes_kind(std::string_view before) {
          before.find(',', begin) == std::string_view::npos;
 }
 
-void collect(const std::string& text, std::set<std::string>& kinds) {
+void collect_kinds(const std::string& text, std::set<std::string>& kinds) {
   const std::string letters = "abcdefghijklmnopqrstuvwxyz_";
   for (std::size_t open = text.find('"'); open != std::string::npos; open = text.find('"', open + 1)) {
     const std::size_t close = text.find_first_not_of(letters, open + 1);
@@ -62,7 +62,7 @@ std::set<std::string> made() {
   std::set<std::string> kinds;
   for (const char* folder : {"runtime", "compiler/driver"}) {
     for (const auto& entry : fs::recursive_directory_iterator(source_root() / folder)) {
-      if (entry.path().extension() == ".cpp") collect(read_file(entry.path()), kinds);
+      if (entry.path().extension() == ".cpp") collect_kinds(read_file(entry.path()), kinds);
     }
   }
   return kinds;

@@ -63,7 +63,7 @@ std::vector<Model> models_of(const std::string& text) {
   return models;
 }
 
-Outcome check(const Model& model) {
+Outcome check_model(const Model& model) {
   const Scratch scratch;
   scratch.write("model.tarn", model.text);
   for (const auto& [name, table] : model.tables) scratch.write(name, table);
@@ -103,7 +103,7 @@ TEST_CASE("every model of the reference checks without a warning") {
   const std::vector<Model> models = models_of(reference());
   REQUIRE(models.size() >= 5);
   for (const Model& model : models) {
-    const Outcome outcome = check(model);
+    const Outcome outcome = check_model(model);
     INFO("lang/REFERENCE.md, line " << model.line << "\n" << outcome.err);
     CHECK(outcome.status == 0);
     CHECK(outcome.err.find("warning[") == std::string::npos);
@@ -137,7 +137,7 @@ TEST_CASE("the grammar of the reference has every word of the language") {
 
 TEST_CASE("what the reference lists as not available is refused") {
   const std::string listed = section(reference(), "14 Not available yet");
-  const Outcome whole = check(Parts{}.model());
+  const Outcome whole = check_model(Parts{}.model());
   INFO(whole.err);
   REQUIRE(whole.status == 0);
 
@@ -171,7 +171,7 @@ TEST_CASE("what the reference lists as not available is refused") {
   add("correlation(i, j) = 0.5", [](Parts& p) { p.noise += " correlation(i, j) = if i == j then 1 else 0.5"; });
 
   for (const Case& one : cases) {
-    const Outcome outcome = check(one.parts.model());
+    const Outcome outcome = check_model(one.parts.model());
     INFO(one.shown << "\n" << outcome.err);
     CHECK(listed.find(one.shown) != std::string::npos);
     CHECK(outcome.status == 2);

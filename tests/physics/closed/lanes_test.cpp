@@ -35,7 +35,7 @@ std::array<Point, kPoints> points() {
 }
 
 /// `order[lane]` is the point that a lane reads.
-Model model_of(const std::array<Point, kPoints>& all, std::shared_ptr<std::vector<std::size_t>> order,
+Model model_of_points(const std::array<Point, kPoints>& all, std::shared_ptr<std::vector<std::size_t>> order,
                bool open, std::uint32_t lanes) {
   Model model;
   model.lanes = lanes;
@@ -57,7 +57,7 @@ std::vector<std::vector<double>> run(const std::array<Point, kPoints>& all, std:
                                      bool open, std::uint32_t lanes) {
   std::vector<std::vector<double>> seen(kPoints);
   const auto shared = std::make_shared<std::vector<std::size_t>>(order);
-  const Model model = model_of(all, shared, open, lanes);
+  const Model model = model_of_points(all, shared, open, lanes);
   std::vector<runtime::LinearRun> runs;
   std::vector<runtime::Visit> visits;
   for (const std::size_t p : order) {
@@ -114,7 +114,7 @@ TEST_CASE("lanes give what one point at a time gives, within the tolerance") {
 TEST_CASE("a lane that fails leaves the others alone") {
   const auto all = points();
   const auto order = std::make_shared<std::vector<std::size_t>>(std::vector<std::size_t>{0, 2, 4});
-  Model model = model_of(all, order, false, 4);
+  Model model = model_of_points(all, order, false, 4);
   const auto healthy = model.coefficients;
   model.coefficients = [healthy](std::size_t lane, double s, double t, double* rows) {
     healthy(lane, s, t, rows);

@@ -18,6 +18,7 @@
 namespace tarn::runtime::testing {
 
 constexpr double kTwoPi = 2 * std::numbers::pi;
+constexpr double kTheta = 1.96;  ///< 15 mK in rad/ns.
 
 inline PauliWord word_x(int qubits, int q) { return {std::uint64_t{1} << (qubits - 1 - q), 0}; }
 inline PauliWord word_z(int qubits, int q) { return {0, std::uint64_t{1} << (qubits - 1 - q)}; }

@@ -8,7 +8,6 @@ using namespace tarn::runtime::testing;
 
 namespace {
 
-constexpr double kTheta = 1.96;  // 15 mK in rad/ns
 
 const BathFunctions kBath{ohmic_rate(2e-2, 30, kTheta), smooth_shift(2e-2, 30)};
 

@@ -11,9 +11,8 @@ using namespace tarn::runtime::testing;
 
 namespace {
 
-constexpr double kTheta = 1.96;  // 15 mK in rad/ns
 
-const BathFunctions kBath{ohmic_rate(4e-4, kTwoPi * 8, kTheta), smooth_shift(4e-4, kTwoPi * 8)};
+const BathFunctions kWeakBath{ohmic_rate(4e-4, kTwoPi * 8, kTheta), smooth_shift(4e-4, kTwoPi * 8)};
 
 std::shared_ptr<const Track<double>> track_of(const HamiltonianFamily& family, Eigen::Index levels = 0) {
   TrackOptions options;
@@ -47,7 +46,7 @@ TEST_CASE("a two-level sweep without a bath") {
 TEST_CASE("the error of a pass falls as the square of the step") {
   const auto family = random_chip(2, 3, usual_schedules());
   const auto track = track_of(family);
-  const DaviesTables<double> tables(track, same_baths(2, kBath));
+  const DaviesTables<double> tables(track, same_baths(2, kWeakBath));
   const DaviesRun run{ramp(2), ground_state(*track, 0), {2}, {}, {}};
   std::vector<Density> ends;
   for (int depth = 2; depth <= 7; ++depth) ends.push_back(davies_pass<double>(tables, run, depth, {})->states[0]);
@@ -82,7 +81,7 @@ TEST_CASE("error estimates cover the truth in random runs") {
   for (unsigned seed = 1; seed <= 6; ++seed) {
     const auto family = random_chip(2 + static_cast<int>(seed % 2), seed, usual_schedules());
     const auto track = track_of(family);
-    const DaviesTables<double> tables(track, same_baths(family.couplings.size(), kBath));
+    const DaviesTables<double> tables(track, same_baths(family.couplings.size(), kWeakBath));
     const double ta = 3.0 * std::pow(1.9, seed);
     DaviesRun run{{{{0, 0.4 * ta, 0, 0.4}, {0.4 * ta, 0.7 * ta, 0.4, 0.4}, {0.7 * ta, 1.3 * ta, 0.4, 1}}, 0, 1},
                   ground_state(*track, 0), {0.23 * ta, 0.6 * ta, 1.1 * ta, 1.3 * ta}, {}, {}};
@@ -103,7 +102,7 @@ TEST_CASE("fewer levels: the answer is close and the leakage says how close") {
   const auto all = track_of(family), few = track_of(family, 6);
   CHECK(few->levels() >= 6);
   CHECK(few->levels() < 16);
-  const auto baths = same_baths(4, kBath);
+  const auto baths = same_baths(4, kWeakBath);
   const DaviesTables<double> full(all, baths), reduced(few, baths);
   const DaviesRun run{{{{0, 300, 0.2, 0.9}}, 0.2, 0.9}, ground_state(*all, 0.2), {300}, {}, {}};
   const auto exact = refine_to<double>(1e-6, full, run), kept = refine_to<double>(1e-6, reduced, run);
@@ -153,7 +152,7 @@ TEST_CASE("threads that share a track get the same bits") {
   const auto family = random_chip(3, 5, usual_schedules());
   const auto work = [&](unsigned threads) {
     const auto track = track_of(family);
-    const DaviesTables<double> tables(track, same_baths(3, kBath));
+    const DaviesTables<double> tables(track, same_baths(3, kWeakBath));
     std::vector<Density> ends(6);
     std::vector<std::thread> pool;
     for (unsigned t = 0; t < threads; ++t)

@@ -12,8 +12,6 @@ using tarn::test::product_of;
 
 namespace {
 
-constexpr double kTheta = 1.96;  // 15 mK in rad/ns
-
 template <class Scalar>
 Density hold(const HamiltonianFamily& family, const std::vector<BathFunctions>& baths, double s, double t, const Density& initial) {
   const auto track = std::make_shared<const Track<Scalar>>(dense_levels<Scalar>(family), TrackOptions{});

@@ -42,7 +42,7 @@ Eigen::MatrixXcd matrix_of(const Generator& generator, const std::vector<double>
   return sum;
 }
 
-Doubles random_vector(std::uint32_t bits, unsigned seed) {
+Doubles random_amplitudes(std::uint32_t bits, unsigned seed) {
   std::mt19937 random(seed);
   std::normal_distribution<double> normal;
   Doubles vector(std::size_t{2} << bits);
@@ -74,7 +74,7 @@ void check_apply(const Module& module, std::uint32_t lanes) {
   const auto coefficients = coefficients_at(kernel, 0.3);
   for (std::uint32_t k = 0; k < module.generators.size(); ++k) {
     const std::uint32_t bits = module.generators[k].bits;
-    const Doubles x = random_vector(bits, 17 + k), data = prepared(kernel, k);
+    const Doubles x = random_amplitudes(bits, 17 + k), data = prepared(kernel, k);
     Doubles y(x.size(), NAN);
     REQUIRE(kernel.apply(k)(coefficients.data(), data.data(), x.data(), y.data()) == TARN_OK);
     const Eigen::MatrixXcd matrix = matrix_of(module.generators[k], coefficients);
@@ -145,7 +145,7 @@ TEST_CASE("stage combines any number of vectors and applies the generator", "[co
   std::vector<const double*> pointers;
   std::vector<double> weights;
   for (unsigned m = 1; m <= 15; ++m) {
-    vectors.push_back(random_vector(bits, m));
+    vectors.push_back(random_amplitudes(bits, m));
     pointers.clear();
     for (const Doubles& vector : vectors) pointers.push_back(vector.data());
     weights.push_back(0.3 * m - 1);

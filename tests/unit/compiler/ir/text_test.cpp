@@ -13,7 +13,7 @@ using namespace tarn::test;
 
 namespace {
 
-Module read(const std::string& text) {
+Module module_of(const std::string& text) {
   auto module = from_text(text);
   if (!module) FAIL("line " << module.error().line << ": " << module.error().message);
   return *module;
@@ -68,10 +68,10 @@ TEST_CASE("text and back is the identity on random modules, both ways", "[ir]") 
   add_random_generator(module, seed, 1 + seed % 9, 12, false);
   module.sets[0].differentiate = seed % 2 == 0;
   const std::string text = to_text(module);
-  const Module again = read(text);
+  const Module again = module_of(text);
   check_same(module, again);
   CHECK(to_text(again) == text);
-  CHECK(to_text(read(print(module))) == text);
+  CHECK(to_text(module_of(print(module))) == text);
 }
 
 TEST_CASE("doubles of every kind survive to the last bit", "[ir]") {
@@ -79,7 +79,7 @@ TEST_CASE("doubles of every kind survive to the last bit", "[ir]") {
   const double largest = std::numeric_limits<double>::max();
   for (const double number : {0.1, 1.0 / 3, -0.0, 5e-324, largest, -largest, 2.2250738585072014e-308, std::numeric_limits<double>::infinity()})
     append(module, Constant{number});
-  const Module again = read(to_text(module));
+  const Module again = module_of(to_text(module));
   REQUIRE(again.values.size() == module.values.size());
   for (std::size_t k = 0; k < module.values.size(); ++k) {
     const double a = std::get<Constant>(module.values[k].op).value, b = std::get<Constant>(again.values[k].op).value;
@@ -92,7 +92,7 @@ TEST_CASE("names of any bytes survive", "[ir]") {
   Module module;
   module.name = "quote \" backslash \\ newline \n tab \t hash # percent % \x01";
   module.inputs = {"", " ", "Größe [µs]", "\\x41"};
-  const Module again = read(to_text(module));
+  const Module again = module_of(to_text(module));
   CHECK(again.name == module.name);
   CHECK(again.inputs == module.inputs);
 }
@@ -103,7 +103,7 @@ TEST_CASE("numbers of tables do not enter the shape of a module", "[ir]") {
   b.tables[0].knots = {0, 0.25, 1};
   CHECK(to_text(a) != to_text(b));
   CHECK(to_text(shape_only(a)) == to_text(shape_only(b)));
-  check_same(read(to_text(shape_only(a))), shape_only(a));
+  check_same(module_of(to_text(shape_only(a))), shape_only(a));
   b.tables[0].knots.push_back(2);
   for (auto& column : b.tables[0].c) column.push_back(0);
   CHECK(to_text(shape_only(a)) != to_text(shape_only(b)));

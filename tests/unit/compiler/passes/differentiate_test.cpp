@@ -5,6 +5,7 @@
 #include "compiler/ir/verify.h"
 #include "compiler/passes/differentiate.h"
 #include "compiler/passes/pipeline.h"
+#include "tests/unit/compiler/passes/rows.h"
 #include "tests/unit/compiler/support/random_module.h"
 #include "tests/unit/compiler/support/reference.h"
 
@@ -52,8 +53,6 @@ double slope(const std::function<ValueId(Module&, ValueId)>& make, double s) {
   return a;
 }
 
-ValueId number(Module& module, double value) { return append(module, Constant{value}); }
-ValueId join(Module& m, BinaryOp op, ValueId x, ValueId y) { return append(m, Binary{op, x, y}); }
 ValueId take(Module& m, UnaryOp op, ValueId x) { return append(m, Unary{op, x}); }
 
 }  // namespace

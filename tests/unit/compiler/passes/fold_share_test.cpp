@@ -7,6 +7,7 @@
 #include "compiler/passes/fold.h"
 #include "compiler/passes/pipeline.h"
 #include "compiler/passes/share.h"
+#include "tests/unit/compiler/passes/rows.h"
 #include "tests/unit/compiler/support/random_module.h"
 #include "tests/unit/compiler/support/reference.h"
 
@@ -40,8 +41,6 @@ std::string simplified(const std::function<ValueId(Module&, ValueId)>& make) {
   return text.substr(first, last - first);
 }
 
-ValueId number(Module& module, double value) { return append(module, Constant{value}); }
-ValueId join(Module& module, BinaryOp op, ValueId x, ValueId y) { return append(module, Binary{op, x, y}); }
 
 }  // namespace
 

@@ -5,14 +5,15 @@
 #include "compiler/passes/group.h"
 #include "compiler/passes/pipeline.h"
 #include "compiler/passes/structure.h"
+#include "tests/unit/compiler/passes/rows.h"
 
 using namespace tarn;
 using namespace tarn::ir;
+using namespace tarn::test;
 using compiler::group;
 
 namespace {
 
-ValueId number(Module& module, double value) { return append(module, Constant{value}); }
 ValueId times(Module& m, ValueId x, ValueId y) { return append(m, Binary{BinaryOp::mul, x, y}); }
 
 /// Functions B, B/2, -B, 3 and a generator on two bits with one Z on the first bit for each.

@@ -8,7 +8,7 @@ using namespace ir;
 
 namespace {
 
-double apply(UnaryOp op, double x) {
+double apply_unary(UnaryOp op, double x) {
   switch (op) {
     case UnaryOp::neg: return -x;
     case UnaryOp::exp: return std::exp(x);
@@ -31,7 +31,7 @@ double apply(UnaryOp op, double x) {
   return NAN;
 }
 
-double apply(BinaryOp op, double x, double y) {
+double apply_binary(BinaryOp op, double x, double y) {
   switch (op) {
     case BinaryOp::add: return x + y;
     case BinaryOp::sub: return x - y;
@@ -79,8 +79,8 @@ std::vector<double> interpret(const Module& module, std::span<const double> inpu
     if (const auto* input = std::get_if<Input>(&row.op)) result = inputs[input->slot];
     if (const auto* argument = std::get_if<ReadArgument>(&row.op))
       result = argument->argument == Argument::s ? point.s : argument->argument == Argument::t ? point.t : point.w;
-    if (const auto* unary = std::get_if<Unary>(&row.op)) result = apply(unary->op, at(unary->operand));
-    if (const auto* binary = std::get_if<Binary>(&row.op)) result = apply(binary->op, at(binary->lhs), at(binary->rhs));
+    if (const auto* unary = std::get_if<Unary>(&row.op)) result = apply_unary(unary->op, at(unary->operand));
+    if (const auto* binary = std::get_if<Binary>(&row.op)) result = apply_binary(binary->op, at(binary->lhs), at(binary->rhs));
     if (const auto* select = std::get_if<Select>(&row.op))
       result = at(select->condition) != 0 ? at(select->then_value) : at(select->else_value);
     if (const auto* table = std::get_if<TableRead>(&row.op))

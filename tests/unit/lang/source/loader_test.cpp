@@ -7,7 +7,7 @@ using namespace tarn;
 
 namespace {
 
-std::vector<std::string> kinds(const Diagnostics& diagnostics) {
+std::vector<std::string> kinds_of(const Diagnostics& diagnostics) {
   std::vector<std::string> names;
   for (const Diagnostic& d : diagnostics.all()) names.emplace_back(d.kind);
   return names;
@@ -24,7 +24,7 @@ TEST_CASE("a file used twice is one module") {
   const auto main = folder.write("a.tarn", "use \"b.tarn\" as b\nuse \"./c.tarn\" as c");
   Diagnostics diagnostics;
   const Modules modules = load_modules(main, {}, diagnostics);
-  CHECK(kinds(diagnostics).empty());
+  CHECK(kinds_of(diagnostics).empty());
   REQUIRE(modules.modules.size() == 3);
   REQUIRE(modules.modules[0].imports.size() == 2);
   CHECK(modules.modules[0].imports[1].module == modules.modules[1].imports[0].module);
@@ -36,7 +36,7 @@ TEST_CASE("a file that uses itself is refused") {
   folder.write("b.tarn", "use \"a.tarn\" as a\nuse \"b.tarn\" as b");
   Diagnostics diagnostics;
   load_modules(main, {}, diagnostics);
-  CHECK(kinds(diagnostics) == Names{"import_cycle", "import_cycle"});
+  CHECK(kinds_of(diagnostics) == Names{"import_cycle", "import_cycle"});
 }
 
 TEST_CASE("the library is read from the program and reads no files") {
@@ -45,7 +45,7 @@ TEST_CASE("the library is read from the program and reads no files") {
   const LibraryText library[] = {{"one", "use two let x = 1"}, {"two", "use \"a.tarn\" as a use two"}};
   Diagnostics diagnostics;
   const Modules modules = load_modules(main, {library, {}}, diagnostics);
-  CHECK(kinds(diagnostics) == Names{"file_outside", "import_cycle"});
+  CHECK(kinds_of(diagnostics) == Names{"file_outside", "import_cycle"});
   CHECK(modules.modules.size() == 3);
   CHECK(modules.sources.file(modules.modules[1].ast.file).name == "<library>/one.tarn");
   CHECK(modules.modules[1].library);
@@ -55,15 +55,15 @@ TEST_CASE("a main file that cannot be read is reported") {
   const test::Folder folder;
   Diagnostics diagnostics;
   const Modules none = load_modules(folder.path() / "none.tarn", {}, diagnostics);
-  CHECK(kinds(diagnostics) == Names{"file_missing"});
+  CHECK(kinds_of(diagnostics) == Names{"file_missing"});
   CHECK(none.modules.size() == 1);
   Diagnostics second;
   load_modules(folder.path(), {}, second);
-  CHECK(kinds(second) == Names{"file_not_regular"});
+  CHECK(kinds_of(second) == Names{"file_not_regular"});
   folder.write("large.tarn", std::string(kLargestModel + 1, ' '));
   Diagnostics third;
   load_modules(folder.path() / "large.tarn", {}, third);
-  CHECK(kinds(third) == Names{"file_too_large"});
+  CHECK(kinds_of(third) == Names{"file_too_large"});
 }
 
 TEST_CASE("a file without permission is reported") {
@@ -73,7 +73,7 @@ TEST_CASE("a file without permission is reported") {
   std::filesystem::permissions(main, std::filesystem::perms::none);
   Diagnostics diagnostics;
   load_modules(main, {}, diagnostics);
-  CHECK(kinds(diagnostics) == Names{"file_unreadable"});
+  CHECK(kinds_of(diagnostics) == Names{"file_unreadable"});
 }
 
 TEST_CASE("a long chain of files ends in a message") {
@@ -83,7 +83,7 @@ TEST_CASE("a long chain of files ends in a message") {
   }
   Diagnostics diagnostics;
   load_modules(folder.path() / "m0.tarn", {}, diagnostics);
-  CHECK(kinds(diagnostics) == Names{"too_deep"});
+  CHECK(kinds_of(diagnostics) == Names{"too_deep"});
 }
 
 TEST_CASE("tables are read once, from the naming file's folder, inside the sandbox") {
@@ -99,9 +99,9 @@ TEST_CASE("tables are read once, from the naming file's folder, inside the sandb
   const Table* table = open_table(modules, "t.csv", in_sub, diagnostics);
   REQUIRE(table != nullptr);
   CHECK(open_table(modules, "sub/t.csv", in_main, diagnostics) == table);
-  CHECK(kinds(diagnostics).empty());
+  CHECK(kinds_of(diagnostics).empty());
   CHECK(open_table(modules, "t.csv", in_main, diagnostics) == nullptr);
   CHECK(open_table(modules, "../out.csv", in_main, diagnostics) == nullptr);
   CHECK(open_table(modules, "sub", in_main, diagnostics) == nullptr);
-  CHECK(kinds(diagnostics) == Names{"file_missing", "file_outside", "file_not_regular"});
+  CHECK(kinds_of(diagnostics) == Names{"file_missing", "file_outside", "file_not_regular"});
 }

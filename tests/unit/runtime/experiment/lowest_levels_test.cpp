@@ -13,7 +13,7 @@ using Complex = std::complex<double>;
 namespace {
 
 /// H = -g sum X - J sum Z Z on a ring, applied bit by bit.
-Product ring(int n, double g, double j) {
+HermitianProduct ring(int n, double g, double j) {
   return [=](const Complex* x, Complex* y) {
     const Index size = Index{1} << n;
     for (Index i = 0; i < size; ++i) {
@@ -68,7 +68,7 @@ TEST_CASE("a complex Hermitian matrix against a dense solve") {
   std::srand(7);
   Eigen::MatrixXcd m = Eigen::MatrixXcd::Random(size, size);
   m = (m + m.adjoint()).eval();
-  const Product product = [&](const Complex* x, Complex* y) {
+  const HermitianProduct product = [&](const Complex* x, Complex* y) {
     Eigen::Map<Eigen::VectorXcd>(y, size) = m * Eigen::Map<const Eigen::VectorXcd>(x, size);
   };
   const auto dense = tarn::test::dense_levels_of(m);
@@ -87,7 +87,7 @@ TEST_CASE("a complex Hermitian matrix against a dense solve") {
 }
 
 TEST_CASE("a constant matrix and an interrupted search") {
-  const Product zero = [](const Complex*, Complex* y) { std::fill(y, y + 64, Complex(0)); };
+  const HermitianProduct zero = [](const Complex*, Complex* y) { std::fill(y, y + 64, Complex(0)); };
   const auto levels = lowest_levels(64, 4, zero, true, {}, {});
   REQUIRE(levels);
   CHECK(levels->energies.norm() == 0);

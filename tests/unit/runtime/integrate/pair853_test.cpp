@@ -14,7 +14,7 @@ namespace {
 
 /// Largest broken condition among trees of exactly `order` vertices, for sum_i b_i u_i = x^order / density.
 template <class Weights>
-double worst(const std::vector<test::Tree>& trees, const std::vector<std::vector<double>>& u,
+double worst_condition(const std::vector<test::Tree>& trees, const std::vector<std::vector<double>>& u,
              const Weights& b, std::size_t order, double x, double right_side) {
   double result = 0;
   for (std::size_t k = 0; k < trees.size(); ++k) {
@@ -50,21 +50,21 @@ TEST_CASE("the pair 8(5,3) meets the order conditions") {
   }
   SECTION("the step has order 8 and no more") {
     for (std::size_t order = 1; order <= 8; ++order)
-      CHECK(worst(trees, u, kTable.b, order, 1, 1) < 5e-15);
-    CHECK(worst(trees, u, kTable.b, 9, 1, 1) > 1e-8);
+      CHECK(worst_condition(trees, u, kTable.b, order, 1, 1) < 5e-15);
+    CHECK(worst_condition(trees, u, kTable.b, 9, 1, 1) > 1e-8);
   }
   SECTION("the error estimates vanish through orders 3 and 5 and no further") {
     for (std::size_t order = 1; order <= 3; ++order)
-      CHECK(worst(trees, u, kTable.error3, order, 1, 0) < 5e-15);
-    CHECK(worst(trees, u, kTable.error3, 4, 1, 0) > 1e-5);
+      CHECK(worst_condition(trees, u, kTable.error3, order, 1, 0) < 5e-15);
+    CHECK(worst_condition(trees, u, kTable.error3, 4, 1, 0) > 1e-5);
     for (std::size_t order = 1; order <= 5; ++order)
-      CHECK(worst(trees, u, kTable.error5, order, 1, 0) < 5e-15);
-    CHECK(worst(trees, u, kTable.error5, 6, 1, 0) > 1e-6);
+      CHECK(worst_condition(trees, u, kTable.error5, order, 1, 0) < 5e-15);
+    CHECK(worst_condition(trees, u, kTable.error5, 6, 1, 0) > 1e-6);
   }
   SECTION("the interpolant has order 7 everywhere in the step") {
     for (const double x : {0.05, 0.3, 0.5, 0.77, 0.96})
       for (std::size_t order = 1; order <= 7; ++order)
-        CHECK(worst(trees, u, interpolant_weights(x), order, x, 1) < 2e-14);
+        CHECK(worst_condition(trees, u, interpolant_weights(x), order, x, 1) < 2e-14);
   }
   SECTION("the interpolant joins smoothly: it ends on the step") {
     const auto end = interpolant_weights(1), begin = interpolant_weights(0);
