@@ -60,6 +60,9 @@ void write_head(Out& out, const Instance& instance, const Prepared& prepared) {
   }
 }
 
+/// What a coefficient follows along s, up to a factor; a number of its own has no shape.
+std::string_view shape_of(const std::string& name) { return name.starts_with("value ") ? std::string_view{} : name; }
+
 void write_terms(Out& out, const Prepared& prepared, const runtime::Functions& functions) {
   const runtime::Chip& chip = prepared.plan.chip;
   std::vector<std::vector<double>> at;
@@ -70,12 +73,12 @@ void write_terms(Out& out, const Prepared& prepared, const runtime::Functions& f
       for (const auto& term : group.terms) {
         const double unit = term.factor.real() / kGigahertz;
         line(out, "    {:<22} {:>12.6g} {:>12.6g} {:>12.6g}   {}", acted_on(term.word, chip),
-             unit * at[0][group.coefficient], unit * at[1][group.coefficient], unit * at[2][group.coefficient],
-             names[group.coefficient].name);
+             unit * at[0][group.coefficient] + 0.0, unit * at[1][group.coefficient] + 0.0,
+             unit * at[2][group.coefficient] + 0.0, shape_of(names[group.coefficient].name));
       }
     }
   };
-  line(out, "\n  {:<24} {:>12} {:>12} {:>12}   coefficient", "terms of H [GHz]", "s = 0", "s = 0.5", "s = 1");
+  line(out, "\n  {:<24} {:>12} {:>12} {:>12}   varies as", "terms of H [GHz]", "s = 0", "s = 0.5", "s = 1");
   write(chip.hamiltonian);
   if (chip.drive.groups.empty()) return;
   line(out, "  terms in t [GHz], at t = 0");

@@ -17,7 +17,9 @@ std::vector<std::pair<std::string, std::string>> as_pairs(const std::vector<Over
   return pairs;
 }
 
-bool is_too_large(const Diagnostic& diagnostic) { return diagnostic.kind == diag::too_many_qubits.name; }
+bool is_too_large(const Diagnostic& diagnostic) { 
+  return diagnostic.kind == diag::too_many_qubits.name || diagnostic.kind == diag::too_many_for_equation.name;
+}
 
 bool only_too_large(const Diagnostics& diagnostics) {
   return diagnostics.dropped() == 0 &&

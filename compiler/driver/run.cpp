@@ -89,7 +89,9 @@ runtime::Provenance provenance_of(const LoadedModel& model, const RunCommand& co
   }
   for (const ProgramParameter& parameter : model.program.parameters) {
     const auto set = model.overrides.find(parameter.name);
-    if (parameter.count && set != model.overrides.end()) provenance.counts[parameter.name] = set->second;
+    if (!parameter.count) continue;
+    if (set != model.overrides.end()) provenance.counts[parameter.name] = set->second;
+    else if (parameter.value) provenance.counts[parameter.name] = *parameter.value;
   }
   char host[256] = {};
   if (gethostname(host, sizeof host - 1) == 0) provenance.host = host;

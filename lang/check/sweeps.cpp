@@ -48,6 +48,7 @@ std::vector<double> list_values(Session& session, const Value& value, Dimension 
     if (!value.unknown()) session.report(span, diag::axis_form, excerpt(session, span));
     return {};
   }
+  if (list->items->empty()) session.report(span, diag::axis_count, std::int64_t{0});
   std::vector<double> values;
   for (const Value& item : *list->items) {
     const auto node = to_number(session, item, span);

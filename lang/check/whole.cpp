@@ -121,7 +121,15 @@ double bytes_needed(const Instance& instance) {
   return 12 * kComplex * dimension;
 }
 
+/// `davies` keeps a density matrix of the whole chip.
+constexpr std::size_t kMostUnderDavies = 10;
+
 void check_memory(Session& session, const Instance& instance, Span span) {
+  if (instance.equation == EquationKind::davies && instance.qubits.size() > kMostUnderDavies) {
+    session.report(span, diag::too_many_for_equation, instance.qubits.size(), kMostUnderDavies, "davies")
+        .remedy("`schroedinger` takes 20 qubits and leaves the noise out");
+    return;
+  }
   const double memory = static_cast<double>(sysconf(_SC_PHYS_PAGES)) * static_cast<double>(sysconf(_SC_PAGE_SIZE));
   const double needed = bytes_needed(instance);
   if (needed <= memory) return;

@@ -17,7 +17,6 @@
 namespace tarn::runtime {
 namespace {
 
-constexpr std::size_t kMostQubits = 10;
 constexpr double kOfAvailable = 0.3;   ///< Of the memory there is: what tracks and tables may keep.
 constexpr double kUsualMemory = 4e9;   ///< Where the system does not tell.
 constexpr double kOfDistance = 0.03;  ///< Error of an answer over what the distance of the states could do to it.
@@ -228,11 +227,6 @@ Result<DaviesPoints::AnyTables, RunError> DaviesPoints::make_tables(const PointT
 
 Result<DaviesPoints::AnyTables, RunError> DaviesPoints::tables_for(PointTask& task, const Interrupted& interrupted) {
   const Chip& chip = model_.plan().chip;
-  if (chip.qubits.size() > kMostQubits) {
-    return Unexpected{RunError{"too_large", fmt::format("`davies` keeps a density matrix: {} qubits are more than the {} "
-                                                        "it takes; use `schroedinger` or a smaller chip",
-                                                        chip.qubits.size(), kMostQubits)}};
-  }
   const std::shared_ptr<const Functions> functions = functions_of(task);
   std::vector<double> key = track_key(*functions);
   if (!finite_levels(*functions)) {
@@ -244,6 +238,10 @@ Result<DaviesPoints::AnyTables, RunError> DaviesPoints::tables_for(PointTask& ta
   if (interrupted && interrupted()) return Unexpected{RunError{"interrupted", "stopped before the end", {}}};
   if (!std::visit([](const auto& typed) { return typed->resolved(); }, track)) {
     task.remark("levels change too fast somewhere along s to be followed; answers are marked by their errors at best");
+  }
+  const auto kept = std::visit([](const auto& typed) { return typed->levels(); }, track);
+  if (options.levels > 0 && kept > options.levels) {
+    task.remark(fmt::format("{} levels are kept instead of {}: a cut below would part levels that coincide", kept, options.levels));
   }
   for (std::uint32_t b = 0; b < chip.baths.size(); ++b) {
     const std::vector<double> more = bath_fingerprint(model_.plan(), b, task.settings(), *functions);

@@ -25,8 +25,8 @@ class DaviesPoints {
   std::vector<double> track_key(const Functions& functions) const;
   bool finite_levels(const Functions& functions) const;
 
-  /// Repeats until the task wants no run. Errors end up in the task: `bad_bath`, `too_large`
-  /// (over 10 qubits), `jump_depends_on_s`, and those of davies_pass().
+  /// Repeats until the task wants no run. Errors end up in the task: `bad_bath`,
+  /// `jump_depends_on_s`, and those of davies_pass().
   void advance(PointTask& task, const Interrupted& interrupted);
 
  private:

@@ -98,7 +98,8 @@ std::vector<Notice> notices_of(const RunReport& report) {
   for (const std::string& remark : report.remarks) notices.push_back({"run_remark", remark, "", Gravity::remark});
   if (report.leakage > 0) {
     notices.push_back({"population_left",
-                       fmt::format("up to {:.2g} of the population left the levels kept", report.leakage),
+                       report.leakage < 1 ? fmt::format("levels that are left out would take up to {:.2g} of the population", report.leakage)
+                                          : "levels that are left out would take all of the population",
                        "keep more `levels`", Gravity::remark});
   }
   add_ending(report, notices);

@@ -129,6 +129,7 @@ Result<Done, RunError> PointTask::prepare_observations() {
     auto readings = make_readings(observations_[i]);
     if (!readings) return Unexpected{readings.error()};
     norms_[i] = readings->norms();
+    for (const std::string& text : readings->remarks()) remark_first(text);
     for (const std::uint32_t o : observations_[i].observables) places_[o].push_back(i);
     const auto width = find_width(observations_[i]);
     if (!width) return Unexpected{width.error()};
@@ -137,6 +138,14 @@ Result<Done, RunError> PointTask::prepare_observations() {
     if (kept <= kKeptAmplitudes) readings_[i] = std::move(readings).value();
   }
   return Done{};
+}
+
+/// One remark for what is said at every instant after: they differ in s, behind the bracket.
+void PointTask::remark_first(const std::string& text) {
+  const std::string said = text.substr(0, text.rfind(" ("));
+  const bool known = std::any_of(outcome_.remarks.begin(), outcome_.remarks.end(),
+                                 [&](const std::string& other) { return other.starts_with(said); });
+  if (!known) remark(text);
 }
 
 Result<double, RunError> PointTask::find_width(const Observation& observation) {

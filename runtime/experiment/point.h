@@ -60,6 +60,7 @@ class PointTask {
   Result<Done, RunError> prepare();
   Result<Done, RunError> prepare_observations();
   void note_held_offsets();
+  void remark_first(const std::string& text);
   Result<InstantReadings, RunError> make_readings(const Observation& observation);
   const InstantReadings* readings_of(std::size_t observation);
   double largest_phase() const;

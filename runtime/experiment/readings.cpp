@@ -1,7 +1,10 @@
 #include "runtime/experiment/readings.h"
 
+#include <fmt/format.h>
+
 #include <algorithm>
 #include <cmath>
+#include <limits>
 
 #include "lang/support/match.h"
 #include "lang/support/check.h"
@@ -67,6 +70,7 @@ struct InstantReadings::Preparer {
   std::span<const double> coefficients;  ///< Of all operators at the instant.
   Prepared& prepared;                    ///< To be filled.
   double& norm;
+  std::vector<std::string>& remarks;
 
   using Outcome = Result<Done, RunError>;
 
@@ -113,9 +117,7 @@ struct InstantReadings::Preparer {
     const auto found = levels.lowest(at.s, 1);
     if (!found) return Unexpected{found.error()};
     const Index above = coinciding(**found, 0).second;
-    if (above >= (*found)->energies.size()) {
-      return Unexpected{RunError{"no_gap", "all levels coincide here, so that there is no gap"}};
-    }
+    if (above >= (*found)->energies.size()) return lacking("all levels coincide, so that there is no gap");
     return done(OfLevels{{(*found)->energies[above] - (*found)->energies[0], 2 * (*found)->residual}}, 0);
   }
   Outcome operator()(const ReadPurity&) const { return done(OfPurity{}, 1); }
@@ -124,6 +126,12 @@ struct InstantReadings::Preparer {
     return done(OfSpace{lettered_space(read.letters), 0}, kOfProjector);
   }
   Outcome operator()(const ReadReduction&) const { return done(None{}, 0); }
+
+  /// The reading has no value at this instant; others may.
+  Outcome lacking(const std::string& why) const {
+    remarks.push_back(fmt::format("{} (first at s = {:.4g})", why, at.s));
+    return done(OfLevels{{std::numeric_limits<double>::quiet_NaN(), 0}}, 0);
+  }
 
   static RunError no_level(std::uint32_t level) {
     return {"no_such_level", "the chip has no level " + std::to_string(level)};
@@ -139,9 +147,8 @@ InstantReadings::Preparer::Outcome InstantReadings::Preparer::operator()(const R
   const auto [row_first, row_last] = coinciding(**found, read.row);
   const auto [column_first, column_last] = coinciding(**found, read.column);
   if (row_first == column_first && read.row != read.column) {
-    return Unexpected{RunError{"levels_coincide", "levels " + std::to_string(read.row) + " and " +
-                                                      std::to_string(read.column) +
-                                                      " coincide here, so that their coherence has no value"}};
+    return lacking("levels " + std::to_string(read.row) + " and " + std::to_string(read.column) +
+                   " coincide, so that their coherence has no value");
   }
   SpannedSpace left = space_of(**found, row_first, row_last), right = space_of(**found, column_first, column_last);
   const double error = left.error + right.error;
@@ -157,7 +164,7 @@ Result<InstantReadings, RunError> InstantReadings::make(const Plan& plan, std::s
   readings.norms_.assign(plan.readings.size(), 0.0);
   for (const std::uint32_t row : rows) {
     const Preparer prepare{plan, at, levels, settings, target, coefficients, readings.prepared_[row],
-                           readings.norms_[row]};
+                           readings.norms_[row], readings.remarks_};
     const auto done = std::visit(prepare, plan.readings[row]);
     if (!done) return Unexpected{done.error()};
   }

@@ -12,12 +12,6 @@ namespace {
 
 using Eigen::Index;
 
-bool flips(const std::vector<WordTerm>& words) {
-  return std::any_of(words.begin(), words.end(), [](const WordTerm& term) {
-    return term.word.x != 0 && std::abs(term.factor) > 0;
-  });
-}
-
 Result<SpannedSpace, RunError> ground_space(ChipLevels& levels, double s, double above) {
   const auto found = above > 0 ? levels.within(s, above) : levels.lowest(s, 1);
   if (!found) return Unexpected{found.error()};
@@ -44,7 +38,9 @@ Result<Target, RunError> find_target(const Plan& plan, Functions& functions) {
                                "`target` means nothing here: the diagonal of H at s = 1 is the same for all states"}};
   }
   Target target;
-  target.diagonal = !flips(words);
+  std::vector<WordTerm> flipping;
+  std::copy_if(words.begin(), words.end(), std::back_inserter(flipping), [](const WordTerm& term) { return term.word.x != 0; });
+  target.diagonal = norm_bound(flipping) <= 1e-12 * range;  // A table may end within rounding of 0.
   for (Index i = 0; i < diagonal.size(); ++i) {
     if (diagonal[i] - lowest <= kSameLevel * range) target.states.push_back(static_cast<std::uint64_t>(i));
   }
