@@ -183,7 +183,11 @@ void bind_given(Session& session, const Scope& scope, Callable& callable, const 
       taken = &args[next];
       name = taken->name.text;
     }
-    const Value value = given_value(session, scope, *taken, given.value);
+    // 2 pi may belong to the formula around a spectrum, not to a cutoff that it is given.
+    Site plain = scope.site != nullptr ? *scope.site : Site{};
+    plain.formula = plain.formula && callable.kind == CallableKind::function;
+    const Scope inner{&scope, scope.module, scope.site != nullptr ? &plain : nullptr, {}};
+    const Value value = given_value(session, inner, *taken, given.value);
     const auto [at, is_new] = callable.bound.try_emplace(name, BoundValue{std::make_shared<const Value>(value), span});
     if (!is_new) session.report(span, diag::argument_twice, name).note(at->second.span, "given here");
   }

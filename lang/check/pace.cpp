@@ -40,6 +40,7 @@ void report_begin(Session& session, std::string_view word, Span span) {
   auto tail = session.report(span, diag::unknown_begin, text);
   if (word == "state") tail.remedy("`begin state(\"01\")`, a letter for each qubit");
   else if (text.starts_with('"')) tail.remedy(fmt::format("`begin state({})`", text));
+  else if (text.find_first_not_of("01") == std::string::npos) tail.remedy(fmt::format("`begin state(\"{}\")`", text));
   else tail.remedy(near_and(word, kBeginWords, kBegins));
 }
 

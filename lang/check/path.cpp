@@ -1,6 +1,7 @@
 #include "lang/check/path.h"
 
 #include <algorithm>
+#include <array>
 
 #include "lang/check/arguments.h"
 #include "lang/check/arithmetic.h"
@@ -13,6 +14,7 @@
 #include "lang/check/tables.h"
 #include "lang/program/operators.h"
 #include "lang/quantities/constants.h"
+#include "lang/support/near.h"
 
 namespace tarn {
 namespace {
@@ -55,6 +57,16 @@ std::optional<Value> named_value(Session& session, const Scope& scope, const Res
     return Value{};
   }
   return value;
+}
+
+/// For `spectra.ohmic` where no file in use is called `spectra`.
+std::string file_remedy(const Session& session, const Scope& scope, const std::string& name) {
+  constexpr auto kLibrary = std::to_array<std::string_view>({"flux", "graphs", "spectra"});
+  if (std::find(kLibrary.begin(), kLibrary.end(), name) != kLibrary.end()) return fmt::format("add `use {}`", name);
+  std::vector<std::string> known;
+  for (const auto& [file, row] : session.program.modules[scope.module].uses) known.push_back(file);
+  const std::string_view near = near_word(name, known);
+  return near.empty() ? std::string() : fmt::format("did you mean `{}`?", near);
 }
 
 Value not_here(Session& session, const Scope& scope, const ast::Name& name) {
@@ -252,7 +264,8 @@ Value evaluate_path(Session& session, const Scope& scope, const ast::Path& path)
   if (!found && path.steps.size() == 1) return evaluate_word(session, scope, path);
   if (at.step + 1 < path.steps.size()) {
     if (found && found->unknown()) return {};
-    session.report(path.span, diag::path_is_no_value, excerpt(session, path.span));
+    auto tail = session.report(path.span, diag::path_is_no_value, excerpt(session, path.span));
+    if (!found) tail.remedy(file_remedy(session, scope, step.name.text));
     return {};
   }
   Value value = *found;

@@ -22,6 +22,13 @@ constexpr std::array kLater = std::to_array<std::string_view>(
 
 constexpr auto kSetWords = std::to_array<std::string_view>({"ground", "level", "state", "any", "target"});
 
+/// `00`: a number where the letters of a state stand; empty for other expressions.
+std::string digits_of(const Session& session, const Scope& scope, const ast::Given& given) {
+  if (!std::holds_alternative<ast::Number>(session.ast(scope).expr(given.value).node)) return {};
+  const std::string text(session.text(given.span));
+  return text.find_first_not_of("01") == std::string::npos ? text : std::string();
+}
+
 /// `population("11")`, `population(0)`, `lowest(2*gap)`.
 void report_no_name(Session& session, const Scope& scope, const ast::Path& path) {
   const std::string& word = path.steps.front().name.text;
@@ -30,9 +37,12 @@ void report_no_name(Session& session, const Scope& scope, const ast::Path& path)
   const ast::ExprNode& node = session.ast(scope).expr(path.given.front().value).node;
   const bool reduces = word != "population" && word != "fidelity";
   const std::string_view expected = reduces ? "the name of an observable" : word == "population" ? "a set of states" : "a state";
+  const std::string digits = digits_of(session, scope, path.given.front());
+  const bool letters = digits.size() >= 2 && (digits.front() == '0' || digits.size() == scope.site->readings->unrolled->qubits.size());
   auto tail = session.report(span, diag::wrong_kind, expected, text);
   if (reduces) tail.remedy(fmt::format("`observe` it under a name and use the name: `{}(NAME)`", word));
   else if (std::holds_alternative<ast::Text>(node)) tail.remedy(fmt::format("`{}(state({}))`", word, text));
+  else if (letters || (word == "fidelity" && !digits.empty())) tail.remedy(fmt::format("`{}(state(\"{}\"))`", word, digits));
   else if (std::holds_alternative<ast::Number>(node) && word == "population") tail.remedy(fmt::format("`population(level({}))`", text));
 }
 
@@ -256,9 +266,14 @@ std::optional<std::string> state_letters(Session& session, const Scope& scope, c
     session.report(path.span, diag::argument_count, "state", "1 text", path.given.size());
     return std::nullopt;
   }
+  const Span span = path.given.front().span;
+  const std::string digits = digits_of(session, scope, path.given.front());
+  if (!digits.empty()) {
+    session.report(span, diag::wrong_kind, "a text", digits).remedy(fmt::format("`state(\"{}\")`", digits));
+    return std::nullopt;
+  }
   const auto text = evaluate_text(session, scope, path.given.front().value);
   if (!text) return std::nullopt;
-  const Span span = path.given.front().span;
   if (text->find_first_not_of(allowed) != std::string::npos) {
     session.report(span, diag::state_letters, *text, std::string(allowed));
     return std::nullopt;

@@ -20,10 +20,14 @@ bool is_name(std::string_view text) {
   });
 }
 
-/// `ns`, `[1/us]`
-std::string unit_text(Dimension dimension) {
+/// A quantity as it is written, `15 mK`. Never with the number at hand: its unit is not known, and
+/// any that is put to it here could be wrong by powers of ten.
+std::string example_of(Dimension dimension) {
+  if (dimension == kTime) return "100 ns";
+  if (dimension == kFrequency || dimension == kEnergy) return "5 GHz";
+  if (dimension == kTemperature) return "15 mK";
   const std::string unit = default_unit(dimension).text;
-  return unit.find_first_of("*/^") == std::string::npos ? unit : fmt::format("[{}]", unit);
+  return fmt::format(fmt::runtime(unit.find_first_of("*/^") == std::string::npos ? "1 {}" : "1 [{}]"), unit);
 }
 
 /// `4e-4 GHz` where a plain number is wanted; empty for other texts.
@@ -75,13 +79,13 @@ std::vector<Factor> factors_of(const Ast& ast, ast::ExprId product) {
 
 std::string unit_remedy(const Session& session, Span span, Dimension expected) {
   const std::string_view text = session.text(span);
-  const std::string unit = unit_text(expected);
-  if (is_plain_number(text)) return fmt::format("write a unit: `{} {}`", text, unit);
+  const std::string example = example_of(expected);
+  if (is_plain_number(text)) return fmt::format("a unit is missing: write it after the number, as in `{}`", example);
   if (!is_name(text)) return {};
   for (const ProgramParameter& parameter : session.program.parameters) {
     if (parameter.declared != text || !parameter.dimension.is_number()) continue;
     if (!parameter.value) return fmt::format("declare it with a unit: `parameter {} : {}`", text, type_text(expected));
-    return fmt::format("declare it with a unit: `parameter {} = {:.6g} {}`", text, *parameter.value, unit);
+    return fmt::format("a unit is missing where `{}` is declared: write it after the number, as in `{}`", text, example);
   }
   return {};
 }

@@ -47,10 +47,17 @@ std::optional<Dimension> dimension_of(const Session& session, const Value& value
   return std::nullopt;
 }
 
-/// One frequency beside times, hbar and plain numbers; formulas of second order have more.
+/// `1 rad`, which takes the dimension of `pi rad` away, but not its 2 pi.
+bool is_rad(const ast::ExprNode& node) {
+  const auto* number = std::get_if<ast::Number>(&node);
+  return number != nullptr && number->unit && number->unit->text == "rad";
+}
+
+/// One frequency beside times, hbar, `1 rad` and plain numbers; formulas of second order have more.
 bool has_one_frequency(Session& session, const Scope& scope, const std::vector<ast::ExprId>& others) {
   int frequencies = 0;
   for (const ast::ExprId id : others) {
+    if (is_rad(session.ast(scope).expr(id).node)) continue;
     const auto dimension = dimension_of(session, evaluate(session, scope, id));
     if (!dimension) return false;
     const bool plain = dimension->is_number() || *dimension == kTime || *dimension == kEnergy * kTime / kAngle;
@@ -80,18 +87,19 @@ bool check_turns(Session& session, const Scope& scope, ast::ExprId product, cons
     if (!take(ast.expr(factor.id), factor.divides ? below : above)) others.push_back(factor.id);
   }
   const Turn& turn = above.complete() ? above : below;
-  if (!turn.complete() || turn.in_rad == fits) return true;
+  if (!turn.complete() || (!fits && !turn.in_rad)) return true;
   const std::pair place(turn.mark->file.row, turn.mark->begin);
-  if (session.turns.contains(place) || !has_one_frequency(session, scope, others)) return true;
+  if (session.turns.contains(place)) return fits;
+  if (!has_one_frequency(session, scope, others)) return true;
   session.turns.insert(place);
   const Span span = ast.expr(product).span;
-  constexpr std::string_view kRemedy = "leave out `2*pi{}`: a frequency counts its cycles as 2 pi rad already";
+  constexpr std::string_view kRemedy = "leave out {}: a frequency counts its cycles as 2 pi rad already";
   if (fits) {
-    session.report(span, diag::counted_twice, excerpt(session, span)).remedy(fmt::format(kRemedy, ""));
+    session.report(span, diag::counted_twice, excerpt(session, span)).remedy(fmt::format(kRemedy, turn.in_rad ? "`2*pi rad` and `1 rad`" : "`2*pi`"));
     return true;
   }
   session.report(span, diag::dimension_mismatch, *dimension / kAngle, *dimension, excerpt(session, span))
-      .remedy(fmt::format(kRemedy, " rad"));
+      .remedy(fmt::format(kRemedy, "`2*pi rad`"));
   return false;
 }
 

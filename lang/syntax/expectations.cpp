@@ -246,7 +246,9 @@ bool joins(Code code) {
 
 bool report_reserved(const Stop& stop, Diagnostics& diagnostics) {
   if (!is_reserved(stop.here()) || joins(stop.here()) || !stop.expects("a name") || !stop.same_line_as_before()) return false;
-  diagnostics.report(stop.span(), diag::reserved_word, stop.text(0)).remedy("choose another name, such as " + quote(stop.text(0) + "_1"));
+  auto tail = diagnostics.report(stop.span(), diag::reserved_word, stop.text(0));
+  if (stop.before() == Code::use && stop.here() == Code::spectrum) tail.remedy("did you mean `use spectra`?");
+  else tail.remedy("choose another name, such as " + quote(stop.text(0) + "_1"));
   return true;
 }
 
