@@ -135,7 +135,8 @@ class ObserveReader {
       return;
     }
     if (!runs(instance_) || !instance_.scan.empty()) {
-      session_.report(observe.span, diag::moment_without_pace, "distribution");
+      session_.report(observe.span, diag::moment_without_pace, "distribution")
+          .remedy(instance_.scan.empty() ? "the distribution needs a pace: `pace hold for 1 ns` keeps the place" : "");
       return;
     }
     readings_.reads_state = true;

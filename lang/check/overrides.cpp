@@ -123,7 +123,7 @@ void check_overrides_used(const Program& program, const std::vector<Instance>& a
     if (used || declared == program.parameters.end()) continue;
     const bool swept = std::any_of(all.begin(), all.end(),
                                    [&, &parameter = name](const Instance& i) { return is_swept(i, parameter); });
-    if (swept) diagnostics.report(declared->span, diag::set_and_swept, name);
+    if (swept) diagnostics.report(declared->span, diag::set_and_swept, name).remedy(fmt::format("take out `sweep {0}`, or leave `--set {0}` away", name));
     else diagnostics.report(declared->span, diag::changes_nothing, name);
   }
 }

@@ -172,6 +172,8 @@ Value evaluate_word(Session& session, const Scope& scope, const ast::Path& path)
     return {};
   }
   if (!session.diagnostics.full()) report_unknown_name(session, scope, step.name);
+  // Sets of states and levels have a meaning only inside the word that is misspelt here.
+  if (readings != nullptr) return {};
   for (const ast::Given& given : path.given) evaluate(session, scope, given.value);
   return {};
 }

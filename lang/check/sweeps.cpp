@@ -84,7 +84,8 @@ std::vector<double> axis_values(Session& session, const Scope& scope, ast::ExprI
   }
   if (word == "log" && !(*low > 0 && *high > 0)) {
     session.report(cover(given[0].span, given[1].span), diag::not_positive, "both ends of `log`",
-                   format_quantity(*low > 0 ? *high : *low, dimension));
+                   format_quantity(*low > 0 ? *high : *low, dimension))
+        .remedy("`log` goes from above zero; `linear` may start at zero");
     return {};
   }
   return spaced(*low, *high, *count, word == "log");

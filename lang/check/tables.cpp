@@ -26,6 +26,12 @@ std::optional<Interpolation> interpolation(std::string_view word) {
 }
 
 void read_by(Session& session, const Scope& scope, const ast::Given& given, TableCall& call) {
+  if (interpolation(session.text(given.span).substr(session.text(given.span).find_last_of(" =") + 1))) {
+    const std::string text = excerpt(session, span_of(session, scope, given.value));
+    session.report(span_of(session, scope, given.value), diag::wrong_kind, "a text", text).remedy(fmt::format("`by = \"{}\"`", text));
+    call.valid = false;
+    return;
+  }
   const auto word = evaluate_text(session, scope, given.value);
   if (!word) return;
   const auto by = interpolation(*word);
@@ -52,7 +58,9 @@ TableCall read_call(Session& session, const Scope& scope, const ast::Path& path)
     }
   }
   if (texts.size() != 3) {
-    session.report(path.span, diag::argument_count, "table", "3 texts", texts.size());
+    const bool by = texts.size() == 4 && texts[3] && interpolation(*texts[3]);
+    session.report(path.span, diag::argument_count, "table", "3 texts", texts.size())
+        .remedy(by ? fmt::format("`by = \"{}\"`", *texts[3]) : std::string());
     call.valid = false;
     return call;
   }
@@ -105,12 +113,14 @@ std::optional<LoadedTable> load(Session& session, const TableCall& call, Span sp
 }
 
 void remark_coverage(Session& session, const TableData& data, Dimension x, Span span) {
-  const bool covers = data.hold_outside && data.x.front() <= 0 && data.x.back() >= 1;
+  const bool covers = data.hold_outside && std::abs(data.x.front()) < 1e-9 && std::abs(data.x.back() - 1) < 1e-9;
   if (covers || session.generic) return;
   const std::string low = format_quantity(data.x.front(), x);
   const std::string high = format_quantity(data.x.back(), x);
   const std::string outside = data.hold_outside ? "keeps its end value" : "is zero";
-  session.report(span, diag::table_coverage, data.name, low, high, outside);
+  const bool passes = data.hold_outside && x.is_number() && (data.x.front() < -1e-9 || data.x.back() > 1 + 1e-9);
+  session.report(span, diag::table_coverage, data.name, low, high, outside)
+      .remedy(passes ? "only s in 0 .. 1 is used, the rest is not: divide the column by 100 if it counts percent" : "");
   session.remark(fmt::format("{} covers {} to {}; outside it {}", data.name, low, high, outside));
 }
 

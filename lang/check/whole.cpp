@@ -20,7 +20,7 @@ void check_use(Session& session, const Statements& statements, const Readings& r
   constexpr std::string_view kUnread = "no observable reads a state";
   const bool unread = !readings.reads_state;
   if (unread && statements.begin != nullptr) session.report(statements.begin->span, diag::unused_statement, "begin", kUnread);
-  if (statements.equation == nullptr || (!unread && moves(instance))) return;
+  if (statements.equation == nullptr || (!unread && (readings.pace_broken || moves(instance)))) return;
   session.report(statements.equation->span, diag::unused_statement, "equation", unread ? kUnread : "there is no pace, so nothing moves");
 }
 
@@ -31,9 +31,9 @@ void check_statements(Session& session, const Statements& statements, const Read
   if (scan && statements.begin != nullptr) session.report(statements.begin->span, diag::not_in_scan, "begin");
   if (scan && statements.equation != nullptr) session.report(statements.equation->span, diag::not_in_scan, "equation");
   if (scan && readings.reads_state) session.report(statements.scan->span, diag::state_in_scan);
-  if (!scan && readings.reads_state && statements.begin == nullptr) session.report(span, diag::statement_missing, "begin");
+  if (!scan && readings.reads_state && statements.begin == nullptr) session.report(span, diag::statement_missing, "begin").remedy("`begin ground`");
   const bool runs = moves(instance) && readings.reads_state && !scan;
-  if (runs && statements.equation == nullptr) session.report(span, diag::statement_missing, "equation");
+  if (runs && statements.equation == nullptr) session.report(span, diag::statement_missing, "equation").remedy("`equation schroedinger`");
   if (statements.observes.empty()) session.report(span, diag::nothing_observed);
   else if (!scan && readings.broken.empty()) check_use(session, statements, readings, instance);
 }

@@ -81,6 +81,7 @@ std::string_view colour_of(Severity severity) {
 }
 
 std::string excerpt(const SourceFile& file, Span span, const RenderStyle& style, std::string_view colour) {
+  if (file.text.empty()) return {};
   const std::vector<Cell> cells = cells_of(file, span, style.tab_width);
   std::string line;
   std::string marks;

@@ -179,6 +179,15 @@ std::optional<Column> read_column(const Table& table, const SourceFile& file, st
   const std::optional<std::size_t> index = find_column(table, wanted);
   if (!index) {
     const std::string_view near = near_word(wanted, table.header);
+    const std::string& first = table.header.front();
+    const bool joined = table.header.size() == 1 && first.find_first_of(";\t") != std::string::npos;
+    const std::string bracket = std::string(split_header(wanted).name) + " (";
+    const bool round = std::any_of(table.header.begin(), table.header.end(), [&](const std::string& cell) { return cell.starts_with(bracket); });
+    if (joined || round) {
+      diagnostics.report(asked, diag::table_no_column, table.name, wanted)
+          .remedy(joined ? "cells are parted by commas" : list_columns(table) + "; units stand in `[ ]`: `A [GHz]`");
+      return std::nullopt;
+    }
     diagnostics.report(asked, diag::table_no_column, table.name, wanted)
         .remedy(list_columns(table) + (near.empty() ? "" : "; did you mean `" + std::string(near) + "`?"));
     return std::nullopt;

@@ -18,13 +18,13 @@ constexpr std::string_view kX = "operators are `X`, `Y`, `Z`, `I` and `|0><1|`";
 constexpr std::string_view kLowering = "`|0><1|` takes |1> to |0>";
 constexpr std::string_view kRaising = "`|1><0|` takes |0> to |1>";
 constexpr std::string_view kLog = "`ln` is the natural logarithm, `log10` the decimal one";
-constexpr std::string_view kLoop = "a loop runs over `0 .. n-1`, both ends included";
+constexpr std::string_view kLoop = "a loop runs over `0 .. n-1`, both ends included; a sweep over `linear(a, b, n)` or `log(a, b, n)`";
 
 constexpr auto kValues = std::to_array<Habit>({
     {"sx", kX}, {"sy", kX}, {"sz", kX}, {"sigmax", kX}, {"sigmay", kX}, {"sigmaz", kX},
     {"sigma_x", kX}, {"sigma_y", kX}, {"sigma_z", kX}, {"sigmam", kLowering}, {"sigma_m", kLowering},
     {"sigmap", kRaising}, {"sigma_p", kRaising}, {"log", kLog}, {"range", kLoop}, {"arange", kLoop},
-    {"arcsin", "`asin`"}, {"arccos", "`acos`"}, {"arctan", "`atan`"}, {"fabs", "`abs`"},
+    {"probability", "`population(...)` of a set of states"}, {"arcsin", "`asin`"}, {"arccos", "`acos`"}, {"arctan", "`atan`"}, {"fabs", "`abs`"},
     {"linspace", "`linear(a, b, n)`"}, {"logspace", "`log(a, b, n)`"},
     {"k_B", "`kB`"}, {"kb", "`kB`"}, {"Pi", "`pi`"},
     {"distribution", "the distribution is its own answer: `observe distribution at end`"},
