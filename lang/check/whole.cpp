@@ -174,12 +174,12 @@ bool diverges(const Session& session, NodeId density) {
     sampler.run(bindings);
     return sampler.value(density) / w;
   };
-  return slope(kNear / 16) > slope(kNear) * 1.001;
+  return slope(kNear) > 0 && slope(kNear / 16) > slope(kNear) * 1.001;
 }
 
 void check_levels(Session& session, const Statements& statements, const Instance& instance) {
   if (statements.levels == nullptr || instance.equation == EquationKind::davies) return;
-  session.report(statements.levels->span, diag::not_available, "`levels` without levels to keep",
+  session.report(statements.levels->span, diag::not_available, "`levels` without `equation davies`",
                  "`levels K` with `equation davies`");
 }
 

@@ -35,12 +35,12 @@ TEST_CASE("where levels coincide a gap and a coherence have no value, and only t
   scratch.write("m.tarn", "qubit site { energy -s*1 GHz/2*X }\nchip one { qubit q : site }\n"
                           "experiment trace { chip one begin state(\"0\") pace ramp to 1 over 5 ns equation schroedinger\n"
                           " observe c = coherence(0, 1) along 3\n observe z = mean(Z(q)) along 3 }\n"
-                          "experiment levels { chip one observe g = gap scan s over linear(0, 1, 3) }\n");
+                          "experiment gaps { chip one observe g = gap scan s over linear(0, 1, 3) }\n");
   const Outcome outcome = run_tarn({"run", "m.tarn", "--out", "r"}, scratch.path());
   INFO(outcome.err);
   CHECK(outcome.status == 0);
   CHECK(outcome.err.find("levels 0 and 1 coincide, so that their coherence has no value (first at s = 0)") != std::string::npos);
-  const Csv trace = read_csv(scratch.path() / "r/trace/traces.csv"), levels = read_csv(scratch.path() / "r/levels/results.csv");
+  const Csv trace = read_csv(scratch.path() / "r/trace/traces.csv"), levels = read_csv(scratch.path() / "r/gaps/results.csv");
   REQUIRE(trace.rows.size() == 3);
   CHECK(trace.rows[0][trace.column("c")].empty());
   CHECK(trace.number(0, "z") == Approx(1));
