@@ -18,9 +18,9 @@ constexpr double kOfAnswer = 0.7, kOfAnswerIrregular = 1.5;
 constexpr double kLeastDecrease = 0.35, kMostDecrease = 0.15;
 
 double distance(const States& x, const States& y) {
-  double sum = 0;
-  for (std::size_t k = 0; k < x.size(); ++k) sum = std::max(sum, (x[k] - y[k]).norm());
-  return sum;
+  double most = 0;
+  for (std::size_t k = 0; k < x.size(); ++k) most = std::max(most, (x[k] - y[k]).norm());
+  return most;
 }
 
 States extrapolated(const States& coarse, const States& fine) {
@@ -55,7 +55,12 @@ DaviesRefinement<Scalar>::DaviesRefinement(const DaviesTables<Scalar>& tables, D
 template <class Scalar>
 Result<DaviesAnswer, RunError> DaviesRefinement<Scalar>::next() {
   TARN_CHECK(!exhausted_);
-  return explicitly_ ? next_by_explicit_steps() : next_by_fast_steps();
+  if (!explicitly_) return next_by_fast_steps();
+  auto answer = next_by_explicit_steps();
+  if (answer || !fast_ || answer.error().kind == "interrupted") return answer;
+  exhausted_ = true;  // An answer that misses the tolerance is better than none.
+  fast_->counters = {};
+  return *std::move(fast_);
 }
 
 template <class Scalar>
@@ -72,14 +77,15 @@ bool DaviesRefinement<Scalar>::may_go_explicit() const {
 }
 
 template <class Scalar>
-void DaviesRefinement<Scalar>::leave_fast_steps() {
+void DaviesRefinement<Scalar>::leave_fast_steps(const DaviesAnswer& answer) {
   if (!may_go_explicit()) {
     exhausted_ = true;
     return;
   }
   explicitly_ = true;
   depth_ = 0;
-  last_ = better_.back();
+  fast_ = answer;
+  last_ = answer.states;
 }
 
 template <class Scalar>
@@ -109,7 +115,7 @@ Result<DaviesAnswer, RunError> DaviesRefinement<Scalar>::next_by_fast_steps() {
   answer.states = better_.back();
   keep_three(plain_);
   keep_three(better_);
-  if (depth_ > options_.last_depth || 2 * steps > options_.max_steps) leave_fast_steps();
+  if (depth_ > options_.last_depth || 2 * steps > options_.max_steps) leave_fast_steps(answer);
   return answer;
 }
 

@@ -4,7 +4,7 @@
 /// A pass errs by the square of its step, and its steps are symmetric: two passes are extrapolated to an
 /// answer of order 4. How far it is off shows, for any observable, in its distance from the coarser
 /// answers that come with it. Weights were measured over random chips, paces and baths
-/// (tests/unit/runtime/experiment/davies_accuracy_test.cpp).
+/// (tests/program/error_coverage_test.cpp holds them on others).
 
 #include <memory>
 #include <optional>
@@ -46,7 +46,7 @@ class DaviesRefinement {
   Result<DaviesAnswer, RunError> next_by_fast_steps();
   Result<DaviesAnswer, RunError> next_by_explicit_steps();
   Result<DaviesPass, RunError> pass(int depth, Counters& counters);
-  void leave_fast_steps();
+  void leave_fast_steps(const DaviesAnswer& answer);
   bool may_go_explicit() const;
 
   const DaviesTables<Scalar>& tables_;
@@ -56,6 +56,7 @@ class DaviesRefinement {
   int depth_ = 0;
   std::vector<States> plain_;  ///< Of the fast passes, coarsest first; the last three.
   std::vector<States> better_; ///< Extrapolated, likewise.
+  std::optional<DaviesAnswer> fast_;  ///< The last by fast steps, once explicit ones are tried.
   std::optional<States> last_; ///< Of the explicit passes, or the last of the fast ones.
 };
 

@@ -166,3 +166,19 @@ TEST_CASE("threads that share a track get the same bits") {
   const auto one = work(1), two = work(2);
   for (std::size_t k = 0; k < one.size(); ++k) CHECK(one[k] == two[k]);
 }
+
+// Fast steps are stopped early and hand over.
+TEST_CASE("explicit steps go on where fast ones stop") {
+  const auto track = track_of(random_chip(1, 7, usual_schedules()));
+  const DaviesTables<double> tables(track, same_baths(1, kWeakBath));
+  DaviesOptions options;
+  options.last_depth = 2;
+  DaviesRefinement<double> refinement(tables, {ramp(3), ground_state(*track, 0), {3}, {}, {}}, options);
+  const auto fast = refinement.next();
+  REQUIRE(fast);
+  REQUIRE(!refinement.exhausted());
+  const auto better = refinement.next();
+  REQUIRE(better);
+  CHECK((better->states[0] - fast->states[0]).norm() < 1e-3);
+  CHECK((better->states[0] - fast->states[0]).norm() > 0);
+}
