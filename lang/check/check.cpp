@@ -162,8 +162,10 @@ std::optional<std::uint32_t> find_experiment(const Program& program, const std::
     if (program.experiments[k].name == name || (name.empty() && program.experiments.size() == 1)) return k;
     known.push_back(program.experiments[k].name);
   }
-  const Span start{program.ast(0).file, 0, 0};
-  diagnostics.report(start, diag::unknown_experiment, name).remedy(offer(name, known, "experiments:"));
+  const SourceFile& typed = program.loaded->sources.add("command line", fmt::format("--experiment {}", name));
+  const auto end = static_cast<std::uint32_t>(typed.text.size());
+  const Span asked{typed.id, end - static_cast<std::uint32_t>(name.size()), end};
+  diagnostics.report(asked, diag::unknown_experiment, name).remedy(offer(name, known, "experiments:"));
   return std::nullopt;
 }
 

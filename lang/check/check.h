@@ -21,7 +21,8 @@ using Overrides = std::map<std::string, double>;
 /// bounds of work and memory that are reported as errors where a model passes them.
 Program check(Modules modules, Diagnostics& diagnostics);
 
-/// The experiment with this name; without a name the only one. Reports what does not fit.
+/// The experiment with this name; without a name the only one. Reports what does not fit, at the
+/// option `--experiment`, whose text is added to the program's.
 std::optional<std::uint32_t> find_experiment(const Program& program, const std::string& name, Diagnostics& diagnostics);
 
 /// `--set p="5 GHz"`: each name with its text, read as an expression of constants. Reports

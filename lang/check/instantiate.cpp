@@ -129,7 +129,7 @@ void attach_axes(Session& session, const std::vector<SweptAxis>& axes, Instance&
     AxisI made;
     for (const SweptColumn& column : axis) {
       const ProgramParameter& parameter = session.program.parameters[column.parameter];
-      AxisColumnI one{parameter.name, std::nullopt, parameter.unit, column.values};
+      AxisColumnI one{parameter.name, std::nullopt, parameter.unit, column.values, column.span};
       const auto row = session.parameter_rows.find(column.parameter);
       if (row != session.parameter_rows.end()) one.index = row->second;
       const bool used = parameter.count ? session.counts_used.contains(parameter.name)

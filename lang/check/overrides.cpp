@@ -27,6 +27,7 @@ Setting show_setting(Program& program, const std::string& name, const std::strin
 /// The value of a setting as a module: read as `let v = TEXT`, with the same places as the option.
 std::optional<std::uint32_t> add_setting(Program& program, const std::string& name, const std::string& text, Diagnostics& diagnostics) {
   const Setting setting = show_setting(program, name, text);
+  program.settings[name] = {setting.file.id, setting.name.begin, setting.value.end};
   const std::size_t errors = diagnostics.error_count();
   SourceFile read = setting.file;
   read.text = "let v" + std::string(setting.value.begin - 6, ' ') + "=" + text;
@@ -94,18 +95,18 @@ Overrides read_overrides(Program& program, const std::vector<std::pair<std::stri
 
 namespace {
 
-bool is_swept(const Instance& instance, const std::string& parameter) {
+const AxisColumnI* sweep_of(const Instance& instance, const std::string& parameter) {
   for (const AxisI& axis : instance.axes) {
     for (const AxisColumnI& column : axis.columns) {
-      if (column.parameter == parameter) return true;
+      if (column.parameter == parameter) return &column;
     }
   }
-  return false;
+  return nullptr;
 }
 
 /// True if another value would change something: a sweep would put its own values in its place.
 bool is_used(const Instance& instance, const std::string& parameter) {
-  if (is_swept(instance, parameter)) return false;
+  if (sweep_of(instance, parameter) != nullptr) return false;
   if (std::find(instance.counts.begin(), instance.counts.end(), parameter) != instance.counts.end()) return true;
   const auto live = live_parameters(instance);
   return std::any_of(live.begin(), live.end(),
@@ -121,10 +122,17 @@ void check_overrides_used(const Program& program, const std::vector<Instance>& a
     const auto declared = std::find_if(program.parameters.begin(), program.parameters.end(),
                                        [&, &parameter = name](const ProgramParameter& p) { return p.name == parameter; });
     if (used || declared == program.parameters.end()) continue;
-    const bool swept = std::any_of(all.begin(), all.end(),
-                                   [&, &parameter = name](const Instance& i) { return is_swept(i, parameter); });
-    if (swept) diagnostics.report(declared->span, diag::set_and_swept, name).remedy(fmt::format("take out `sweep {0}`, or leave `--set {0}` away", name));
-    else diagnostics.report(declared->span, diag::changes_nothing, name);
+    const auto typed = program.settings.find(name);
+    const Span place = typed == program.settings.end() ? declared->span : typed->second;
+    const AxisColumnI* swept = nullptr;
+    for (const Instance& instance : all) swept = swept == nullptr ? sweep_of(instance, name) : swept;
+    if (swept == nullptr) {
+      diagnostics.report(place, diag::changes_nothing, name).note(declared->span, "declared here");
+      continue;
+    }
+    diagnostics.report(place, diag::set_and_swept, name)
+        .remedy(fmt::format("take out `sweep {0}`, or leave `--set {0}` away", name))
+        .note(swept->span, "swept here");
   }
 }
 

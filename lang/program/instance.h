@@ -147,6 +147,7 @@ struct AxisColumnI {
   std::optional<std::uint32_t> index;  ///< Row of `parameters`; none for a count.
   Shown unit;
   std::vector<double> values;
+  Span span;  ///< The parameter's name in the sweep.
 };
 struct AxisI {
   std::vector<AxisColumnI> columns;

@@ -73,6 +73,7 @@ struct Program {
   std::vector<ProgramLaw> laws;
   std::vector<ProgramPart> parts;
   std::vector<ProgramExperiment> experiments;  ///< Of the main file, in its order.
+  std::map<std::string, Span> settings;        ///< `--set NAME=VALUE` as given, by name: for messages.
   Diagnostics told;                            ///< Warnings and remarks of checking it.
   Graph graph;                                 ///< Of the laws.
   std::vector<std::string> graph_parameters;   ///< Names of its parameter nodes.

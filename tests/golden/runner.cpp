@@ -3,6 +3,8 @@
 #include <algorithm>
 #include <fmt/format.h>
 
+#include <catch2/catch.hpp>
+
 namespace tarn::golden {
 namespace {
 
@@ -36,6 +38,30 @@ std::string report(const Diagnostic& diagnostic, const SourceSet& sources, FileI
 
 }  // namespace
 
+Options options_of(std::string_view text) {
+  constexpr std::string_view kHead = "# options: ";
+  Options options;
+  if (!text.starts_with(kHead)) return options;
+  std::string_view rest = text.substr(0, text.find('\n')).substr(kHead.size());
+  while (!rest.empty()) {
+    const std::size_t end = std::min(rest.find(" --"), rest.size());
+    const std::string_view option = rest.substr(0, end);
+    const std::size_t blank = option.find(' ');
+    const std::string_view name = option.substr(0, blank);
+    const std::string_view value = blank == std::string_view::npos ? "" : option.substr(blank + 1);
+    const std::size_t equals = value.find('=');
+    if (name == "--set" && equals != std::string_view::npos) {
+      options.settings.emplace_back(value.substr(0, equals), value.substr(equals + 1));
+    } else if (name == "--experiment") {
+      options.experiment = value;
+    } else {
+      FAIL("a golden case has no such option: " << option);
+    }
+    rest.remove_prefix(std::min(end + 1, rest.size()));
+  }
+  return options;
+}
+
 std::string strip(std::string_view text) {
   std::string kept;
   for (const std::string_view line : lines_of(text)) {
@@ -49,7 +75,7 @@ std::string annotate(const std::string& name, const std::string& text, const std
   Diagnostics diagnostics;
   Modules modules = load_text(name, text, folder, {standard_library(), {}}, diagnostics);
   const FileId main = modules.modules.front().ast.file;
-  const SourceSet sources = stage.run(std::move(modules), diagnostics);
+  const SourceSet sources = stage.run(std::move(modules), options_of(text), diagnostics);
   const std::vector<std::string_view> lines = lines_of(text);
   std::vector<std::string> after(lines.size() + 1);
   for (const Diagnostic& diagnostic : in_text_order(diagnostics)) {

@@ -4,10 +4,15 @@
 ///     parameter ta : time = 3 GHz
 ///     #! 23-27 error[dimension_mismatch]: expected a time, found a frequency: 3 GHz
 ///     #!   remedy: ...
+///
+/// A case whose first line is `# options: ...` is read as if the program had been given them:
+///
+///     # options: --set ta=5 us --experiment speed
 
 #include <filesystem>
 #include <string>
 #include <string_view>
+#include <utility>
 #include <vector>
 
 #include "lang/diagnostics/diagnostics.h"
@@ -15,11 +20,20 @@
 
 namespace tarn::golden {
 
+/// What the first line of a case asks for.
+struct Options {
+  std::vector<std::pair<std::string, std::string>> settings;  ///< `--set NAME=VALUE`, in order.
+  std::string experiment;                                     ///< Empty: all.
+};
+
+/// Options of the first line; fails the test on one that is not known.
+Options options_of(std::string_view text);
+
 /// What is run on the cases of a folder below tests/golden, after loading and parsing.
 /// Gives the texts back, for the places of the diagnostics.
 struct Stage {
   std::string_view folder;
-  SourceSet (*run)(Modules modules, Diagnostics& diagnostics);
+  SourceSet (*run)(Modules modules, const Options& options, Diagnostics& diagnostics);
 };
 
 /// All stages; a new phase adds its row in stages.cpp.
