@@ -32,21 +32,19 @@ class DaviesTables {
   /// `baths` has one entry for every coupling. Tables are kept while there is `memory`; none: all of them.
   DaviesTables(std::shared_ptr<const Track<Scalar>> track, std::vector<BathFunctions> baths,
                std::shared_ptr<MemoryBudget> memory = {});
-  ~DaviesTables();
-  DaviesTables(const DaviesTables&) = delete;
-  DaviesTables& operator=(const DaviesTables&) = delete;
 
   const Track<Scalar>& track() const { return *track_; }
   std::span<const BathFunctions> baths() const { return baths_; }
-  /// One table for each step of `steps`, which are those of track().stretch(interval, depth).
-  std::shared_ptr<const std::vector<DaviesTable>> of_steps(std::size_t interval, int depth, const Steps<Scalar>& steps) const;
+  /// One table for each step of `steps`, which are those of track().stretch(interval, depth). Null if `interrupted`
+  /// before they were made.
+  std::shared_ptr<const std::vector<DaviesTable>> of_steps(std::size_t interval, int depth, const Steps<Scalar>& steps,
+                                                           const Interrupted& interrupted = {}) const;
 
  private:
-  struct Cache;
+  using Kept = KeptByDepth<std::vector<DaviesTable>, Track<Scalar>::kMaxDepth>;
   std::shared_ptr<const Track<Scalar>> track_;
   std::vector<BathFunctions> baths_;
-  std::shared_ptr<MemoryBudget> memory_;
-  std::vector<std::unique_ptr<Cache>> cache_;
+  std::vector<std::unique_ptr<Kept>> kept_;  ///< Of each base interval.
 };
 
 /// rate (L rho L^dagger - {L^dagger L, rho}/2) as written, beside the baths.

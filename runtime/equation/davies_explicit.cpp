@@ -81,16 +81,19 @@ constexpr std::array<double, 7> kError{71.0 / 57600, 0, -71.0 / 16695, 71.0 / 19
 template <class Scalar>
 class Stepper {
  public:
-  Stepper(Generator<Scalar>& generator, double tolerance) : generator_(generator), tolerance_(tolerance) {}
+  Stepper(Generator<Scalar>& generator, double tolerance, const Interrupted& interrupted)
+      : generator_(generator), tolerance_(tolerance), interrupted_(interrupted) {}
 
-  /// From t to `end`; false if the step falls below rounding.
-  bool advance(double& t, double end, Density& state, Counters& counters) {
+  /// From t to `end`. Errors: `step_underflow`, `interrupted`.
+  std::optional<RunError> advance(double& t, double end, Density& state, Counters& counters) {
     if (step_ == 0) step_ = 0.1 / std::max(generator_.width(), 1e-300);
     while (t < end) {
       const bool last = t + step_ >= end;
       const double h = last ? end - t : step_;
-      if (t + h == t && !last) return false;
-      const double error = attempt(t, h, state) / tolerance_;
+      if (t + h == t && !last) return RunError{"step_underflow", "the explicit integrator's step became too small"};
+      const std::optional<double> off = attempt(t, h, state);
+      if (!off) return RunError{"interrupted", "stopped before the end"};
+      const double error = *off / tolerance_;
       const double factor = std::clamp(0.9 * std::pow(std::max(error, 1e-10), -0.2), 0.2, 4.0);
       if (error > 1) {
         step_ = h * factor;
@@ -102,12 +105,14 @@ class Stepper {
       ++counters.steps;
       if (!last || factor < 1) step_ = h * factor;
     }
-    return true;
+    return std::nullopt;
   }
 
  private:
-  double attempt(double t, double h, const Density& state) {
+  /// The error of a step, whose end is then in trial_; none if interrupted.
+  std::optional<double> attempt(double t, double h, const Density& state) {
     for (std::size_t stage = 0; stage < 7; ++stage) {
+      if (interrupted_ && interrupted_()) return std::nullopt;
       trial_ = state;
       for (std::size_t k = 0; k < stage; ++k)
         if (kStages[stage][k] != 0) trial_ += h * kStages[stage][k] * slope_[k];
@@ -120,6 +125,7 @@ class Stepper {
 
   Generator<Scalar>& generator_;
   double tolerance_, step_ = 0;
+  const Interrupted& interrupted_;
   Density trial_;
   std::array<Density, 7> slope_;
 };
@@ -168,10 +174,9 @@ std::optional<RunError> integrate_explicitly(const ExplicitSegment<Scalar>& task
     return std::nullopt;
   }
   if (phase > options.max_explicit_phase) return RunError{"too_much_phase", "an explicit integration of this pace would take too long"};
-  Stepper<Scalar> stepper(generator, tolerance);
+  Stepper<Scalar> stepper(generator, tolerance, options.interrupted);
   for (const double time : times) {
-    if (options.interrupted && options.interrupted()) return RunError{"interrupted", "stopped before the end"};
-    if (!stepper.advance(t, time, state, counters)) return RunError{"step_underflow", "the explicit integrator's step became too small"};
+    if (const auto error = stepper.advance(t, time, state, counters)) return error;
     visit(t, state);
   }
   counters.evaluations += generator.evaluations;

@@ -65,6 +65,14 @@ class Walk {
     if (vectors.cols() < vectors.rows()) pass_.leakage += std::max(0.0, std::real(state.trace() - rho_.trace()));
   }
 
+  /// Asked before every step; the walk fails with it.
+  bool stopped() {
+    if (failure_) return true;
+    if (options_.interrupted && options_.interrupted()) fail_as_interrupted();
+    return failure_.has_value();
+  }
+  void fail_as_interrupted() { failure_ = RunError{"interrupted", "stopped before the end"}; }
+
   bool wanted_before(double t) const { return next_ < run_.times.size() && run_.times[next_] < t; }
 
   /// Leaves the present state for every time up to t.
@@ -84,6 +92,7 @@ class Walk {
       t = later;
     };
     while (wanted_before(segment.t1)) {
+      if (stopped()) return;
       advance_to(run_.times[next_]);
       emit_until(t);
     }
@@ -94,14 +103,11 @@ class Walk {
 
   void ramp(const Segment& segment) {
     for (const Piece& piece : pieces(segment)) {
-      if (options_.interrupted && options_.interrupted()) {
-        failure_ = RunError{"interrupted", "stopped before the end"};
-        return;
-      }
       if (piece.whole)
         cached_piece(piece);
       else
         local_piece(piece);
+      if (failure_) return;
     }
     emit_until(segment.t1);
   }
@@ -168,14 +174,17 @@ class Walk {
 
   void cached_piece(const Piece& piece) {
     const int depth = depth_of(piece);
-    const Stretch<Scalar> stretch = track_.stretch(piece.interval, depth);
-    const auto tables = tables_.of_steps(piece.interval, depth, *stretch.steps);
+    const Stretch<Scalar> stretch = track_.stretch(piece.interval, depth, options_.interrupted);
+    if (!stretch.steps) return fail_as_interrupted();
+    const auto tables = tables_.of_steps(piece.interval, depth, *stretch.steps, options_.interrupted);
+    if (!tables) return fail_as_interrupted();
     const Steps<Scalar>& steps = *stretch.steps;
     const auto& frames = stretch.frames;
     const bool backward = piece.s1 < piece.s0;
     const std::size_t count = steps.size();
     change_basis(*(backward ? frames.back() : frames.front()));
     for (std::size_t k = 0; k < count; ++k) {
+      if (stopped()) return;
       const std::size_t at = backward ? count - 1 - k : k;
       const double t0 = k == 0 ? piece.t0 : between(piece, k, count), t1 = k + 1 == count ? piece.t1 : between(piece, k + 1, count);
       samples_within(*frames[backward ? at + 1 : at], piece, t0, t1);
@@ -205,6 +214,7 @@ class Walk {
     const int depth = std::max(0, depth_of(piece) - static_cast<int>(std::floor(-std::log2(part))));
     const std::size_t count = std::size_t{1} << depth;
     for (std::size_t k = 0; k < count; ++k) {
+      if (stopped()) return;
       const double t0 = k == 0 ? piece.t0 : between(piece, k, count), t1 = k + 1 == count ? piece.t1 : between(piece, k + 1, count);
       const double s1 = k + 1 == count ? piece.s1 : piece.s0 + (piece.s1 - piece.s0) * static_cast<double>(k + 1) / static_cast<double>(count);
       samples_within(frame_, piece, t0, t1);
@@ -241,6 +251,7 @@ class Walk {
         emit_at(start, t0);
         continue;
       }
+      if (stopped()) return;
       const Eigen::MatrixXcd kept = rho_;
       const double unresolved = unresolved_;
       const double s = piece.s0 + (piece.s1 - piece.s0) * (t - piece.t0) / (piece.t1 - piece.t0);
@@ -266,11 +277,9 @@ class Walk {
   /// What finer passes share: the exchange through admixtures that no step resolves, the drift of the trace
   /// where no level is left out, and of coherences the rounding of the phases they have added up.
   double floor_at(double t, const Density& state) const {
-    double drift = 0, coherence = 0;
+    double drift = 0;
     if (track_.levels() == track_.model().dimension) drift = std::abs(state.trace() - run_.initial.trace());
-    for (Eigen::Index b = 0; b < rho_.cols(); ++b)
-      for (Eigen::Index a = 0; a < b; ++a) coherence = std::max(coherence, std::abs(rho_(a, b)));
-    return kOfExchange * unresolved_ + drift + std::numeric_limits<double>::epsilon() * track_.width() * t * coherence;
+    return kOfExchange * unresolved_ + drift + std::numeric_limits<double>::epsilon() * track_.width() * t * largest_coherence(rho_);
   }
 
   void count_outflow(const DaviesTable& table, double h) { pass_.leakage += h * table.outflow.dot(rho_.diagonal().real()); }

@@ -2,7 +2,18 @@
 
 #include <fmt/format.h>
 
+#include <algorithm>
+#include <complex>
+
 namespace tarn::runtime {
+
+double largest_coherence(const Density& rho) {
+  double most = 0;
+  for (Eigen::Index b = 0; b < rho.cols(); ++b) {
+    for (Eigen::Index a = 0; a < b; ++a) most = std::max(most, std::abs(rho(a, b)));
+  }
+  return most;
+}
 
 RunError run_error(const Failure& failure) {
   switch (failure.kind) {

@@ -31,6 +31,9 @@ struct RunError {
 /// valid during the call only.
 using Visit = std::function<void(std::size_t index, const State& state)>;
 
+/// The largest |rho(a, b)| beside the diagonal of a Hermitian matrix, in the basis it is given in.
+double largest_coherence(const Density& rho);
+
 /// The error of a run that an integrator gave up.
 RunError run_error(const Failure& failure);
 

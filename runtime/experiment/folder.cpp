@@ -4,6 +4,7 @@
 #include <unistd.h>
 
 #include <array>
+#include <cstdlib>
 #include <fstream>
 #include <nlohmann/json.hpp>
 #include <sstream>
@@ -97,12 +98,16 @@ std::string differences_of(const ordered_json& there, const ordered_json& here) 
   return all.size() > kMost ? fmt::format("{}; and {} more", text, all.size() - kMost) : text;
 }
 
-/// False where the folder cannot be made or nothing can be written into it.
+/// False where the folder cannot be made or nothing can be written into it. Whether a new one can be made does not
+/// show in the permissions on every kind of file system: one is made and taken away again.
 bool may_be_written(const fs::path& folder) {
   std::error_code failure;
   fs::path place = fs::absolute(folder, failure);
   while (!fs::exists(place, failure) && place.has_relative_path()) place = place.parent_path();
-  return fs::is_directory(place, failure) && access(place.c_str(), W_OK | X_OK) == 0;
+  if (!fs::is_directory(place, failure) || access(place.c_str(), W_OK | X_OK) != 0) return false;
+  if (fs::exists(folder, failure)) return true;
+  std::string trial = (place / ".tarn-XXXXXX").string();
+  return mkdtemp(trial.data()) != nullptr && rmdir(trial.c_str()) == 0;
 }
 
 Result<Done, FolderError> check_key(const fs::path& folder, const FolderContents& contents, const ordered_json& key) {

@@ -155,11 +155,11 @@ class Space {
 
 /// Highest minus lowest Ritz value of a short Lanczos run: a lower estimate, off by a few percent.
 template <class Scalar>
-double estimate_width(Index dimension, const HermitianProduct& product, Noise& noise) {
+double estimate_width(Index dimension, const HermitianProduct& product, Noise& noise, const Interrupted& interrupted) {
   const Index steps = std::min<Index>(24, dimension);
   Space<Scalar> space(dimension, steps, product);
   if (!space.add(noise.vector<Scalar>(dimension))) return 0;
-  for (Index i = 1; i < steps; ++i) {
+  for (Index i = 1; i < steps && !(interrupted && interrupted()); ++i) {
     space.solve();
     // In a space grown from one vector all residuals point the same way, so this is a Lanczos step.
     if (!space.add(space.residual(0))) break;
@@ -174,6 +174,9 @@ struct Search {
   Index count;
   double accepted;  ///< Residual norm that counts as converged.
   Noise& noise;
+  const Interrupted& interrupted;
+
+  bool stopped() const { return interrupted && interrupted(); }
 };
 
 /// Residual a solution must reach: the wanted ones the accepted one, the guard above them only so
@@ -185,7 +188,8 @@ double demanded(const Search<Scalar>& search, Index k) {
   return std::max(search.accepted, 0.1 * (values[k] - values[search.count - 1]));
 }
 
-/// Grows the space by the residuals of the lowest open solutions. Returns how many are open.
+/// Grows the space by the residuals of the lowest open solutions. Returns how many are open. Ends early where
+/// the search is stopped.
 template <class Scalar>
 Index expand(const Search<Scalar>& search) {
   Space<Scalar>& space = search.space;
@@ -201,25 +205,31 @@ Index expand(const Search<Scalar>& search) {
   const Index block = static_cast<Index>(additions.size());
   if (space.capacity() - space.size() < block) space.restart(search.count + kBlock);
   Index first = space.size();
-  for (Vector<Scalar>& addition : additions) space.add(std::move(addition));
+  for (Vector<Scalar>& addition : additions) {
+    if (search.stopped()) return open;
+    space.add(std::move(addition));
+  }
   if (space.size() == first) space.add(search.noise.template vector<Scalar>(space.vector_size()));
   // A few more powers of H on the new vectors before the next solution of the small problem.
   for (int power = 1; power < kBlockPowers && space.capacity() - space.size() >= block; ++power) {
     const Index last = space.size();
-    for (Index k = first; k < last; ++k) space.add(space.image(k));
+    for (Index k = first; k < last; ++k) {
+      if (search.stopped()) return open;
+      space.add(space.image(k));
+    }
     first = last;
   }
   return open;
 }
 
 template <class Scalar>
-Result<Done, RunError> converge(const Search<Scalar>& search, const Interrupted& interrupted) {
+Result<Done, RunError> converge(const Search<Scalar>& search) {
   const Index limit = search.space.products() + kProductsPerLevel * (search.count + 1);
   while (search.space.products() < limit) {
+    if (search.stopped()) return Unexpected{RunError{"interrupted", "stopped before the end"}};
     search.space.solve();
     if (!search.space.values().allFinite()) return Unexpected{RunError{"not_finite", "a level is not finite"}};
     if (expand(search) == 0) return Done{};
-    if (interrupted && interrupted()) return Unexpected{RunError{"interrupted", "interrupted"}};
   }
   return Unexpected{RunError{"levels_not_found", "the lowest levels could not be told apart in time"}};
 }
@@ -241,20 +251,20 @@ template <class Scalar>
 Result<Levels, RunError> search_levels(Index dimension, Index count, const HermitianProduct& product,
                                        const Matrix<Scalar>& start, const Interrupted& interrupted) {
   Noise noise;
-  const double width = estimate_width<Scalar>(dimension, product, noise);
+  const double width = estimate_width<Scalar>(dimension, product, noise, interrupted);
   // Two stored vectors a column: large systems get few columns.
   const Index roomy = dimension < kLargeDimension ? std::max<Index>(3 * count + 4 * kBlock, 48) : 2 * count + 4 * kBlock;
   const Index capacity = std::min(dimension, roomy);
   Space<Scalar> space(dimension, capacity, product);
   for (Index k = 0; k < std::min(start.cols(), count + kBlock); ++k) space.add(start.col(k));
   for (Index k = 0; k < kBlock + 1; ++k) space.add(noise.vector<Scalar>(dimension));
-  const Search<Scalar> search{space, count, std::max(kResidual * width, 1e-300), noise};
+  const Search<Scalar> search{space, count, std::max(kResidual * width, 1e-300), noise, interrupted};
   while (space.size() <= count) {
     if (!space.add(noise.vector<Scalar>(dimension))) break;
   }
   // Twice: the second round starts from the levels found and fresh vectors.
   for (int round = 0; round < 2; ++round) {
-    const auto done = converge(search, interrupted);
+    const auto done = converge(search);
     if (!done) return Unexpected{done.error()};
     if (round == 1) break;
     space.restart(count);

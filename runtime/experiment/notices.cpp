@@ -74,7 +74,9 @@ void add_ending(const RunReport& report, std::vector<Notice>& notices) {
   notices.push_back({interrupted ? "interrupted" : "out_of_time",
                      fmt::format("{}: {} of {} points are done", interrupted ? "interrupted" : "out of time",
                                  report.points.size(), report.total),
-                     "the same command goes on from here", Gravity::error});
+                     !interrupted && report.fresh == 0 ? "the same command, given again, takes the time that one point needs"
+                                                       : "the same command goes on from here",
+                     Gravity::error});
 }
 
 /// Qubits of a long chain leave out the same thing each: the first and how many more.

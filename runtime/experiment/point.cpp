@@ -20,14 +20,6 @@ constexpr std::size_t kKeptAmplitudes = std::size_t{1} << 24;
 constexpr double kEpsilon = std::numeric_limits<double>::epsilon();
 constexpr double kFirstTolerance = 0.3;  ///< Of the tolerance asked: most points need two runs then.
 
-double largest_coherence(const Density& rho) {
-  double most = 0;
-  for (Eigen::Index b = 0; b < rho.cols(); ++b) {
-    for (Eigen::Index a = 0; a < b; ++a) most = std::max(most, std::abs(rho(a, b)));
-  }
-  return most;
-}
-
 bool any_reading(const Plan& plan, bool (*holds)(const Reading&)) {
   for (const Observable& observable : plan.observables) {
     for (const std::uint32_t r : observable.readings) {
@@ -39,9 +31,9 @@ bool any_reading(const Plan& plan, bool (*holds)(const Reading&)) {
 
 }  // namespace
 
-PointTask::PointTask(const PlanModel& model, std::uint64_t index, Interrupted interrupted)
-    : model_(model), plan_(model.plan()), functions_(model.functions_at(index)),
-      levels_(plan_, model.kernel(), functions_, std::move(interrupted)) {
+PointTask::PointTask(const PlanModel& model, std::uint64_t index, Watch watch)
+    : model_(model), plan_(model.plan()), watch_(std::move(watch)), functions_(model.functions_at(index)),
+      levels_(plan_, model.kernel(), functions_, watch_.interrupted) {
   outcome_.index = index;
   const auto prepared = prepare();
   if (!prepared) fail(prepared.error());
@@ -129,23 +121,23 @@ Result<Done, RunError> PointTask::prepare_observations() {
     auto readings = make_readings(observations_[i]);
     if (!readings) return Unexpected{readings.error()};
     norms_[i] = readings->norms();
-    for (const std::string& text : readings->remarks()) remark_first(text);
+    note_lacking(*readings, observations_[i].at.s);
     for (const std::uint32_t o : observations_[i].observables) places_[o].push_back(i);
     const auto width = find_width(observations_[i]);
     if (!width) return Unexpected{width.error()};
     widths_[i] = *width;
     const std::size_t kept = observations_.size() << plan_.chip.qubits.size();
     if (kept <= kKeptAmplitudes) readings_[i] = std::move(readings).value();
+    if (plan_.scan && watch_.share) watch_.share(static_cast<double>(i + 1) / static_cast<double>(observations_.size()));
   }
   return Done{};
 }
 
-/// One remark for what is said at every instant after: they differ in s, behind the bracket.
-void PointTask::remark_first(const std::string& text) {
-  const std::string said = text.substr(0, text.rfind(" ("));
-  const bool known = std::any_of(outcome_.remarks.begin(), outcome_.remarks.end(),
-                                 [&](const std::string& other) { return other.starts_with(said); });
-  if (!known) remark(text);
+/// What holds at many instants is said at the first.
+void PointTask::note_lacking(const InstantReadings& readings, double s) {
+  for (const std::string& why : readings.lacking()) {
+    if (lacking_.insert(why).second) remark(fmt::format("{} (first at s = {:.4g})", why, s));
+  }
 }
 
 Result<double, RunError> PointTask::find_width(const Observation& observation) {
@@ -159,6 +151,7 @@ Result<double, RunError> PointTask::find_width(const Observation& observation) {
 }
 
 Result<InstantReadings, RunError> PointTask::make_readings(const Observation& observation) {
+  if (watch_.interrupted && watch_.interrupted()) return Unexpected{RunError{"interrupted", "stopped before the end"}};
   return InstantReadings::make(plan_, readings_at(plan_, observation), observation.at, functions_, levels_, settings_,
                                target_ ? &*target_ : nullptr);
 }

@@ -2,9 +2,12 @@
 /// \file One grid point from its parameters to its answers. The propagation itself is done by
 /// others (advance.h), at the tolerance this asks for, as often as it asks.
 
+#include <functional>
 #include <memory>
 #include <optional>
+#include <set>
 #include <span>
+#include <string>
 #include <vector>
 
 #include "runtime/experiment/accuracy.h"
@@ -14,11 +17,17 @@
 
 namespace tarn::runtime {
 
+/// Who looks on while a point is run. Both may be empty.
+struct Watch {
+  Interrupted interrupted;
+  std::function<void(double)> share;  ///< Told what share of a scan is done, place by place.
+};
+
 class PointTask {
  public:
   /// Works out pace, observations, levels and the state at the beginning. What fails is in the
   /// outcome.
-  PointTask(const PlanModel& model, std::uint64_t index, Interrupted interrupted);
+  PointTask(const PlanModel& model, std::uint64_t index, Watch watch);
   PointTask(const PointTask&) = delete;
   PointTask& operator=(const PointTask&) = delete;
 
@@ -60,7 +69,7 @@ class PointTask {
   Result<Done, RunError> prepare();
   Result<Done, RunError> prepare_observations();
   void note_held_offsets();
-  void remark_first(const std::string& text);
+  void note_lacking(const InstantReadings& readings, double s);
   Result<InstantReadings, RunError> make_readings(const Observation& observation);
   const InstantReadings* readings_of(std::size_t observation);
   double largest_phase() const;
@@ -75,6 +84,7 @@ class PointTask {
 
   const PlanModel& model_;
   const Plan& plan_;
+  Watch watch_;
   Functions functions_;
   ChipLevels levels_;
   std::vector<double> settings_;
@@ -83,6 +93,7 @@ class PointTask {
   std::vector<Observation> observations_;
   std::vector<std::vector<std::size_t>> at_time_;  ///< Observations at each of times_.
   std::vector<std::optional<InstantReadings>> readings_;
+  std::set<std::string> lacking_;                  ///< Why readings had no value so far.
   std::vector<std::vector<double>> norms_;         ///< Of the readings, at each observation.
   std::vector<double> widths_;                     ///< Of the spectrum, where a tolerance asks for it.
   std::vector<std::vector<std::size_t>> places_;   ///< Observations of each observable.

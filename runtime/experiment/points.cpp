@@ -2,6 +2,7 @@
 
 #include <algorithm>
 #include <atomic>
+#include <chrono>
 #include <exception>
 #include <map>
 #include <memory>
@@ -16,6 +17,7 @@ namespace tarn::runtime {
 namespace {
 
 constexpr std::size_t kMostGroup = 8;
+constexpr std::chrono::milliseconds kBetweenShares{200};
 
 /// Points that run together, by their position in the list.
 using Group = std::vector<std::size_t>;
@@ -57,6 +59,7 @@ class Pool {
   void make_groups();
   void work();
   void run_group(const Group& group);
+  void note_share(double& noted, double share);
   bool stopped() const { return stop_ || (options_.interrupted && options_.interrupted()); }
 
   std::span<const PointItem> items_;
@@ -68,6 +71,8 @@ class Pool {
   std::atomic<bool> stop_ = false;
   std::mutex reporting_;
   std::size_t done_ = 0;
+  double shares_ = 0;  ///< Of points under way.
+  std::chrono::steady_clock::time_point told_ = std::chrono::steady_clock::now();
   std::exception_ptr failure_;
 };
 
@@ -108,26 +113,41 @@ void Pool::work() {
   }
 }
 
+/// The share of one point that is done; `noted` is what shares_ holds of it.
+void Pool::note_share(double& noted, double share) {
+  if (!options_.progress) return;
+  const std::scoped_lock lock(reporting_);
+  shares_ += share - noted;
+  noted = share;
+  const auto now = std::chrono::steady_clock::now();
+  if (now - told_ < kBetweenShares) return;
+  told_ = now;
+  options_.progress(done_, shares_);
+}
+
 void Pool::run_group(const Group& group) {
   const Interrupted interrupted = [this] { return stopped(); };
+  std::vector<double> shares(group.size(), 0.0);
   const PlanModel& model = *items_[group.front()].model;
   std::vector<std::unique_ptr<PointTask>> owned;
   std::vector<PointTask*> tasks;
   for (const std::size_t i : group) {
-    owned.push_back(std::make_unique<PointTask>(model, items_[i].index, interrupted));
+    const auto share = [this, &noted = shares[owned.size()]](double now) { note_share(noted, now); };
+    owned.push_back(std::make_unique<PointTask>(model, items_[i].index, Watch{interrupted, share}));
     tasks.push_back(owned.back().get());
   }
   if (model.plan().equation == Equation::davies) davies_.at(&model)->advance(*tasks.front(), interrupted);
   else advance(model, tasks, interrupted);
   const std::scoped_lock lock(reporting_);
   for (std::size_t k = 0; k < group.size(); ++k) {
+    shares_ -= shares[k];
     PointOutcome outcome = tasks[k]->take_outcome();
     if (outcome.error && outcome.error->kind == "interrupted") continue;
     mark_moments_never_met(model.plan(), outcome);
     outcomes_[group[k]] = std::move(outcome);
     ++done_;
   }
-  if (options_.progress) options_.progress(done_);
+  if (options_.progress) options_.progress(done_, shares_);
 }
 
 }  // namespace

@@ -20,8 +20,9 @@ struct PointItem {
 struct PointsOptions {
   std::size_t jobs = 1;
   Interrupted interrupted;  ///< May be empty.
-  /// Called after each group of points with how many are done, from one thread at a time; may be empty.
-  std::function<void(std::size_t done)> progress;
+  /// Called after each group of points with how many are done, and now and then while a scan goes on; `under_way`
+  /// adds up the shares of the scans that are not done. From one thread at a time; may be empty.
+  std::function<void(std::size_t done, double under_way)> progress;
 };
 
 /// Runs the points, which are in grid order. Points of one plan that fit the lanes of its kernel go

@@ -1,7 +1,5 @@
 #include "runtime/experiment/readings.h"
 
-#include <fmt/format.h>
-
 #include <algorithm>
 #include <cmath>
 #include <limits>
@@ -70,7 +68,7 @@ struct InstantReadings::Preparer {
   std::span<const double> coefficients;  ///< Of all operators at the instant.
   Prepared& prepared;                    ///< To be filled.
   double& norm;
-  std::vector<std::string>& remarks;
+  std::vector<std::string>& reasons;  ///< Why values are lacking.
 
   using Outcome = Result<Done, RunError>;
 
@@ -129,7 +127,7 @@ struct InstantReadings::Preparer {
 
   /// The reading has no value at this instant; others may.
   Outcome lacking(const std::string& why) const {
-    remarks.push_back(fmt::format("{} (first at s = {:.4g})", why, at.s));
+    reasons.push_back(why);
     return done(OfLevels{{std::numeric_limits<double>::quiet_NaN(), 0}}, 0);
   }
 
@@ -164,7 +162,7 @@ Result<InstantReadings, RunError> InstantReadings::make(const Plan& plan, std::s
   readings.norms_.assign(plan.readings.size(), 0.0);
   for (const std::uint32_t row : rows) {
     const Preparer prepare{plan, at, levels, settings, target, coefficients, readings.prepared_[row],
-                           readings.norms_[row], readings.remarks_};
+                           readings.norms_[row], readings.lacking_};
     const auto done = std::visit(prepare, plan.readings[row]);
     if (!done) return Unexpected{done.error()};
   }

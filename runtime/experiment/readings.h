@@ -43,8 +43,8 @@ class InstantReadings {
   /// What two states can differ by in each reading, roughly, where they differ by 1 in the mean of a Pauli
   /// word: the norm of its operator without the identity; 0 for readings of levels only.
   const std::vector<double>& norms() const { return norms_; }
-  /// Why readings have no value (NaN) at this instant.
-  const std::vector<std::string>& remarks() const { return remarks_; }
+  /// Why readings have no value (NaN) at this instant; the same words at every instant.
+  const std::vector<std::string>& lacking() const { return lacking_; }
 
  private:
   struct None {};
@@ -58,7 +58,7 @@ class InstantReadings {
 
   std::vector<Prepared> prepared_;
   std::vector<double> norms_;
-  std::vector<std::string> remarks_;
+  std::vector<std::string> lacking_;
   std::vector<WordTerm> probes_;
 };
 

@@ -1,6 +1,7 @@
 #include "runtime/experiment/run.h"
 
 #include <algorithm>
+#include <atomic>
 #include <chrono>
 #include <cmath>
 #include <map>
@@ -46,7 +47,9 @@ class Experiment {
 
  private:
   void keep(std::vector<PointOutcome> fresh);
-  bool out_of_time() const { return options_.time_limit && seconds_since(start_) > *options_.time_limit; }
+  bool out_of_time() const {
+    return options_.time_limit && !must_get_on_ && seconds_since(start_) > *options_.time_limit;
+  }
   std::filesystem::path folder() const { return *options_.out / report_.experiment; }
   ClaimRows claim_rows(const Plan& plan, std::shared_ptr<Functions> functions) const;
 
@@ -60,6 +63,7 @@ class Experiment {
   FolderContents contents_;
   std::map<std::uint64_t, PointOutcome> restored_;
   std::set<std::string> point_remarks_;
+  std::atomic<bool> must_get_on_ = false;  ///< A point has to be done, whatever the limit.
   RunReport report_;
 };
 
@@ -75,6 +79,8 @@ Result<Done, FolderError> Experiment::open_folder() {
 /// Points that an earlier run left in the folder; tables that cannot be read are computed anew.
 void Experiment::restore() {
   if (!contents_.contains("run.json")) return;
+  const Recorded recorded = read_record(contents_.at("run.json"));
+  must_get_on_ = recorded.stalled;
   ResultTables tables;
   for (const auto& [name, text] : contents_) {
     if (name == "run.json") continue;
@@ -97,7 +103,10 @@ void Experiment::restore() {
     if (!complete_unlisted(item.model->plan(), functions, found->second)) restored_.erase(found);
   }
   if (restored_.empty()) return;
-  const Recorded recorded = read_record(contents_.at("run.json"));
+  for (auto& [index, outcome] : restored_) {
+    const auto place = recorded.places.find(index);
+    if (outcome.error && place != recorded.places.end()) outcome.error->place = place->second;
+  }
   report_.counters = recorded.counters;
   report_.leakage = recorded.leakage;
   point_remarks_.insert(recorded.remarks.begin(), recorded.remarks.end());
@@ -129,17 +138,18 @@ void Experiment::run() {
   points.jobs = std::max<std::size_t>(1, options_.jobs);
   points.interrupted = [this] { return (options_.interrupted && options_.interrupted()) || out_of_time(); };
   const Clock::time_point begun = Clock::now();
-  points.progress = [&, this](std::size_t done) {
+  points.progress = [&, this](std::size_t done, double under_way) {
+    if (done > 0) must_get_on_ = false;
     if (!options_.progress) return;
-    const double left = done == 0 ? NAN
-                                  : seconds_since(begun) / static_cast<double>(done) *
-                                        static_cast<double>(missing.size() - done);
+    const double sum = static_cast<double>(done) + under_way;
+    const double left = sum > 0 ? seconds_since(begun) / sum * (static_cast<double>(missing.size()) - sum) : NAN;
     options_.progress(report_.reused + done, report_.total, left);
   };
   std::vector<PointOutcome> fresh = run_points(missing, points);
   if (fresh.size() < missing.size()) {
     report_.ending = options_.interrupted && options_.interrupted() ? Ending::interrupted : Ending::out_of_time;
   }
+  report_.fresh = fresh.size();
   keep(std::move(fresh));
 }
 

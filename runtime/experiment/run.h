@@ -40,7 +40,8 @@ struct Provenance {
   std::string host;         ///< Stands under `machine`: no part of the key.
 };
 
-/// Points that are done, of how many, and the seconds that the rest may take (NaN: unknown yet).
+/// Points that are done, of how many, and the seconds that the rest may take (NaN: unknown yet). Called
+/// after each group of points, and now and then while a scan goes on.
 using Progress = std::function<void(std::uint64_t done, std::uint64_t total, double seconds_left)>;
 
 struct RunOptions {
@@ -51,7 +52,9 @@ struct RunOptions {
   std::function<bool()> interrupted;          ///< Asked often, from several threads.
   Progress progress;                          ///< Called from one thread at a time.
   Provenance provenance;
-  std::optional<double> time_limit;           ///< Seconds from the call.
+  /// Seconds from the call. Where the last run into this folder ran out of time before any point was done,
+  /// this one goes on until one is: who comes again gets on.
+  std::optional<double> time_limit;
 };
 
 enum class Ending : std::uint8_t { finished, interrupted, out_of_time };
@@ -65,6 +68,7 @@ struct RunReport {
   std::vector<const Plan*> plan_of;           ///< The plan of each; points into the argument of run_experiment.
   const Plan* any_plan = nullptr;             ///< The first plan: names and axes are those of all.
   std::uint64_t reused = 0;                   ///< Read from the folder.
+  std::uint64_t fresh = 0;                    ///< Computed by this run.
   std::uint64_t failed = 0, loose = 0;        ///< Failed points; answers that are marked.
   std::vector<ClaimReport> claims;
   std::vector<std::string> left_out, remarks;

@@ -1,8 +1,10 @@
 #include "runtime/experiment/run_record.h"
 
-#include <cmath>
+#include <array>
 #include <chrono>
+#include <cmath>
 #include <ctime>
+#include <map>
 #include <nlohmann/json.hpp>
 
 #include "runtime/experiment/grid.h"
@@ -77,6 +79,33 @@ std::string now_text() {
   return std::string(text, length);
 }
 
+/// The places of failed points, each once with the points it belongs to.
+ordered_json failures_record(const RunReport& report) {
+  std::vector<std::pair<Place, std::vector<std::uint64_t>>> places;  // in grid order
+  std::map<std::pair<std::string, std::array<std::uint32_t, 3>>, std::size_t> known;
+  for (const PointOutcome& point : report.points) {
+    if (!point.error || point.error->place == Place{}) continue;
+    const Place& at = point.error->place;
+    const auto [row, fresh] = known.try_emplace({at.file, {at.line, at.column, at.column_end}}, places.size());
+    if (fresh) places.push_back({at, {}});
+    places[row->second].second.push_back(point.index);
+  }
+  ordered_json record = ordered_json::array();
+  for (const auto& [at, points] : places) {
+    record.push_back({{"file", at.file}, {"line", at.line}, {"column", at.column}, {"column end", at.column_end}, {"points", points}});
+  }
+  return record;
+}
+
+std::map<std::uint64_t, Place> read_places(const ordered_json& record) {
+  std::map<std::uint64_t, Place> places;
+  for (const ordered_json& failure : record.value("failures", ordered_json::array())) {
+    const Place at{failure.value("file", ""), failure.value("line", 0u), failure.value("column", 0u), failure.value("column end", 0u)};
+    for (const std::uint64_t point : failure.value("points", std::vector<std::uint64_t>{})) places[point] = at;
+  }
+  return places;
+}
+
 }  // namespace
 
 ordered_json run_key(const Plan& plan, const RunOptions& options) {
@@ -111,6 +140,7 @@ std::string run_record(const RunReport& report, const ordered_json& key, const R
   ordered_json claims = ordered_json::array();
   for (const ClaimReport& claim : report.claims) claims.push_back(claim_record(claim, *report.any_plan));
   record["claims"] = claims;
+  record["failures"] = failures_record(report);
   record["left out"] = report.left_out;
   record["remarks"] = report.remarks;
   record["leakage"] = report.leakage;
@@ -120,7 +150,8 @@ std::string run_record(const RunReport& report, const ordered_json& key, const R
                        {"seconds", report.seconds},
                        {"jobs", options.jobs},
                        {"counters", counters_record(report.counters)},
-                       {"reused points", report.reused}};
+                       {"reused points", report.reused},
+                       {"computed points", report.fresh}};
   return record.dump(2) + "\n";
 }
 
@@ -136,6 +167,9 @@ Recorded read_record(const std::string& text) {
   recorded.counters.decompositions = found.value("decompositions", std::uint64_t{0});
   recorded.remarks = record.value("remarks", std::vector<std::string>{});
   recorded.leakage = record.value("leakage", 0.0);
+  recorded.places = read_places(record);
+  recorded.stalled = record.value("ending", "") == ending_name(Ending::out_of_time) &&
+                     record["machine"].value("computed points", std::uint64_t{1}) == 0;
   return recorded;
 }
 

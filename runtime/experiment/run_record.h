@@ -1,6 +1,8 @@
 #pragma once
 /// \file run.json: what was run, on what, and what came out.
 
+#include <cstdint>
+#include <map>
 #include <nlohmann/json_fwd.hpp>
 #include <string>
 
@@ -19,6 +21,8 @@ struct Recorded {
   Counters counters;
   std::vector<std::string> remarks;
   double leakage = 0;
+  std::map<std::uint64_t, Place> places;  ///< What is at fault, of failed points by grid index.
+  bool stalled = false;  ///< It ran out of time before a point was done.
 };
 Recorded read_record(const std::string& record);
 

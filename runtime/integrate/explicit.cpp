@@ -19,6 +19,8 @@ using pair853::kTable;
 constexpr std::size_t kState = 0, kFirstStage = 1, kNext = kFirstStage + pair853::kStages,
                       kArgument = kNext + 1, kRows = kArgument + 1;
 constexpr std::size_t kEndStage = 12;
+/// From so many doubles on, a stage takes a good part of a millisecond: it is asked before each whether to stop.
+constexpr std::size_t kLongStage = std::size_t{1} << 18;
 /// What the integral part of the control remembers of a step far better than needed: log(1e-4).
 constexpr double kLeastLogRatio = -9.2;
 /// Stages that only the interpolant needs.
@@ -71,9 +73,13 @@ std::vector<std::optional<Failure>> ExplicitIntegrator::run(const RightHandSide&
     refresh(f, tasks);
     follow_energy();
     choose_steps(tasks);
-    attempt(f);
-    judge(tasks);
-    interpolate(f, tasks, on_time);
+    bool goes_on = attempt(f, interrupted);
+    if (goes_on) judge(tasks);
+    goes_on = goes_on && interpolate(f, tasks, on_time, interrupted);
+    if (!goes_on) {
+      stop_all(FailureKind::interrupted);
+      break;
+    }
     advance(tasks, on_time);
   }
   settle_phases(tasks);
@@ -217,13 +223,21 @@ void ExplicitIntegrator::choose_steps(std::span<const LaneTask> tasks) {
   }
 }
 
-void ExplicitIntegrator::attempt(const RightHandSide& f) {
+bool ExplicitIntegrator::stops_within(const Interrupted& interrupted) const {
+  return length_ >= kLongStage && interrupted && interrupted();
+}
+
+/// False if asked to stop on the way.
+bool ExplicitIntegrator::attempt(const RightHandSide& f, const Interrupted& interrupted) {
   trials_ = Pack{};
   for (std::size_t l = 0; l < width_; ++l) trials_[l] = lanes_[l].trial;
   announce(f, std::span(kTable.c).subspan(1, pair853::kStepStages - 1));
-  for (std::size_t stage = 1; stage < pair853::kStepStages; ++stage)
+  for (std::size_t stage = 1; stage < pair853::kStepStages; ++stage) {
+    if (stops_within(interrupted)) return false;
     evaluate(f, stage, stage - 1, row(kArgument));
+  }
   evaluate(f, kEndStage, kEndStage - 2, row(kNext));
+  return true;
 }
 
 void ExplicitIntegrator::judge(std::span<const LaneTask> tasks) {
@@ -271,9 +285,10 @@ void ExplicitIntegrator::judge_lane(Lane& lane, double ratio, double shortest) {
   lane.step = std::max(lane.trial * shrink_after_failure(ratio), shortest);
 }
 
-/// Reports the requested times that lie inside the accepted steps, one for each lane in a round.
-void ExplicitIntegrator::interpolate(const RightHandSide& f, std::span<const LaneTask> tasks,
-                                     const OnTime& on_time) {
+/// Reports the requested times that lie inside the accepted steps, one for each lane in a round. False if asked to
+/// stop on the way.
+bool ExplicitIntegrator::interpolate(const RightHandSide& f, std::span<const LaneTask> tasks,
+                                     const OnTime& on_time, const Interrupted& interrupted) {
   const auto wanted = [&](std::size_t l) {
     const Lane& lane = lanes_[l];
     return lane.accepted && lane.next_time < tasks[l].times.size() &&
@@ -284,11 +299,12 @@ void ExplicitIntegrator::interpolate(const RightHandSide& f, std::span<const Lan
       if (wanted(l)) return true;
     return false;
   };
-  if (!any_wanted()) return;
+  if (!any_wanted()) return true;
   announce(f, std::span(kTable.c).subspan(kInterpolantStages.front(), kInterpolantStages.size()));
   for (const std::size_t stage : kInterpolantStages)
     evaluate(f, stage, stage - kInterpolantStages.front(), row(kArgument));
   while (any_wanted()) {
+    if (stops_within(interrupted)) return false;
     std::array<double, 8> x{};
     for (std::size_t l = 0; l < width_; ++l)
       if (wanted(l)) x[l] = (tasks[l].times[lanes_[l].next_time] - lanes_[l].t) / lanes_[l].trial;
@@ -302,6 +318,7 @@ void ExplicitIntegrator::interpolate(const RightHandSide& f, std::span<const Lan
     for (std::size_t l = 0; l < width_; ++l)
       if (wanted(l)) on_time(l, lanes_[l].next_time++, row(kArgument));
   }
+  return true;
 }
 
 /// argument = the interpolant at t + x trial, each lane at its own x.

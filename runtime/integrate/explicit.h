@@ -77,7 +77,7 @@ class ExplicitIntegrator {
   double* state() { return vectors_[0].data(); }
 
   /// One task and one answer a lane; an empty answer is success. Steps of an earlier run are the
-  /// first guess of the next.
+  /// first guess of the next. Whether to stop is asked before each step, of large systems before each stage.
   std::vector<std::optional<Failure>> run(const RightHandSide& f, std::span<const LaneTask> tasks,
                                           const OnTime& on_time, const Interrupted& interrupted);
 
@@ -113,10 +113,12 @@ class ExplicitIntegrator {
   const double* solution();
   void settle_phases(std::span<const LaneTask> tasks);
   void choose_steps(std::span<const LaneTask> tasks);
-  void attempt(const RightHandSide& f);
+  bool attempt(const RightHandSide& f, const Interrupted& interrupted);
   void judge(std::span<const LaneTask> tasks);
   void judge_lane(Lane& lane, double ratio, double shortest);
-  void interpolate(const RightHandSide& f, std::span<const LaneTask> tasks, const OnTime& on_time);
+  bool interpolate(const RightHandSide& f, std::span<const LaneTask> tasks, const OnTime& on_time,
+                   const Interrupted& interrupted);
+  bool stops_within(const Interrupted& interrupted) const;
   void combine_interpolant(const double* x);
   void advance(std::span<const LaneTask> tasks, const OnTime& on_time);
   void report_until(std::size_t l, const LaneTask& task, const OnTime& on_time);

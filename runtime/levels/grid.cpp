@@ -52,6 +52,7 @@ class Builder {
 
  private:
   double tolerance() const { return 1e-8 * grid_.width; }
+  bool stopped() const { return options_.interrupted && options_.interrupted(); }
   Frame<Scalar> solve(double s) const { return model_.solve(s, grid_.levels); }
   static bool cuts_manifold(const Frame<Scalar>& frame, double tolerance) {
     return frame.next - frame.energies[frame.energies.size() - 1] <= tolerance;
@@ -62,6 +63,7 @@ class Builder {
     std::vector<Frame<Scalar>> start;
     grid_.width = 0;
     for (const double s : initial_nodes(model_.breaks, options_)) {
+      if (stopped() && s != options_.s_min && s != options_.s_max) continue;
       start.push_back(solve(s));
       const auto& energies = start.back().energies;
       grid_.width = std::max(grid_.width, energies[energies.size() - 1] - energies[0]);
@@ -80,9 +82,9 @@ class Builder {
     while (!ahead.empty()) {
       const Frame<Scalar>& left = grid_.nodes.back();
       const double s_left = left.s, s_right = ahead.back().s;
-      const bool stopped = options_.interrupted && options_.interrupted();
-      const bool full = stopped || grid_.nodes.size() + ahead.size() > static_cast<std::size_t>(options_.max_intervals);
-      const bool coarse = stopped || too_coarse(left, ahead.back());
+      const bool ends = stopped();
+      const bool full = ends || grid_.nodes.size() + ahead.size() > static_cast<std::size_t>(options_.max_intervals);
+      const bool coarse = ends || too_coarse(left, ahead.back());
       if (coarse && full) grid_.resolved = false;
       if (coarse && !full && s_right - s_left > kShortest * range_) {
         ahead.push_back(solve(0.5 * (s_left + s_right)));

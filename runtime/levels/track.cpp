@@ -1,9 +1,7 @@
 #include "runtime/levels/track.h"
 
 #include <algorithm>
-#include <array>
 #include <complex>
-#include <mutex>
 
 #include "lang/support/check.h"
 #include "runtime/levels/grid.h"
@@ -12,14 +10,6 @@
 namespace tarn::runtime {
 
 using Complex = std::complex<double>;
-
-/// Of one base interval. Each depth is made as a whole, by one thread at a time.
-template <class Scalar>
-struct Track<Scalar>::Refinements {
-  std::mutex making;
-  std::array<std::shared_ptr<const Steps<Scalar>>, kMaxDepth + 1> depth;
-  std::size_t bytes = 0;
-};
 
 namespace {
 
@@ -63,37 +53,25 @@ StepFrames<Scalar> make_step(const LevelModel<Scalar>& model, const Frame<Scalar
 
 template <class Scalar>
 Track<Scalar>::Track(LevelModel<Scalar> model, const TrackOptions& options)
-    : model_(std::move(model)), memory_(options.memory) {
+    : model_(std::move(model)) {
   BaseGrid<Scalar> grid = base_grid<Scalar>(model_, options);
   levels_ = grid.levels;
   width_ = grid.width;
   resolved_ = grid.resolved;
   nodes_ = std::move(grid.nodes);
   for (const auto& frame : nodes_) energy_error_ = std::max(energy_error_, frame.residual);
-  for (std::size_t i = 0; i < intervals(); ++i) refinements_.push_back(std::make_unique<Refinements>());
+  for (std::size_t i = 0; i < intervals(); ++i) refinements_.push_back(std::make_unique<Refinements>(options.memory));
 }
 
 template <class Scalar>
-Track<Scalar>::~Track() {
-  if (!memory_) return;
-  for (const auto& refinements : refinements_) memory_->give_back(refinements->bytes);
-}
-
-template <class Scalar>
-Stretch<Scalar> Track<Scalar>::stretch(std::size_t interval, int depth) const {
+Stretch<Scalar> Track<Scalar>::stretch(std::size_t interval, int depth, const std::function<bool()>& interrupted) const {
   TARN_CHECK(depth >= 0 && depth <= kMaxDepth);
-  const std::scoped_lock lock(refinements_[interval]->making);
-  return find_or_make(interval, depth);
-}
-
-/// Precondition: the interval is locked.
-template <class Scalar>
-Stretch<Scalar> Track<Scalar>::find_or_make(std::size_t interval, int depth) const {
   Stretch<Scalar> stretch;
   if (depth == 0) {
     stretch.frames = {&nodes_[interval], &nodes_[interval + 1]};
   } else {
-    Stretch<Scalar> coarse = find_or_make(interval, depth - 1);
+    Stretch<Scalar> coarse = this->stretch(interval, depth - 1, interrupted);
+    if (!coarse.steps) return coarse;
     for (std::size_t k = 0; k < coarse.steps->size(); ++k) {
       stretch.frames.push_back(coarse.frames[k]);
       stretch.frames.push_back(&(*coarse.steps)[k].middle);
@@ -102,20 +80,20 @@ Stretch<Scalar> Track<Scalar>::find_or_make(std::size_t interval, int depth) con
     stretch.owners = std::move(coarse.owners);
     stretch.owners.push_back(std::move(coarse.steps));
   }
-  Refinements& refinements = *refinements_[interval];
-  auto& kept = refinements.depth[static_cast<std::size_t>(depth)];
-  stretch.steps = kept;
-  if (kept) return stretch;
+  stretch.steps = refinements_[interval]->get(
+      depth, [&] { return make_steps(stretch, interrupted); }, [](const Steps<Scalar>& steps) { return bytes_of(steps); });
+  return stretch;
+}
+
+template <class Scalar>
+std::optional<Steps<Scalar>> Track<Scalar>::make_steps(const Stretch<Scalar>& stretch, const std::function<bool()>& interrupted) const {
   Steps<Scalar> steps;
   steps.reserve(stretch.frames.size() - 1);
-  for (std::size_t k = 0; k + 1 < stretch.frames.size(); ++k)
+  for (std::size_t k = 0; k + 1 < stretch.frames.size(); ++k) {
+    if (interrupted && interrupted()) return std::nullopt;
     steps.push_back(make_step<Scalar>(model_, *stretch.frames[k], *stretch.frames[k + 1], tolerance()));
-  const std::size_t bytes = bytes_of(steps);
-  stretch.steps = std::make_shared<const Steps<Scalar>>(std::move(steps));
-  if (memory_ && !memory_->take(bytes)) return stretch;
-  refinements.bytes += bytes;
-  kept = stretch.steps;
-  return stretch;
+  }
+  return steps;
 }
 
 template <class Scalar>

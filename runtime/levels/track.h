@@ -11,11 +11,13 @@
 #include <cstddef>
 #include <functional>
 #include <memory>
+#include <optional>
 #include <vector>
 
 #include "runtime/levels/budget.h"
 #include "runtime/levels/family.h"
 #include "runtime/levels/groups.h"
+#include "runtime/levels/kept.h"
 #include "runtime/levels/link.h"
 
 namespace tarn::runtime {
@@ -66,10 +68,6 @@ class Track {
   static constexpr int kMaxDepth = 14;
 
   Track(LevelModel<Scalar> model, const TrackOptions& options);
-  ~Track();
-  Track(const Track&) = delete;
-  Track& operator=(const Track&) = delete;
-
   const LevelModel<Scalar>& model() const { return model_; }
   /// Levels kept: at least those asked for, enlarged where the cut would fall into a manifold.
   Eigen::Index levels() const { return levels_; }
@@ -85,24 +83,23 @@ class Track {
   std::size_t intervals() const { return nodes_.size() - 1; }
   const std::vector<Frame<Scalar>>& nodes() const { return nodes_; }
   /// The 2^depth equal steps of a base interval, whose first and last frame are nodes(); kept while there is memory,
-  /// else made anew each time.
-  Stretch<Scalar> stretch(std::size_t interval, int depth) const;
+  /// else made anew each time. Without steps if `interrupted` before they were made.
+  Stretch<Scalar> stretch(std::size_t interval, int depth, const std::function<bool()>& interrupted = {}) const;
   /// Levels at any s within the range; not cached. Energies ascend.
   Frame<Scalar> at(double s) const { return model_.solve(s, levels_); }
   /// Index of the base interval that holds s.
   std::size_t interval_of(double s) const;
 
  private:
-  struct Refinements;
-  Stretch<Scalar> find_or_make(std::size_t interval, int depth) const;
+  using Refinements = KeptByDepth<Steps<Scalar>, kMaxDepth>;
+  std::optional<Steps<Scalar>> make_steps(const Stretch<Scalar>& stretch, const std::function<bool()>& interrupted) const;
 
   LevelModel<Scalar> model_;
   Eigen::Index levels_ = 0;
   double width_ = 0, energy_error_ = 0;
   bool resolved_ = true;
   std::vector<Frame<Scalar>> nodes_;
-  std::shared_ptr<MemoryBudget> memory_;
-  std::vector<std::unique_ptr<Refinements>> refinements_;
+  std::vector<std::unique_ptr<Refinements>> refinements_;  ///< Of each base interval.
 };
 
 }  // namespace tarn::runtime

@@ -376,6 +376,16 @@ TEST_CASE("failed points keep a row, the others are not touched") {
   const std::string text = summary(report);
   CHECK(text.find("negative_time") != std::string::npos);
   CHECK(text.find("1 of 3 points failed") != std::string::npos);
+  // Read back from the folder, the failed point still knows what is at fault.
+  RunOptions options;
+  options.out = fresh_folder();
+  run(plan, hand::one_qubit(true), options);
+  const RunReport again = run(plan, hand::one_qubit(true), options);
+  CHECK(again.reused == 3);
+  REQUIRE(again.points[1].error);
+  CHECK(again.points[1].error->kind == "negative_time");
+  CHECK(again.points[1].error->place == report.points[1].error->place);
+  fs::remove_all(*options.out);
 }
 
 TEST_CASE("a sample of the grid decides no claim that could still fail") {

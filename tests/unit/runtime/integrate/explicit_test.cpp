@@ -1,3 +1,4 @@
+#include <algorithm>
 #include <catch2/catch.hpp>
 #include <cmath>
 #include <numbers>
@@ -143,4 +144,26 @@ TEST_CASE("sweeps over arrays: combinations, norms, copies, for every number of 
       CHECK(second[l] == squared[l]);
     }
   }
+}
+
+TEST_CASE("a large system is stopped between two stages of a step") {
+  constexpr std::size_t kSize = std::size_t{1} << 18;
+  ExplicitIntegrator integrator(kSize, 1);
+  integrator.state()[0] = 1;
+  std::size_t stages = 0;
+  const RightHandSide still{[](const Nodes&, bool*) {},
+                            [&](std::size_t, std::size_t, const double*, const double* const* vectors, double* argument,
+                                double* derivative) {
+                              ++stages;
+                              std::copy_n(vectors[0], kSize, argument);
+                              std::copy_n(vectors[0], kSize, derivative);
+                            }};
+  const std::vector<double> boundaries = {0, 1};
+  const LaneTask task{boundaries, {}, 1e-8};
+  const auto outcome =
+      integrator.run(still, std::span(&task, 1), [](std::size_t, std::size_t, const double*) {}, [&] { return stages >= 4; });
+  REQUIRE(outcome[0]);
+  CHECK(outcome[0]->kind == FailureKind::interrupted);
+  CHECK(stages == 4);
+  CHECK(integrator.state()[0] == 1);  // that of the last good step
 }
