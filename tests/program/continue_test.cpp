@@ -127,7 +127,7 @@ TEST_CASE("a run that was cut short and gone on with leaves the bytes of one tha
   double seconds = 0.1;
   Outcome limited{3, "", "", 0, 0};
   for (; limited.status == 3 && seconds < 300; seconds *= 2) {
-    limited = run_tarn({"run", "m.tarn", "--out", "r", "--time-limit", std::to_string(seconds)}, scratch.path());
+    limited = run_tarn({"run", "m.tarn", "--out", "r", "--time-limit", std::to_string(seconds) + "s"}, scratch.path());
     if (limited.status == 3) CHECK(limited.err.find("error[out_of_time]") != std::string::npos);
   }
   INFO(limited.err);
@@ -150,6 +150,11 @@ TEST_CASE("all folders are judged before anything is computed") {
   CHECK(unwritable.status == 2);
   CHECK(unwritable.err.find("error[not_written]") != std::string::npos);
   CHECK(unwritable.out.empty());
+  // Writable by its permissions, but nothing can be made there: proc(5).
+  const Outcome late = run_tarn({"run", "m.tarn", "--out", "/proc/results"}, scratch.path());
+  CHECK(late.status == 2);
+  CHECK(late.err.find("error[not_written]") != std::string::npos);
+  CHECK(late.out.empty());
 }
 
 TEST_CASE("an experiment too large for the memory keeps no other from running") {
