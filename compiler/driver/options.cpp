@@ -77,7 +77,7 @@ std::string check_folder(const std::string& text) {
   return std::filesystem::is_directory(text, failure) ? "" : fmt::format("there is no folder `{}`", text);
 }
 
-/// Seconds from 90, 90s, 15min or 2h.
+/// Seconds from 90s, 15min or 2h. A number alone is refused: it could be minutes.
 std::optional<double> parse_duration(const std::string& text) {
   std::size_t used = 0;
   double number = 0;
@@ -89,7 +89,7 @@ std::optional<double> parse_duration(const std::string& text) {
   const std::string unit = text.substr(text.find_first_not_of(' ', used) == std::string::npos
                                            ? text.size()
                                            : text.find_first_not_of(' ', used));
-  const double seconds = unit.empty() || unit == "s" ? 1 : unit == "min" ? 60 : unit == "h" ? 3600 : 0;
+  const double seconds = unit == "s" ? 1 : unit == "min" ? 60 : unit == "h" ? 3600 : 0;
   if (seconds == 0 || !(number > 0) || number > 1e9) return std::nullopt;
   return number * seconds;
 }

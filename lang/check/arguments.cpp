@@ -82,8 +82,9 @@ void check_range(Session& session, const Scope& scope, const ast::Arg& arg, cons
   const auto b = known_number(session, number_value(*high), span);
   if (a && b && *a > *b) session.report(arg.range->span, diag::empty_range);
   if (!x || !a || !b || *a > *b || (*x >= *a && *x <= *b)) return;
-  session.report(span, diag::out_of_range, arg.name.text, format_quantity(*x, dimension), format_quantity(*a, dimension),
-                 format_quantity(*b, dimension));
+  const Shown low_unit = written_unit(session.ast(scope), arg.range->low, dimension);
+  const Shown high_unit = written_unit(session.ast(scope), arg.range->high, dimension);
+  session.report(span, diag::out_of_range, arg.name.text, in_unit(*x, low_unit), in_unit(*a, low_unit), in_unit(*b, high_unit));
 }
 
 void refuse_spread(Session& session, const ast::Arg& arg) {
@@ -167,6 +168,7 @@ void bind_given(Session& session, const Scope& scope, Callable& callable, const 
         session.report(given.name->span, diag::unknown_argument, callable_name(callable), name)
             .note(declaration_span(callable), "declared here")
             .remedy(offer(name, known, "it takes"));
+        callable.misnamed = true;
         evaluate(session, scope, given.value);
         continue;
       }
@@ -208,8 +210,10 @@ bool complete_arguments(Session& session, const Callable& callable, Scope& into,
     } else if (standard) {
       value = checked_argument(session, arg, standard, *standard, at);
     } else {
-      session.report(span, diag::missing_argument, callable_name(callable), arg.name.text)
-          .note(arg.span, "declared here");
+      // Under another name it may have been given.
+      if (!callable.misnamed) {
+        session.report(span, diag::missing_argument, callable_name(callable), arg.name.text).note(arg.span, "declared here");
+      }
       complete = false;
     }
     check_range(session, into, arg, value, at);

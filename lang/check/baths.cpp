@@ -1,6 +1,7 @@
 #include "lang/check/arguments.h"
 #include "lang/check/elements.h"
 #include "lang/check/expression.h"
+#include "lang/check/remedies.h"
 #include "lang/check/samples.h"
 
 namespace tarn {
@@ -8,7 +9,8 @@ namespace {
 
 struct BathNodes {
   std::optional<NodeId> density, temperature;
-  bool has_density = false, has_temperature = false, refused = false;
+  std::optional<Span> first_density, first_temperature;  ///< Where they are set.
+  bool refused = false;
 };
 
 void refuse_bath_entry(Session& session, Span span, std::string_view word, BathNodes& nodes) {
@@ -45,8 +47,8 @@ void elaborate_temperature(Session& session, const Scope& scope, const ast::Bath
   if (!nodes.temperature) return;
   const auto value = value_at_defaults(session, *nodes.temperature);
   if (value && !(*value >= 0)) {
-    session.report(span_of(session, scope, setting.value), diag::not_positive, "a temperature",
-                   format_quantity(*value, kTemperature));
+    session.report(span_of(session, scope, setting.value), diag::below_zero, "a temperature",
+                   in_unit(*value, written_unit(session.ast(scope), setting.value, kTemperature)));
   }
 }
 
@@ -55,9 +57,12 @@ void elaborate_setting(Session& session, const Scope& scope, const ast::BathValu
   if (!density && setting.setting != ast::BathSetting::temperature) {
     return refuse_bath_entry(session, setting.word, word_of_setting(setting.setting), nodes);
   }
-  bool& has = density ? nodes.has_density : nodes.has_temperature;
-  if (has) session.report(setting.word, diag::statement_twice, std::string(word_of_setting(setting.setting)));
-  has = true;
+  std::optional<Span>& first = density ? nodes.first_density : nodes.first_temperature;
+  if (first) {
+    session.report(setting.word, diag::statement_twice, std::string(word_of_setting(setting.setting))).note(*first, "first here");
+  } else {
+    first = setting.word;
+  }
   density ? elaborate_density(session, scope, setting, nodes) : elaborate_temperature(session, scope, setting, nodes);
 }
 
@@ -75,8 +80,8 @@ BathNodes elaborate_bath_entries(Session& session, Scope& scope, const ast::Bath
     if (const auto* band = std::get_if<ast::BathBand>(&entry)) refuse_bath_entry(session, band->span, "band", nodes);
   }
   scope.site = nullptr;
-  if (!nodes.refused && !nodes.has_density) session.report(bath.name.span, diag::bath_incomplete, bath.name.text, "density");
-  if (!nodes.refused && !nodes.has_temperature) session.report(bath.name.span, diag::bath_incomplete, bath.name.text, "temperature");
+  if (!nodes.refused && !nodes.first_density) session.report(bath.name.span, diag::bath_incomplete, bath.name.text, "density");
+  if (!nodes.refused && !nodes.first_temperature) session.report(bath.name.span, diag::bath_incomplete, bath.name.text, "temperature");
   return nodes;
 }
 

@@ -243,6 +243,11 @@ void check_chip(Session& session, const Callable& chip) {
   Scope scope{nullptr, chip.module, nullptr, {}};
   Unrolled unrolled;
   declare_opaque(session, chip, scope);
+  std::vector<const ast::NoiseTerm*> noise;
+  for (const ast::ChipEntry& entry : std::get<ast::Chip>(*chip.item).entries) {
+    if (const auto* term = std::get_if<ast::NoiseTerm>(&entry)) noise.push_back(term);
+  }
+  warn_of_repeated_noise(session, noise, scope);
   session.active.push_back(chip.item);
   elaborate_chip(session, chip, scope, "", unrolled);
   session.active.pop_back();

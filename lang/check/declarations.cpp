@@ -7,6 +7,7 @@
 #include "lang/check/experiment.h"
 #include "lang/check/expression.h"
 #include "lang/check/predefined.h"
+#include "lang/check/remedies.h"
 
 namespace tarn {
 namespace {
@@ -55,22 +56,6 @@ void declare_items(Program& program, std::uint32_t module, Diagnostics& diagnost
   }
 }
 
-/// The unit a parameter's default is written in, if it has the parameter's dimension.
-Shown parameter_unit(const Ast& ast, const ast::Arg& arg, Dimension dimension) {
-  std::optional<ast::ExprId> id = arg.value;
-  while (id) {
-    const ast::ExprNode& node = ast.expr(*id).node;
-    if (const auto* number = std::get_if<ast::Number>(&node)) {
-      if (number->unit && number->unit->unit.dimension == dimension) return {number->unit->text, number->unit->unit.factor};
-      break;
-    }
-    const auto* unary = std::get_if<ast::Unary>(&node);
-    if (unary == nullptr) break;
-    id = unary->operand;
-  }
-  return shown_unit(dimension);
-}
-
 class ParameterReader {
  public:
   ParameterReader(Session& session, std::uint32_t module) : session_(session), scope_{nullptr, module, nullptr, {}} {}
@@ -85,9 +70,9 @@ class ParameterReader {
     made.name = prefix.empty() ? made.declared : prefix + "." + made.declared;
     if (arg.spread) session_.report(arg.spread->span, diag::not_available, "`spread`", "a fixed value, or `sweep`");
     made.broken = !read_type(arg, made);
+    made.unit = arg.value ? written_unit(ast(), *arg.value, made.dimension) : shown_unit(made.dimension);
     if (!made.broken) read_value(arg, made);
     if (!made.broken) read_range(arg, made);
-    made.unit = parameter_unit(session_.program.ast(scope_.module), arg, made.dimension);
     return made;
   }
 
@@ -130,6 +115,8 @@ class ParameterReader {
     made.lowest = evaluate_constant(session_, scope_, arg.range->low, made.dimension);
     made.highest = evaluate_constant(session_, scope_, arg.range->high, made.dimension);
     if (!made.lowest || !made.highest) return;
+    made.lowest_unit = written_unit(ast(), arg.range->low, made.dimension);
+    made.highest_unit = written_unit(ast(), arg.range->high, made.dimension);
     if (*made.lowest > *made.highest) {
       session_.report(arg.range->span, diag::empty_range);
       made.lowest.reset();
@@ -138,9 +125,11 @@ class ParameterReader {
     }
     if (!made.value || (*made.value >= *made.lowest && *made.value <= *made.highest)) return;
     session_.report(span_of(session_, scope_, *arg.value), diag::out_of_range, made.declared,
-                    format_quantity(*made.value, made.dimension), format_quantity(*made.lowest, made.dimension),
-                    format_quantity(*made.highest, made.dimension));
+                    in_unit(*made.value, made.unit), in_unit(*made.lowest, made.lowest_unit),
+                    in_unit(*made.highest, made.highest_unit));
   }
+
+  const Ast& ast() const { return session_.program.ast(scope_.module); }
 
   Session& session_;
   const Scope scope_;

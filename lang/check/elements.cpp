@@ -2,6 +2,7 @@
 
 #include "lang/check/arguments.h"
 #include "lang/check/arithmetic.h"
+#include "lang/check/declarations.h"
 #include "lang/check/expression.h"
 #include "lang/check/loops.h"
 #include "lang/check/path.h"
@@ -231,6 +232,22 @@ void elaborate_kind(Session& session, const Callable& kind, const std::vector<st
   elaborate_body(session, kind, scope, ends, place);
 }
 
+void warn_of_repeated_noise(Session& session, const std::vector<const ast::NoiseTerm*>& terms, const Scope& scope) {
+  std::map<std::string, Span> first;
+  for (const ast::NoiseTerm* term : terms) {
+    if (term->shared) continue;
+    std::string loops;
+    for (const ast::Loop& loop : term->loops) loops += " " + one_line(session.text(loop.span));
+    for (const ast::ExprId id : term->operators) {
+      const Span span = span_of(session, scope, id);
+      const std::string text = one_line(session.text(span)) + " ~ " + one_line(session.text(term->bath.span));
+      const auto [before, is_new] = first.try_emplace(text + loops, span);
+      if (is_new) continue;
+      session.report(span, diag::noise_twice, text).note(before->second, "first here").remedy("take one out, or multiply a single one by `sqrt(2)`");
+    }
+  }
+}
+
 std::vector<std::string> check_kind(Session& session, const Callable& callable) {
   Unrolled unrolled;
   const bool qubit = callable.kind == CallableKind::qubit;
@@ -243,6 +260,11 @@ std::vector<std::string> check_kind(Session& session, const Callable& callable) 
   }
   Scope scope{nullptr, callable.module, nullptr, {}};
   declare_opaque(session, callable, scope);
+  std::vector<const ast::NoiseTerm*> noise;
+  for (const ast::KindEntry& entry : std::get<ast::Kind>(*callable.item).entries) {
+    if (const auto* term = std::get_if<ast::NoiseTerm>(&entry)) noise.push_back(term);
+  }
+  warn_of_repeated_noise(session, noise, scope);
   elaborate_body(session, callable, scope, ends, {unrolled, ""});
   return describe_terms(session, unrolled, qubit ? 1 : 2);
 }

@@ -29,4 +29,7 @@ std::optional<std::uint32_t> elaborate_bath(Session& session, const Callable& ba
 std::vector<std::string> check_kind(Session& session, const Callable& kind);
 void check_bath(Session& session, const Callable& bath);
 
+/// Warns of noise statements of one kind or chip that join the same operator to the same bath.
+void warn_of_repeated_noise(Session& session, const std::vector<const ast::NoiseTerm*>& terms, const Scope& scope);
+
 }  // namespace tarn

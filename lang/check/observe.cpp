@@ -43,7 +43,7 @@ std::optional<MomentI> moment_of(Session& session, const Scope& scope, const ast
   const auto number = value_at_defaults(session, *value);
   const Span span = span_of(session, scope, point->value);
   if (at_t) {
-    if (number && !(*number >= 0)) session.report(span, diag::not_positive, "the time", format_quantity(*number, kTime));
+    if (number && !(*number >= 0)) session.report(span, diag::below_zero, "the time", format_quantity(*number, kTime));
     if (point->meeting != ast::Meeting::unsaid) session.report(observe.span, diag::moment_meeting);
     return AtTimeI{*value};
   }
@@ -132,11 +132,13 @@ class ObserveReader {
   void read_distribution(const ast::Observe& observe, const MomentI& moment) {
     if (!std::holds_alternative<AtEndI>(moment) || observe.unit) {
       session_.report(observe.span, diag::distribution_form);
+      readings_.broken.emplace(observe.name.text, observe.name.span);
       return;
     }
     if (!runs(instance_) || !instance_.scan.empty()) {
       session_.report(observe.span, diag::moment_without_pace, "distribution")
           .remedy(instance_.scan.empty() ? "the distribution needs a pace: `pace hold for 1 ns` keeps the place" : "");
+      readings_.broken.emplace(observe.name.text, observe.name.span);
       return;
     }
     readings_.reads_state = true;

@@ -72,9 +72,10 @@ std::optional<double> read_setting(Program& program, const ProgramParameter& par
   const bool below = value && parameter.lowest && *value < *parameter.lowest;
   const bool above = value && parameter.highest && *value > *parameter.highest;
   if (!below && !above) return value;
-  session.report(span_of(session, scope, id), diag::out_of_range, parameter.name, format_quantity(*value, parameter.dimension),
-                 format_quantity(parameter.lowest.value_or(-INFINITY), parameter.dimension),
-                 format_quantity(parameter.highest.value_or(INFINITY), parameter.dimension))
+  session.report(span_of(session, scope, id), diag::out_of_range, parameter.name,
+                 in_unit(*value, written_unit(session.ast(scope), id, parameter.dimension)),
+                 in_unit(parameter.lowest.value_or(-INFINITY), parameter.lowest_unit),
+                 in_unit(parameter.highest.value_or(INFINITY), parameter.highest_unit))
       .note(parameter.span, "declared here");
   return std::nullopt;
 }

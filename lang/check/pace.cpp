@@ -6,6 +6,7 @@
 
 #include "lang/check/experiment.h"
 #include "lang/check/expression.h"
+#include "lang/check/remedies.h"
 #include "lang/check/samples.h"
 #include "lang/check/tables.h"
 #include "lang/support/near.h"
@@ -31,7 +32,7 @@ std::string near_and(std::string_view word, std::span<const std::string_view> wo
   return fmt::format("did you mean `{}`?{}{}", near, there ? " " : " it is not available yet; ", available);
 }
 
-void report_begin(Session& session, std::string_view word, Span span) {
+void report_begin(Session& session, std::string_view word, Span span, std::size_t qubits) {
   const std::string text = excerpt(session, span);
   if (word == "steady") {
     session.report(span, diag::not_available, fmt::format("`begin {}`", text), std::string(kBegins));
@@ -40,7 +41,7 @@ void report_begin(Session& session, std::string_view word, Span span) {
   auto tail = session.report(span, diag::unknown_begin, text);
   if (word == "state") tail.remedy("`begin state(\"01\")`, a letter for each qubit");
   else if (text.starts_with('"')) tail.remedy(fmt::format("`begin state({})`", text));
-  else if (text.find_first_not_of("01") == std::string::npos) tail.remedy(fmt::format("`begin state(\"{}\")`", text));
+  else if (text.find_first_not_of("01") == std::string::npos) tail.remedy(letters_remedy("begin state(\"{}\")", text, qubits));
   else tail.remedy(near_and(word, kBeginWords, kBegins));
 }
 
@@ -71,7 +72,8 @@ std::optional<BeginI> begin_of(Session& session, const Scope& scope, const ast::
     if (!temperature) return std::nullopt;
     const auto value = value_at_defaults(session, *temperature);
     if (value && !(*value >= 0)) {
-      session.report(path.given.front().span, diag::not_positive, "a temperature", format_quantity(*value, kTemperature));
+      session.report(path.given.front().span, diag::below_zero, "a temperature",
+                     in_unit(*value, written_unit(session.ast(scope), path.given.front().value, kTemperature)));
     }
     return BeginThermalI{*temperature};
   }
@@ -80,7 +82,7 @@ std::optional<BeginI> begin_of(Session& session, const Scope& scope, const ast::
     return letters ? std::optional<BeginI>(BeginStateI{*letters}) : std::nullopt;
   }
   if (word == "populations" && path.call) return begin_populations(session, scope, path, qubits);
-  report_begin(session, word, path.span);
+  report_begin(session, word, path.span, qubits);
   return std::nullopt;
 }
 
@@ -122,9 +124,13 @@ class PaceReader {
     const auto time = evaluate_quantity(session_, scope_, id, kTime);
     if (!time) return std::nullopt;
     const auto value = value_at_defaults(session_, *time);
+    if (!value) return time;
     const Span span = span_of(session_, scope_, id);
-    if (value && !(*value > 0) && !(may_be_zero && *value == 0)) {
-      session_.report(span, diag::not_positive, "a duration", format_quantity(*value, kTime)).remedy("`step to` is sudden");
+    const std::string found = in_unit(*value, written_unit(session_.ast(scope_), id, kTime));
+    if (may_be_zero) {
+      if (!(*value >= 0)) session_.report(span, diag::below_zero, "a duration", found);
+    } else if (!(*value > 0)) {
+      session_.report(span, diag::not_positive, "a duration", found).remedy("`step to` is sudden");
     }
     return time;
   }
@@ -134,8 +140,6 @@ class PaceReader {
     if (!table) return;
     PaceFollowI follow{table->x, table->y, path.span};
     for (double& t : follow.t) t -= table->x.front();
-    const auto outside = std::find_if(follow.s.begin(), follow.s.end(), [](double s) { return !(s >= 0 && s <= 1); });
-    if (outside != follow.s.end()) session_.report(path.span, diag::pace_outside, *outside);
     instance_.pace.push_back(std::move(follow));
   }
 
@@ -164,7 +168,7 @@ void elaborate_begin(Session& session, const Scope& scope, const ast::Begin& beg
   const Span span = span_of(session, scope, begin.state);
   const bool plain = use != nullptr && use->held.empty() && !use->under && use->path.steps.size() == 1;
   if (!plain) {
-    report_begin(session, "", span);
+    report_begin(session, "", span, instance.qubits.size());
     return;
   }
   instance.begin = begin_of(session, scope, use->path, instance.qubits.size());

@@ -66,7 +66,9 @@ std::string file_remedy(const Session& session, const Scope& scope, const std::s
   std::vector<std::string> known;
   for (const auto& [file, row] : session.program.modules[scope.module].uses) known.push_back(file);
   const std::string_view near = near_word(name, known);
-  return near.empty() ? std::string() : fmt::format("did you mean `{}`?", near);
+  if (!near.empty()) return fmt::format("did you mean `{}`?", near);
+  const std::string_view library = near_word(name, kLibrary);
+  return library.empty() ? std::string() : fmt::format("did you mean `{0}`? it needs `use {0}`", library);
 }
 
 Value not_here(Session& session, const Scope& scope, const ast::Name& name) {

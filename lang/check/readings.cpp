@@ -38,11 +38,12 @@ void report_no_name(Session& session, const Scope& scope, const ast::Path& path)
   const bool reduces = word != "population" && word != "fidelity";
   const std::string_view expected = reduces ? "the name of an observable" : word == "population" ? "a set of states" : "a state";
   const std::string digits = digits_of(session, scope, path.given.front());
-  const bool letters = digits.size() >= 2 && (digits.front() == '0' || digits.size() == scope.site->readings->unrolled->qubits.size());
+  const std::size_t qubits = scope.site->readings->unrolled->qubits.size();
+  const bool letters = digits.size() >= 2 && (digits.front() == '0' || digits.size() == qubits);
   auto tail = session.report(span, diag::wrong_kind, expected, text);
   if (reduces) tail.remedy(fmt::format("`observe` it under a name and use the name: `{}(NAME)`", word));
   else if (std::holds_alternative<ast::Text>(node)) tail.remedy(fmt::format("`{}(state({}))`", word, text));
-  else if (letters || (word == "fidelity" && !digits.empty())) tail.remedy(fmt::format("`{}(state(\"{}\"))`", word, digits));
+  else if (letters || (word == "fidelity" && !digits.empty())) tail.remedy(letters_remedy(word + "(state(\"{}\"))", digits, qubits));
   else if (std::holds_alternative<ast::Number>(node) && word == "population") tail.remedy(fmt::format("`population(level({}))`", text));
 }
 
@@ -269,7 +270,7 @@ std::optional<std::string> state_letters(Session& session, const Scope& scope, c
   const Span span = path.given.front().span;
   const std::string digits = digits_of(session, scope, path.given.front());
   if (!digits.empty()) {
-    session.report(span, diag::wrong_kind, "a text", digits).remedy(fmt::format("`state(\"{}\")`", digits));
+    session.report(span, diag::wrong_kind, "a text", digits).remedy(letters_remedy("state(\"{}\")", digits, qubits));
     return std::nullopt;
   }
   const auto text = evaluate_text(session, scope, path.given.front().value);

@@ -121,13 +121,19 @@ std::string factor_remedy(Dimension expected, Dimension found) {
       {kCurrent, "multiply by a lever, a current"},
       {kCharge, "multiply by a lever, a charge"},
       {kVoltage, "multiply by a lever, a voltage"},
+      {kFlux / planck, "multiply by a lever, a flux: the product is an energy"},
+      {kCurrent / planck, "multiply by a lever, a current: the product is an energy"},
+      {kCharge / planck, "multiply by a lever, a charge: the product is an energy"},
+      {kVoltage / planck, "multiply by a lever, a voltage: the product is an energy"},
   };
   const Dimension missing = expected / found;
   for (const Missing& factor : known) {
     if (factor.dimension == missing && !found.is_number()) return factor.text;
   }
   if (!missing.valid()) return {};
-  return fmt::format("a factor in [{}] is missing", unit_product(missing));
+  // Of a product nobody would know where it should come from.
+  const std::string unit = unit_product(missing);
+  return unit.find_first_of("*/^") == std::string::npos ? fmt::format("a factor in {} is missing", unit) : std::string();
 }
 
 std::string dimension_remedy(const Session& session, Span span, Dimension expected, Dimension found) {
@@ -154,6 +160,22 @@ std::string dimension_remedy(const Session& session, const Scope& scope, ast::Ex
   return remedy.empty() ? factor_remedy(expected, found) : remedy;
 }
 
+Shown written_unit(const Ast& ast, ast::ExprId id, Dimension dimension) {
+  const ast::ExprNode* node = &ast.expr(id).node;
+  while (const auto* unary = std::get_if<ast::Unary>(node)) node = &ast.expr(unary->operand).node;
+  const auto* number = std::get_if<ast::Number>(node);
+  const bool fits = number != nullptr && number->unit && number->unit->unit.dimension == dimension;
+  if (fits) return {number->unit->text, number->unit->unit.factor};
+  const NamedUnit usual = default_unit(dimension);
+  return {usual.text, usual.unit.factor};
+}
+
+std::string in_unit(double value, const Shown& unit) {
+  if (unit.label.empty()) return fmt::format("{:.6g}", value / unit.factor);
+  const bool product = unit.label.find_first_of("*/^") != std::string::npos;
+  return fmt::format(fmt::runtime(product ? "{:.6g} [{}]" : "{:.6g} {}"), value / unit.factor, unit.label);
+}
+
 std::string in_list(const std::vector<std::string>& words) {
   constexpr std::size_t kMost = 12;
   std::string result;
@@ -165,6 +187,12 @@ std::string offer(std::string_view word, const std::vector<std::string>& known, 
   const std::string_view near = near_word(word, known);
   if (!near.empty()) return fmt::format("did you mean `{}`?", near);
   return known.empty() ? "" : fmt::format("{} {}", what, in_list(known));
+}
+
+std::string letters_remedy(std::string_view form, std::string_view bits, std::size_t qubits) {
+  if (bits.size() == qubits) return fmt::format("`{}`", fmt::format(fmt::runtime(form), bits));
+  const std::string example = fmt::format(fmt::runtime(form), std::string(qubits, '0'));
+  return fmt::format("a state has a letter for each qubit, {} here: `{}`", counted(qubits, "letter"), example);
 }
 
 std::string counted(std::size_t count, std::string_view noun) { return fmt::format("{} {}{}", count, noun, count == 1 ? "" : "s"); }

@@ -25,12 +25,22 @@ std::string dimension_remedy(const Session& session, Span span, Dimension expect
 /// The same for a sum or product: the unit is asked of the first factor that can take one.
 std::string dimension_remedy(const Session& session, const Scope& scope, ast::ExprId id, Dimension expected, Dimension found);
 
+/// The unit that a number is written in, a sign before it or not; of any other expression the usual one.
+Shown written_unit(const Ast& ast, ast::ExprId id, Dimension dimension);
+
+/// "10 us", "0.2 [1/us]"
+std::string in_unit(double value, const Shown& unit);
+
 /// "did you mean `near`?"; where no word is near, what there is: "`spectra` has `ohmic`, `drude`"
 /// for `what` = "`spectra` has". Empty if there is nothing.
 std::string offer(std::string_view word, const std::vector<std::string>& known, std::string_view what);
 
 /// Words in backticks, joined by commas; at most twelve.
 std::string in_list(const std::vector<std::string>& words);
+
+/// Bits that were written as a number, as the text that `form` puts them in, "begin state(\"{}\")"; where they
+/// are not as many as the qubits, what a state has.
+std::string letters_remedy(std::string_view form, std::string_view bits, std::size_t qubits);
 
 /// "1 qubit", "3 qubits"
 std::string counted(std::size_t count, std::string_view noun);

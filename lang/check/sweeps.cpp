@@ -96,9 +96,9 @@ void check_values(Session& session, const ProgramParameter& parameter, const std
     const bool below = parameter.lowest && *parameter.lowest - value > 1e-12 * std::abs(*parameter.lowest);
     const bool above = parameter.highest && value - *parameter.highest > 1e-12 * std::abs(*parameter.highest);
     if (below || above) {
-      session.report(span, diag::out_of_range, parameter.name, format_quantity(value, parameter.dimension),
-                     format_quantity(parameter.lowest.value_or(-INFINITY), parameter.dimension),
-                     format_quantity(parameter.highest.value_or(INFINITY), parameter.dimension))
+      session.report(span, diag::out_of_range, parameter.name, in_unit(value, parameter.unit),
+                     in_unit(parameter.lowest.value_or(-INFINITY), parameter.lowest_unit),
+                     in_unit(parameter.highest.value_or(INFINITY), parameter.highest_unit))
           .note(parameter.span, "declared here");
       return;
     }

@@ -78,18 +78,18 @@ std::optional<Column> find_column(Session& session, const Table& table, const st
   return read_column(table, session.program.loaded->sources.file(table.file), name, span, session.diagnostics);
 }
 
-bool table_sound(Session& session, const TableData& data, const std::vector<std::uint32_t>& lines, Span span) {
+bool table_sound(Session& session, const TableData& data, const SourceFile& file, const std::vector<std::uint32_t>& lines, Span span) {
   if (data.x.size() < 2) {
     session.report(span, diag::table_short, data.name, counted(data.x.size(), "point"));
     return false;
   }
   for (std::size_t k = 0; k < data.x.size(); ++k) {
     if (k > 0 && !(data.x[k] > data.x[k - 1])) {
-      session.report(span, diag::table_order, data.name, lines[k]);
+      session.report(span, diag::table_order, data.name, lines[k]).note(line_span(file, lines[k]), "this row");
       return false;
     }
     if (data.by == Interpolation::loglog && !(data.x[k] > 0 && data.y[k] > 0)) {
-      session.report(span, diag::table_not_positive, data.name, lines[k]);
+      session.report(span, diag::table_not_positive, data.name, lines[k]).note(line_span(file, lines[k]), "this row");
       return false;
     }
   }
@@ -99,17 +99,21 @@ bool table_sound(Session& session, const TableData& data, const std::vector<std:
 struct LoadedTable {
   TableData data;
   Dimension x, y;
+  FileId file;
+  std::vector<std::uint32_t> lines;  ///< Of the file, one for each point.
 };
 
 std::optional<LoadedTable> load(Session& session, const TableCall& call, Span span) {
   const Table* table = find_table(session, *call.file, span);
   if (table == nullptr) return std::nullopt;
   const auto x = find_column(session, *table, *call.x, span);
-  const auto y = find_column(session, *table, *call.y, span);
+  // Where there is one column only, one message says what is wrong with the table.
+  const auto y = x || table->header.size() > 1 ? find_column(session, *table, *call.y, span) : std::nullopt;
   if (!x || !y) return std::nullopt;
   LoadedTable loaded{{fmt::format("{}, column {}", table->name, y->name), x->values, y->values, call.by, true, span},
-                     x->unit.unit.dimension, y->unit.unit.dimension};
-  return table_sound(session, loaded.data, x->lines, span) ? std::optional(loaded) : std::nullopt;
+                     x->unit.unit.dimension, y->unit.unit.dimension, table->file, x->lines};
+  const SourceFile& file = session.program.sources().file(table->file);
+  return table_sound(session, loaded.data, file, x->lines, span) ? std::optional(loaded) : std::nullopt;
 }
 
 void remark_coverage(Session& session, const TableData& data, Dimension x, Span span) {
@@ -119,8 +123,12 @@ void remark_coverage(Session& session, const TableData& data, Dimension x, Span 
   const std::string high = format_quantity(data.x.back(), x);
   const std::string outside = data.hold_outside ? "keeps its end value" : "is zero";
   const bool passes = data.hold_outside && x.is_number() && (data.x.front() < -1e-9 || data.x.back() > 1 + 1e-9);
-  session.report(span, diag::table_coverage, data.name, low, high, outside)
-      .remedy(passes ? "only s in 0 .. 1 is used, the rest is not: divide the column by 100 if it counts percent" : "");
+  if (passes) {
+    session.report(span, diag::table_beyond, data.name, low, high)
+        .remedy(data.x.back() > 10 ? "divide the column by 100 if it counts percent" : "the rest of the table is not used");
+  } else {
+    session.report(span, diag::table_coverage, data.name, low, high, outside);
+  }
   session.remark(fmt::format("{} covers {} to {}; outside it {}", data.name, low, high, outside));
 }
 
@@ -266,7 +274,14 @@ std::optional<TableData> read_waveform(Session& session, const Scope& scope, con
   const bool fits = loaded->x == kTime && loaded->y == kNumber;
   if (loaded->x != kTime) session.report(path.span, diag::dimension_mismatch, kTime, loaded->x, *call.x);
   if (loaded->y != kNumber) session.report(path.span, diag::dimension_mismatch, kNumber, loaded->y, *call.y);
-  return fits ? std::optional(loaded->data) : std::nullopt;
+  if (!fits) return std::nullopt;
+  const auto& s = loaded->data.y;
+  const auto beyond = std::find_if(s.begin(), s.end(), [](double value) { return !(value >= 0 && value <= 1); });
+  if (beyond != s.end()) {
+    const std::uint32_t line = loaded->lines[static_cast<std::size_t>(beyond - s.begin())];
+    session.report(path.span, diag::pace_outside, *beyond).note(line_span(session.program.sources().file(loaded->file), line), "this row");
+  }
+  return loaded->data;
 }
 
 Value opaque_item(Session& session, const ListValue& list, Span span) {

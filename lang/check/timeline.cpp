@@ -60,7 +60,7 @@ void check_moment(Session& session, const ast::Observe& observe, Span where, con
   for (const PacePieceI& piece : instance.pace) {
     if (!std::visit(walk, piece)) return;
   }
-  if (!asked || (at_s != nullptr && !(*asked >= 0 && *asked <= 1))) return;
+  if (!asked || !(*asked >= 0) || (at_s != nullptr && *asked > 1)) return;
   if (at_time != nullptr) {
     double length = 0;
     for (const Stretch& stretch : walk.stretches) length += stretch.time;

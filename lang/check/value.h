@@ -71,6 +71,7 @@ struct Callable {
   std::uint32_t module = 0;
   const ast::Item* item = nullptr;
   std::map<std::string, BoundValue> bound;
+  bool misnamed = false;  ///< A value was given under a name that no argument has, which was reported.
 };
 
 struct Value {

@@ -32,6 +32,7 @@ struct ProgramParameter {
   Shown unit;
   std::optional<double> value;  ///< Nothing: must be set or swept.
   std::optional<double> lowest, highest;
+  Shown lowest_unit, highest_unit;  ///< As the range is written.
   Span span;
   std::string doc;
 };

@@ -13,11 +13,14 @@ namespace fs = std::filesystem;
 
 constexpr std::size_t kDeepestUse = 100;
 
-void report_file(const FileError& error, std::string_view shown, Span at, Diagnostics& diagnostics) {
+/// `looked_for`: the path as seen from the current folder; empty where it is `shown` itself.
+void report_file(const FileError& error, std::string_view shown, Span at, Diagnostics& diagnostics, const std::string& looked_for = {}) {
   switch (error.reason) {
-    case FileError::Reason::missing:
-      diagnostics.report(at, diag::file_missing, shown);
+    case FileError::Reason::missing: {
+      auto tail = diagnostics.report(at, diag::file_missing, shown);
+      if (!looked_for.empty()) tail.remedy("looked for as `" + looked_for + "`: a path starts at the folder of the file that names it");
       break;
+    }
     case FileError::Reason::outside:
       diagnostics.report(at, diag::file_outside, shown).remedy("move it there, or allow its folder with `--also-read DIR`");
       break;
@@ -113,7 +116,7 @@ class Loader {
     }
     const auto resolved = modules_.sandbox.resolve(naming.path, path);
     if (!resolved) {
-      report_file(resolved.error(), path, file.span, diagnostics_);
+      report_file(resolved.error(), path, file.span, diagnostics_, shown);
       return std::nullopt;
     }
     if (const Found known = find(resolved->string(), file.span); known.seen) return known.module;
@@ -194,9 +197,10 @@ const Table* open_table(Modules& modules, std::string_view path, Span asked, Dia
     report_file({FileError::Reason::outside, {}, 0}, path, asked, diagnostics);
     return nullptr;
   }
+  const std::string shown = shown_name(modules.sources.file(naming->ast.file).name, path);
   const auto resolved = modules.sandbox.resolve(naming->path, path);
   if (!resolved) {
-    report_file(resolved.error(), path, asked, diagnostics);
+    report_file(resolved.error(), path, asked, diagnostics, shown);
     return nullptr;
   }
   const auto known = modules.tables.find(*resolved);
@@ -207,7 +211,6 @@ const Table* open_table(Modules& modules, std::string_view path, Span asked, Dia
     report_file(text.error(), path, asked, diagnostics);
     return nullptr;
   }
-  const std::string shown = shown_name(modules.sources.file(naming->ast.file).name, path);
   table = parse_table(modules.sources.add(shown, std::move(*text)), asked, diagnostics);
   return table ? &*table : nullptr;
 }

@@ -11,12 +11,6 @@
 namespace tarn {
 namespace {
 
-/// The line as a place to show beside a message.
-Span line_span(const SourceFile& file, std::uint32_t line) {
-  const std::uint32_t begin = file.line_starts[line - 1];
-  return {file.id, begin, begin + static_cast<std::uint32_t>(line_text(file, line).size())};
-}
-
 /// Rows as libcsv finds them.
 struct Reading {
   std::vector<std::string> row;
@@ -143,6 +137,11 @@ std::optional<double> number_of(std::string_view cell) {
 }
 
 }  // namespace
+
+Span line_span(const SourceFile& file, std::uint32_t line) {
+  const std::uint32_t begin = file.line_starts[line - 1];
+  return {file.id, begin, begin + static_cast<std::uint32_t>(line_text(file, line).size())};
+}
 
 std::optional<Table> parse_table(const SourceFile& file, Span asked, Diagnostics& diagnostics) {
   Reading reading;

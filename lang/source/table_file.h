@@ -36,6 +36,9 @@ struct Column {
   std::vector<std::uint32_t> lines;
 };
 
+/// The line of a table as a place to show beside a message.
+Span line_span(const SourceFile& file, std::uint32_t line);
+
 /// Errors, reported at `asked` with the table's line beside: quotes that do not match,
 /// rows longer or shorter than the header, two columns of one name, no header, no rows.
 std::optional<Table> parse_table(const SourceFile& file, Span asked, Diagnostics& diagnostics);

@@ -87,6 +87,16 @@ class Stop {
     }
     return std::nullopt;
   }
+  /// True if the statement at hand is a pace.
+  bool in_pace() const {
+    for (std::uint32_t i = at_; i > 0; --i) {
+      const Code code = tokens_.code(i - 1);
+      if (code == Code::pace) return true;
+      if (code == Code::open_curly || code == Code::close_curly) return false;
+      if (is_reserved(code) && code != Code::over && code != Code::for_) return false;
+    }
+    return false;
+  }
   Span token_span(std::uint32_t i) const { return {file_.id, tokens_.places[i].begin, tokens_.places[i].end}; }
   Code code(std::uint32_t i) const { return tokens_.code(i); }
 
@@ -236,6 +246,17 @@ bool report_missing_operator(const Stop& stop, Diagnostics& diagnostics) {
   return true;
 }
 
+/// `pace ramp to 1 over ta hold for 5 ns`
+bool report_missing_comma(const Stop& stop, Diagnostics& diagnostics) {
+  constexpr auto kPieces = std::to_array<Code>({Code::ramp, Code::hold, Code::step, Code::follow});
+  const bool piece = std::find(kPieces.begin(), kPieces.end(), stop.here()) != kPieces.end();
+  if (!piece || !ends_operand(stop.before()) || !stop.in_pace()) return false;
+  const std::string word = stop.text(0);
+  diagnostics.report(stop.span(), diag::unexpected, "a comma between two pieces of the pace", stop.found())
+      .remedy("write " + quote(", " + word));
+  return true;
+}
+
 /// Words that join parts of a statement: where one stands, a name is rather missing.
 bool joins(Code code) {
   constexpr auto kJoining = std::to_array<Code>({Code::along, Code::and_, Code::at, Code::each, Code::else_, Code::for_,
@@ -244,8 +265,14 @@ bool joins(Code code) {
   return std::find(kJoining.begin(), kJoining.end(), code) != kJoining.end();
 }
 
+/// What stands behind the name of a declaration.
+bool follows_name(Code code) {
+  return code == Code::assign || code == Code::colon || code == Code::open_curly;
+}
+
 bool report_reserved(const Stop& stop, Diagnostics& diagnostics) {
-  if (!is_reserved(stop.here()) || joins(stop.here()) || !stop.expects("a name") || !stop.same_line_as_before()) return false;
+  const bool joining = joins(stop.here()) && !follows_name(stop.after());
+  if (!is_reserved(stop.here()) || joining || !stop.expects("a name") || !stop.same_line_as_before()) return false;
   auto tail = diagnostics.report(stop.span(), diag::reserved_word, stop.text(0));
   if (stop.before() == Code::use && stop.here() == Code::spectrum) tail.remedy("did you mean `use spectra`?");
   else tail.remedy("choose another name, such as " + quote(stop.text(0) + "_1"));
@@ -268,8 +295,9 @@ void report_failure(const SourceFile& file, const Tokens& tokens, const Failure&
   const Stop stop(file, tokens, failure);
   const bool told = report_character(stop, diagnostics) || report_number(stop, diagnostics) ||
                     report_unit_power(stop, diagnostics) || report_slip(stop, diagnostics) ||
-                    report_after_number(stop, diagnostics) ||
-                    report_open_bracket(stop, diagnostics) || report_missing_operator(stop, diagnostics) ||
+                    report_missing_comma(stop, diagnostics) || report_after_number(stop, diagnostics) ||
+                    report_open_bracket(stop, diagnostics) ||
+                    report_missing_operator(stop, diagnostics) ||
                     report_reserved(stop, diagnostics);
   if (told) return;
   const std::string remedy = other_notation(stop);

@@ -76,7 +76,13 @@ struct to_failure {
             class Input, class State>
   static bool match(Input& in, State& state) {
     if (in.empty()) return false;
-    in.bump(state.note_failure(in.byte()));
+    std::size_t length = state.note_failure(in.byte());
+    // `use spectrum`, `qubit bath {`: there the word stands for a name and starts nothing of its own.
+    const auto code = [&](std::size_t k) { return in.size(k + 1) > k ? static_cast<Code>(in.peek_char(k)) : Code{}; };
+    const bool library = code(0) == Code::use && code(1) == Code::spectrum;
+    const bool named = code(2) == Code::assign || code(2) == Code::colon || code(2) == Code::open_curly;
+    if (length == 1 && is_reserved(code(1)) && (library || named)) ++length;
+    in.bump(length);
     return true;
   }
 };

@@ -118,7 +118,9 @@ std::string counts(const RunReport& report) {
 std::string claim_text(const ClaimReport& claim, const Plan& plan) {
   std::string text = claim.text;
   if (!claim.reason.empty()) text += fmt::format("  ({})", claim.reason);
-  if (claim.tally.weakest && claim.tally.selected > 0) text += fmt::format("; closest{}", place_of(claim, plan));
+  // A single point has no coordinates to name.
+  const std::string place = claim.tally.weakest && claim.tally.selected > 0 ? place_of(claim, plan) : "";
+  if (!place.empty()) text += "; closest" + place;
   return text;
 }
 

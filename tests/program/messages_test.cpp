@@ -67,6 +67,7 @@ TEST_CASE("the command line's errors are JSON lines and name what was meant") {
       {{"run", "m.tarn", "--jobs", "0"}, "`0`"},
       {{"run", "m.tarn", "--sample", "1.5"}, "`1.5`"},
       {{"run", "m.tarn", "--time-limit", "soon"}, "`soon`"},
+      {{"run", "m.tarn", "--time-limit", "5"}, "90s, 15min or 2h"},
       {{"run", "m.tarn", "--set", "limit"}, "`limit`"},
       {{"run", "m.tarn", "other.tarn"}, "`other.tarn`"},
       {{"check", "m.tarn", "--also-read", "nowhere"}, "`nowhere`"},
@@ -99,6 +100,8 @@ TEST_CASE("a refused folder, a failed claim and a missing file are JSON lines") 
   CHECK(claims[0]["kind"] == "claim_fails");
   CHECK(claims[0]["file"] == "m.tarn");
   CHECK(claims[0]["line"] == 11);
+  // There is one point, which has no coordinates.
+  CHECK(claims[0]["message"].get<std::string>().find("closest") == std::string::npos);
   const auto other = run_json(scratch, {"run", "m.tarn", "--out", "a"}, 2);
   REQUIRE(other.size() == 1);
   CHECK(other[0]["kind"] == "other_key");
