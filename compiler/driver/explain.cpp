@@ -166,7 +166,7 @@ void write_cost(Out& out, const Prepared& prepared) {
   const runtime::Plan& plan = prepared.plan;
   constexpr double kMib = 1 << 20;
   const auto need = runtime::memory_needed(plan, runtime::lanes_used(plan, prepared.kernel));
-  if (plan.equation == runtime::Equation::davies) {
+  if (plan.choice.equation == runtime::Equation::davies) {
     const std::size_t all = std::size_t{1} << plan.chip.qubits.size();
     const std::size_t kept = std::min<std::size_t>(all, plan.levels.value_or(static_cast<std::uint32_t>(all)));
     line(out, "\n  davies: {} of {} levels, {} pairs of them, {} noise operator{}", kept, all, kept * (kept - 1) / 2,
@@ -177,7 +177,7 @@ void write_cost(Out& out, const Prepared& prepared) {
            spacing->s);
     }
   }
-  if (plan.equation != runtime::Equation::none) {
+  if (plan.choice.equation != runtime::Equation::none) {
     line(out, "  memory of a run: about {:.3g} MiB, and {:.3g} MiB more for each further job", (need.common + need.each_job) / kMib,
          need.each_job / kMib);
   }

@@ -155,8 +155,8 @@ runtime::Plan lower_experiment(const Instance& instance, const SourceSet& source
   }
   if (instance.begin) plan.begin = lower_begin(*instance.begin, rows);
   for (const PacePieceI& piece : instance.pace) plan.pace.push_back(lower_piece(piece, sources, rows));
-  plan.equation = static_cast<runtime::Equation>(instance.equation);
-  plan.lamb_shift = instance.lamb_shift;
+  plan.choice.equation = static_cast<runtime::Equation>(instance.equation);
+  plan.choice.lamb_shift = instance.lamb_shift;
   plan.levels = instance.levels;
   for (const ReadingI& reading : instance.readings) plan.readings.push_back(lower_reading(reading, rows));
   for (const ObservableI& o : instance.observables) plan.observables.push_back(lower_observable(o, instance, sources, rows));

@@ -43,7 +43,7 @@ std::vector<Visit> visits_of(std::span<const Job> jobs, bool density) {
 
 /// Jobs that fit the lanes, in one go.
 Outcomes propagate(const PlanModel& model, std::span<const Job> jobs, const Interrupted& interrupted) {
-  const bool density = model.plan().equation == Equation::lindblad;
+  const bool density = model.plan().choice.equation == Equation::lindblad;
   const std::vector<Visit> visits = visits_of(jobs, density);
   std::vector<LinearRun> runs;
   for (const Job& job : jobs) runs.push_back(linear_run_of(*job.task));
@@ -85,7 +85,7 @@ std::vector<Job> jobs_of(std::span<PointTask* const> tasks, bool density) {
 
 /// One run of every task.
 void run_once(const PlanModel& model, std::span<PointTask* const> tasks, const Interrupted& interrupted) {
-  const bool density = model.plan().equation == Equation::lindblad;
+  const bool density = model.plan().choice.equation == Equation::lindblad;
   for (PointTask* task : tasks) task->begin_run();
   const std::vector<Job> jobs = jobs_of(tasks, density);
   std::vector<Counters> counters(tasks.size());

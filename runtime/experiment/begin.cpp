@@ -69,6 +69,9 @@ struct Builder {
   Result<Mixture, RunError> operator()(const BeginState& state) const { return pure(product_state(state.letters)); }
   Result<Mixture, RunError> operator()(const BeginThermal& thermal) const;
   Result<Mixture, RunError> operator()(const BeginPopulations& populations) const;
+  Result<Mixture, RunError> operator()(const BeginSteady&) const {
+    return Unexpected{RunError{"not_available", "`begin steady` is not available yet"}};
+  }
 };
 
 Result<Mixture, RunError> Builder::operator()(const BeginThermal& thermal) const {

@@ -94,7 +94,7 @@ Result<std::vector<BathFunctions>, RunError> baths_of(const PointTask& task, std
       const auto n = static_cast<Eigen::Index>(w.size());
       Eigen::Map<Eigen::ArrayXd>(out, n) = shared->rate(Eigen::Map<const Eigen::ArrayXd>(w.data(), n));
     };
-    if (!plan.lamb_shift) continue;
+    if (!plan.choice.lamb_shift) continue;
     const auto table = std::make_shared<const ShiftTable>(ShiftFunction(*shared), width);
     both.shift = [table](std::span<const double> w, double* out) {
       const auto n = static_cast<Eigen::Index>(w.size());

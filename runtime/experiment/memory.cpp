@@ -34,9 +34,9 @@ MemoryNeed memory_needed(const Plan& plan, std::size_t lanes) {
   MemoryNeed need;
   const double vectors = reads_levels(plan) ? 8 : 1;
   need.each_job = vectors * kComplex * dimension * points;
-  if (plan.equation == Equation::schroedinger) need.each_job += kVectors * kComplex * dimension * points;
-  if (plan.equation == Equation::lindblad) need.each_job += kVectors * kComplex * dimension * dimension * points;
-  if (plan.equation == Equation::davies) {
+  if (plan.choice.equation == Equation::schroedinger) need.each_job += kVectors * kComplex * dimension * points;
+  if (plan.choice.equation == Equation::lindblad) need.each_job += kVectors * kComplex * dimension * dimension * points;
+  if (plan.choice.equation == Equation::davies) {
     const double kept = plan.levels ? std::min(dimension, static_cast<double>(*plan.levels)) : dimension;
     need.each_job += kNodes * 8 * dimension * kept + 20 * kComplex * dimension * dimension;
   }

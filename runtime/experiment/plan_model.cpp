@@ -27,11 +27,11 @@ bool jumps_read_t(const Plan& plan, const Functions& functions) {
 }
 
 std::uint32_t generator_of(const Plan& plan) {
-  return plan.equation == Equation::lindblad ? kLiouvillian : kSchroedinger;
+  return plan.choice.equation == Equation::lindblad ? kLiouvillian : kSchroedinger;
 }
 
 bool integrates(const Plan& plan) {
-  return plan.equation == Equation::schroedinger || plan.equation == Equation::lindblad;
+  return plan.choice.equation == Equation::schroedinger || plan.choice.equation == Equation::lindblad;
 }
 
 }  // namespace
@@ -50,7 +50,7 @@ PlanModel::PlanModel(const Plan& plan, const Kernel& kernel, std::span<const Tab
   TARN_CHECK(kernel.prepare(generator_)(prepared_.data()) == TARN_OK);
   lanes_ = lanes_used(plan, kernel);
   reads_t_ = !plan.chip.drive.groups.empty();
-  if (!reads_t_ && plan.equation == Equation::lindblad) {
+  if (!reads_t_ && plan.choice.equation == Equation::lindblad) {
     reads_t_ = jumps_read_t(plan, Functions(kernel, tables, plan));
   }
 }

@@ -63,7 +63,7 @@ Result<Done, RunError> PointTask::prepare() {
   if (!plan_.begin || plan_.scan) {
     return Unexpected{RunError{"no_state", "an observable reads the state, but there is none without `begin` and dynamics"}};
   }
-  if (plan_.equation == Equation::none && !timeline_.segments.empty()) {
+  if (plan_.choice.equation == Equation::none && !timeline_.segments.empty()) {
     return Unexpected{RunError{"no_equation", "an observable reads the state along the pace, which takes an `equation`"}};
   }
   auto begin = begin_state(plan_, levels_, timeline_.first_s, settings_);
@@ -210,7 +210,7 @@ void PointTask::end_run(const Counters& counters) {
   }
   tolerance_ *= kTighter;
   coarser_.clear();
-  coarser_.push_back({std::move(fine_), plan_.equation == Equation::lindblad ? kOfLooserDensity : kOfLooserKet});
+  coarser_.push_back({std::move(fine_), plan_.choice.equation == Equation::lindblad ? kOfLooserDensity : kOfLooserKet});
 }
 
 void PointTask::end_coarser_run(Weights weights) {

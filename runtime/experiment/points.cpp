@@ -34,7 +34,7 @@ class Pool {
  public:
   Pool(std::span<const PointItem> items, const PointsOptions& options) : items_(items), options_(options) {
     for (const PointItem& item : items) {
-      const bool davies = item.model->plan().equation == Equation::davies;
+      const bool davies = item.model->plan().choice.equation == Equation::davies;
       if (davies && !davies_[item.model]) davies_[item.model] = std::make_unique<DaviesPoints>(*item.model, options.jobs + 1);
     }
     make_groups();
@@ -136,7 +136,7 @@ void Pool::run_group(const Group& group) {
     owned.push_back(std::make_unique<PointTask>(model, items_[i].index, Watch{interrupted, share}));
     tasks.push_back(owned.back().get());
   }
-  if (model.plan().equation == Equation::davies) davies_.at(&model)->advance(*tasks.front(), interrupted);
+  if (model.plan().choice.equation == Equation::davies) davies_.at(&model)->advance(*tasks.front(), interrupted);
   else advance(model, tasks, interrupted);
   const std::scoped_lock lock(reporting_);
   for (std::size_t k = 0; k < group.size(); ++k) {

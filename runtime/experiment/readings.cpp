@@ -34,7 +34,8 @@ Eigen::MatrixXcd block_of(const Eigen::MatrixXcd& left, const Eigen::MatrixXcd& 
 
 bool reads_state(const Reading& reading) {
   return !std::holds_alternative<ReadLevel>(reading) && !std::holds_alternative<ReadGap>(reading) &&
-         !std::holds_alternative<ReadReduction>(reading);
+         !std::holds_alternative<ReadReduction>(reading) && !std::holds_alternative<ReadRelaxation>(reading) &&
+         !std::holds_alternative<ReadDephasing>(reading) && !std::holds_alternative<ReadVerdict>(reading);
 }
 
 bool reads_target(const Reading& reading) {
@@ -124,6 +125,12 @@ struct InstantReadings::Preparer {
     return done(OfSpace{lettered_space(read.letters), 0}, kOfProjector);
   }
   Outcome operator()(const ReadReduction&) const { return done(None{}, 0); }
+  Outcome operator()(const ReadRelaxation&) const { return not_yet("T1"); }
+  Outcome operator()(const ReadDephasing&) const { return not_yet("T2"); }
+  Outcome operator()(const ReadVerdict&) const { return not_yet("verdict"); }
+  static Outcome not_yet(const std::string& word) {
+    return Unexpected{RunError{"not_available", "`" + word + "` is not available yet"}};
+  }
 
   /// The reading has no value at this instant; others may.
   Outcome lacking(const std::string& why) const {

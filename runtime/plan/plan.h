@@ -82,6 +82,14 @@ struct Coupling {
   std::string what;  ///< As shown: Z(q[0]) ~ cold.
 };
 
+/// Couplings first .. first + count - 1 have copies of one bath that are not independent: entry (i, j), row after row,
+/// is the correlation of copy i and copy j. Symmetric, 1 on the diagonal, no negative eigenvalue.
+struct Correlation {
+  std::uint32_t first = 0, count = 0;
+  std::vector<std::uint32_t> elements;  ///< count^2 rows of set kSettings.
+  Place place;
+};
+
 /// A Lindblad operator as written; factors may be complex.
 struct Jump {
   OperatorSum op;
@@ -101,6 +109,7 @@ struct Chip {
   OperatorSum drive;        ///< Terms in t.
   std::vector<Bath> baths;
   std::vector<Coupling> couplings;
+  std::vector<Correlation> correlations;
   std::vector<Jump> jumps;
   std::vector<Kink> kinks;
   /// Input slots that the Hamiltonian without its terms in t and the noise operators read: where
@@ -117,7 +126,8 @@ struct BeginThermal { std::optional<Setting> temperature; };
 struct BeginPlus {};
 struct BeginState { std::string letters; };  ///< One of 0 1 + - for each qubit.
 struct BeginPopulations { std::vector<Setting> weights; };
-using Begin = std::variant<BeginGround, BeginThermal, BeginPlus, BeginState, BeginPopulations>;
+struct BeginSteady {};  ///< The stationary state of the equation at the first s.
+using Begin = std::variant<BeginGround, BeginThermal, BeginPlus, BeginState, BeginPopulations, BeginSteady>;
 
 struct PaceStart { Setting s; };
 struct PaceRamp { Setting to, over; };
@@ -126,7 +136,26 @@ struct PaceStep { Setting to; };
 struct PaceFollow { std::vector<double> t, s; Place place; };  ///< Linear between samples; t from 0.
 using PacePiece = std::variant<PaceStart, PaceRamp, PaceHold, PaceStep, PaceFollow>;
 
-enum class Equation : std::uint8_t { none, schroedinger, lindblad, davies };
+enum class Equation : std::uint8_t { none, schroedinger, lindblad, davies, redfield, coarse_grained, universal, hierarchy };
+/// Of redfield: coefficients in the limit of long times, integrated up to t, or driven with the anneal.
+enum class Memory : std::uint8_t { markov, growing, driven };
+
+/// An equation of motion with what it was given.
+struct EquationChoice {
+  std::string label;                   ///< As results and `under` name it; empty where there is one only.
+  Equation equation = Equation::none;
+  bool lamb_shift = true;
+  Memory memory = Memory::markov;
+  std::optional<Setting> window;       ///< coarse_grained [ns]; none: sqrt(tau_SB tau_B) of each bath.
+  std::optional<std::uint32_t> depth;  ///< hierarchy; none: raised until the answers stand.
+  Place place;
+};
+
+/// Quantum trajectories in place of a density matrix.
+struct Trajectories {
+  std::uint32_t count = 0;
+  std::uint64_t seed = 0;
+};
 
 enum class StateSetKind : std::uint8_t { ground, level, state, any, target };
 struct StateSet {
@@ -146,11 +175,14 @@ struct ReadGap {};
 struct ReadPurity {};
 struct ReadCoherence { std::uint32_t row, column; };      ///< |rho| between two levels
 struct ReadFidelity { std::string letters; };
+struct ReadRelaxation {};                                 ///< T1 [ns], of the generator standing still
+struct ReadDephasing { std::uint32_t row, column; };      ///< T2 of two levels [ns]
+struct ReadVerdict {};                                    ///< 0 within, 1 marginal, 2 outside, the worst so far
 enum class Over : std::uint8_t { lowest, highest, final };
 /// lowest(x), highest(x), final(x) of an observable that has a trace or a scan.
 struct ReadReduction { Over over; std::uint32_t observable; };
 using Reading = std::variant<ReadPopulation, ReadMean, ReadMeanEnergy, ReadLevel, ReadGap, ReadPurity,
-                             ReadCoherence, ReadFidelity, ReadReduction>;
+                             ReadCoherence, ReadFidelity, ReadReduction, ReadRelaxation, ReadDephasing, ReadVerdict>;
 
 struct AtEnd {};
 struct AtTime { Setting time; };
@@ -190,6 +222,7 @@ struct Claim {
   ClaimNode holds;
   std::optional<ClaimNode> where;
   std::vector<std::uint32_t> observables;   ///< What claim and condition read.
+  bool under_all = false;                   ///< Each of them under a named equation: judged once a point.
   Place place;
 };
 
@@ -217,13 +250,19 @@ struct Plan {
   std::vector<Parameter> parameters;
   std::optional<Begin> begin;
   std::vector<PacePiece> pace;
-  Equation equation = Equation::none;
-  bool lamb_shift = true;
-  std::optional<std::uint32_t> levels;  ///< Lowest levels kept; none: all.
+  EquationChoice choice;                ///< The one that this plan runs.
+  std::vector<EquationChoice> compared; ///< `each of`: all of them, `choice` being one; empty where there is one only.
+  std::optional<std::uint32_t> levels;  ///< Lowest levels kept; none: all, or as `levels_auto` says.
+  bool levels_auto = false;             ///< As many as population and tolerance ask for.
+  std::optional<Trajectories> trajectories;
   std::vector<Reading> readings;
   std::uint32_t reading_slot = 0;
   std::vector<Observable> observables;
   std::uint32_t observable_slot = 0;    ///< Observable o stands in slot observable_slot + o for kClaims.
+  /// `observable under label`: observable `observable` of compared[choice] stands in slot under_slot + i.
+  struct Under { std::uint32_t choice, observable; };
+  std::vector<Under> under;
+  std::uint32_t under_slot = 0;
   bool distribution_at_end = false;
   std::vector<Claim> claims;
   std::vector<Axis> axes;               ///< First axis slowest.

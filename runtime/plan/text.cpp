@@ -69,6 +69,9 @@ void write_chip(Out& out, const Chip& chip) {
     line(out, "  noise {}: bath {}", coupling.what, coupling.bath);
     write_operator(out, coupling.op, chip.qubits.size());
   }
+  for (const Correlation& c : chip.correlations) {
+    line(out, "  correlation of noise {} .. {}: settings {}", c.first, c.first + c.count - 1, fmt::join(c.elements, " "));
+  }
   for (const Jump& jump : chip.jumps) {
     line(out, "  jump {}", jump.what);
     write_operator(out, jump.op, chip.qubits.size());
@@ -85,7 +88,8 @@ std::string text(const Begin& begin) {
             },
             [](const BeginPlus&) { return std::string("plus"); },
             [](const BeginState& b) { return "state " + b.letters; },
-            [](const BeginPopulations& b) { return fmt::format("populations of {} levels", b.weights.size()); }},
+            [](const BeginPopulations& b) { return fmt::format("populations of {} levels", b.weights.size()); },
+            [](const BeginSteady&) { return std::string("steady"); }},
       begin);
 }
 
@@ -127,7 +131,10 @@ std::string text(const Reading& reading) {
             [](const ReadFidelity& r) { return "fidelity with " + r.letters; },
             [](const ReadReduction& r) {
               return fmt::format("{} of observable {}", kOver[static_cast<int>(r.over)], r.observable);
-            }},
+            },
+            [](const ReadRelaxation&) { return std::string("T1"); },
+            [](const ReadDephasing& r) { return fmt::format("T2 of levels {} and {}", r.row, r.column); },
+            [](const ReadVerdict&) { return std::string("verdict"); }},
       reading);
 }
 
@@ -150,6 +157,41 @@ std::string text(const ClaimNode& node) {
   if (node.kind == ClaimKind::no) return "not (" + text(node.children.front()) + ")";
   const char* word = node.kind == ClaimKind::all ? "and" : "or";
   return fmt::format("({}) {} ({})", text(node.children[0]), word, text(node.children[1]));
+}
+
+std::string text(const EquationChoice& choice) {
+  static constexpr const char* kEquations[] = {"none",     "schroedinger",   "lindblad",  "davies",
+                                               "redfield", "coarse_grained", "universal", "hierarchy"};
+  static constexpr const char* kMemories[] = {"markov", "growing", "driven"};
+  std::string result = kEquations[static_cast<int>(choice.equation)];
+  if (!choice.label.empty()) result = choice.label + " = " + result;
+  if (choice.equation == Equation::redfield) result += fmt::format(", memory {}", kMemories[static_cast<int>(choice.memory)]);
+  if (choice.equation == Equation::coarse_grained) {
+    result += choice.window ? fmt::format(", window setting {}", choice.window->row) : ", window auto";
+  }
+  if (choice.equation == Equation::hierarchy) {
+    result += choice.depth ? fmt::format(", depth {}", *choice.depth) : ", depth raised until the answers stand";
+  }
+  return result + (choice.lamb_shift ? "" : ", shift off");
+}
+
+void write_equation(Out& out, const Plan& plan) {
+  line(out, "equation {}", text(plan.choice));
+  for (const EquationChoice& choice : plan.compared) line(out, "  one of {}", text(choice));
+  if (plan.levels) line(out, "levels {}", *plan.levels);
+  if (plan.levels_auto) line(out, "levels auto");
+  if (plan.trajectories) line(out, "trajectories {} seed {}", plan.trajectories->count, plan.trajectories->seed);
+}
+
+void write_claims(Out& out, const Plan& plan) {
+  for (std::size_t i = 0; i < plan.under.size(); ++i) {
+    const Plan::Under& under = plan.under[i];
+    line(out, "slot {}: observable {} under {}", plan.under_slot + i, under.observable, plan.compared[under.choice].label);
+  }
+  for (const Claim& claim : plan.claims) {
+    line(out, "expect {}{}: {}{}", text(claim.holds), claim.where ? " where " + text(*claim.where) : "", claim.text,
+         claim.under_all ? ", once a point" : "");
+  }
 }
 
 void write_grid(Out& out, const Plan& plan) {
@@ -176,15 +218,13 @@ std::string letters(const PauliWord& word, std::size_t qubits) {
 }
 
 std::string to_text(const Plan& plan) {
-  static constexpr const char* kEquations[] = {"none", "schroedinger", "lindblad", "davies"};
   Out out;
   line(out, "experiment {}", plan.experiment);
   for (const Parameter& p : plan.parameters) {
     line(out, "parameter {} in slot {}: {} {}", p.name, p.slot, p.value / p.unit.factor, p.unit.label);
   }
   write_chip(out, plan.chip);
-  line(out, "equation {}{}", kEquations[static_cast<int>(plan.equation)], plan.lamb_shift ? "" : ", shift off");
-  if (plan.levels) line(out, "levels {}", *plan.levels);
+  write_equation(out, plan);
   if (plan.begin) line(out, "begin {}", text(*plan.begin));
   for (const PacePiece& piece : plan.pace) line(out, "pace {}", text(piece));
   for (std::size_t r = 0; r < plan.readings.size(); ++r) {
@@ -197,9 +237,7 @@ std::string to_text(const Plan& plan) {
   }
   if (plan.distribution_at_end) line(out, "observe distribution at end");
   write_grid(out, plan);
-  for (const Claim& claim : plan.claims) {
-    line(out, "expect {}{}: {}", text(claim.holds), claim.where ? " where " + text(*claim.where) : "", claim.text);
-  }
+  write_claims(out, plan);
   line(out, "tolerance {}", plan.tolerance);
   for (const std::string& what : plan.left_out) line(out, "left out: {}", what);
   for (const std::string& remark : plan.remarks) line(out, "remark: {}", remark);

@@ -302,7 +302,7 @@ Plan common_plan() {
   plan.observable_slot = hand::kObservables;
   plan.pace = {PaceRamp{setting(2), setting(0)}};
   plan.begin = BeginGround{};
-  plan.equation = Equation::schroedinger;
+  plan.choice.equation = Equation::schroedinger;
   plan.points = {0};
   return plan;
 }

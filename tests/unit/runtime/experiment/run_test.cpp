@@ -141,7 +141,7 @@ TEST_CASE("a two-level sweep through the crossing") {
 TEST_CASE("decay by a Lindblad operator") {
   // Population of |1> under sqrt(rate) |0><1|: exp(-rate t); coherence exp(-rate t/2).
   Plan plan = hand::one_qubit_plan();
-  plan.equation = Equation::lindblad;
+  plan.choice.equation = Equation::lindblad;
   hold_at_end(plan);
   set(plan, 0, 0);
   set(plan, 1, 2.2);
@@ -159,7 +159,7 @@ TEST_CASE("relaxation by Davies' equation of a qubit that stands still") {
   // Golden rule with A = Z: 1/T1 = (D/Om)^2 [gamma(Om) + gamma(-Om)], gamma(w) = 2 pi J(w)/(1 - exp(-w/theta));
   // stationary state: Gibbs. Source: Quantum Dissipative Systems (World Scientific).
   Plan plan = hand::one_qubit_plan();
-  plan.equation = Equation::davies;
+  plan.choice.equation = Equation::davies;
   hold_at_end(plan);
   set(plan, 0, 1.5);
   set(plan, 1, 2.0);
@@ -187,7 +187,7 @@ TEST_CASE("relaxation by Davies' equation of a qubit that stands still") {
 
 TEST_CASE("states to begin with") {
   Plan plan = hand::one_qubit_plan();
-  plan.equation = GENERATE(Equation::none, Equation::schroedinger, Equation::davies);
+  plan.choice.equation = GENERATE(Equation::none, Equation::schroedinger, Equation::davies);
   plan.pace = {PaceStart{setting(2)}};
   set(plan, 0, 1.5);
   set(plan, 1, 2.0);
@@ -233,7 +233,7 @@ TEST_CASE("states to begin with") {
 
 TEST_CASE("a scan of the gap, its lowest value and a claim on it") {
   Plan plan = hand::one_qubit_plan();
-  plan.equation = Equation::none;
+  plan.choice.equation = Equation::none;
   plan.begin.reset();
   plan.pace.clear();
   set(plan, 0, 0.8);
@@ -445,7 +445,7 @@ TEST_CASE("moments: at a time, at an s, and those that are never met") {
   const RunReport nothing = run(alone, hand::one_qubit(false));
   CHECK(nothing.points[0].status == kStatusNotMet);
   plan.observables.resize(1);
-  plan.equation = Equation::none;
+  plan.choice.equation = Equation::none;
   CHECK(run(plan, hand::one_qubit(false)).points[0].error->kind == "no_equation");
 }
 

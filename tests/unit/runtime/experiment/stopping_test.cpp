@@ -37,7 +37,7 @@ bool stops_after(std::size_t asks, const Plan& plan, const Kernel& kernel) {
 
 Plan scan_plan(std::size_t places) {
   Plan plan = hand::one_qubit_plan();
-  plan.equation = Equation::none;
+  plan.choice.equation = Equation::none;
   plan.begin.reset();
   plan.pace.clear();
   plan.scan = Scan{};
@@ -49,7 +49,7 @@ Plan scan_plan(std::size_t places) {
 /// A two-qubit chip in a bath, ramped over a long time and looked at once.
 Plan davies_plan(bool with_drive) {
   Plan plan = hand::two_qubit_plan(with_drive);
-  plan.equation = Equation::davies;
+  plan.choice.equation = Equation::davies;
   plan.parameters[2].value = 1.1;  // the temperature
   plan.parameters[hand::kTa].value = 500;
   Bath bath;
