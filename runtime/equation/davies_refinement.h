@@ -10,15 +10,10 @@
 #include <optional>
 #include <vector>
 
+#include "runtime/equation/coarser_states.h"
 #include "runtime/equation/davies.h"
 
 namespace tarn::runtime {
-
-/// States at the times wanted that are less good than an answer's.
-struct CoarserStates {
-  std::vector<Density> states;
-  double weight = 1;  ///< Error of an observable of the answer, over its distance from here.
-};
 
 struct DaviesAnswer {
   std::vector<Density> states;  ///< At the times wanted, computational basis, N x N.
