@@ -281,6 +281,25 @@ std::complex<double> PanelSeries::fourier(double t) const {
   return sum;
 }
 
+PanelSeries PanelSeries::until(double x) const {
+  PanelSeries out = *this;
+  while (!out.panels_.empty() && out.panels_.back().left >= x) out.panels_.pop_back();
+  if (out.panels_.empty() || out.panels_.back().right <= x) return out;
+  // A polynomial on part of its panel is a polynomial of the same degree.
+  Panel& last = out.panels_.back();
+  out.coefficients_.resize(last.first);
+  const double half = 0.5 * (x - last.left);
+  Row value{};
+  for (std::size_t i = 0; i < kTerms; ++i) value[i] = this->value(last.left + half * (1.0 + rule().node[i]));
+  for (std::size_t n = 0; n < last.count; ++n) {
+    double sum = 0.0;
+    for (std::size_t i = 0; i < kTerms; ++i) sum += rule().project[n][i] * value[i];
+    out.coefficients_.push_back(sum);
+  }
+  last.right = x;
+  return out;
+}
+
 std::vector<double> PanelSeries::edges() const {
   std::vector<double> all;
   for (const Panel& panel : panels_) all.push_back(panel.left);

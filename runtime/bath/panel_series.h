@@ -43,6 +43,9 @@ class PanelSeries {
 
   double integral() const;
 
+  /// The same series, cut off above `x`.
+  PanelSeries until(double x) const;
+
   /// Estimate of max |f - series|: the largest of the last three terms on the worst panel.
   /// For a panel that ends in a singularity of f it may be low by a factor of ten.
   double error() const { return error_; }
