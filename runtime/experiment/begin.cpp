@@ -6,6 +6,7 @@
 
 #include "lang/support/check.h"
 #include "runtime/experiment/words.h"
+#include "runtime/linear/eigensystem.h"
 
 namespace tarn::runtime {
 namespace {
@@ -70,7 +71,7 @@ struct Builder {
   Result<Mixture, RunError> operator()(const BeginThermal& thermal) const;
   Result<Mixture, RunError> operator()(const BeginPopulations& populations) const;
   Result<Mixture, RunError> operator()(const BeginSteady&) const {
-    return Unexpected{RunError{"not_available", "`begin steady` is not available yet"}};
+    return Unexpected{RunError{"no_steady_state", "this equation has no stationary state of its own"}};
   }
 };
 
@@ -120,6 +121,18 @@ Density density_of(const Mixture& mixture) {
     rho += mixture.weights[k] * mixture.kets[k] * mixture.kets[k].adjoint();
   }
   return rho;
+}
+
+Mixture mixture_of(const Density& rho) {
+  const Eigensystem<std::complex<double>> parts = eigensystem(rho);
+  Mixture mixture;
+  const double largest = parts.values.cwiseAbs().maxCoeff();
+  for (Index k = 0; k < parts.values.size(); ++k) {
+    if (std::abs(parts.values[k]) <= kNegligible * largest) continue;
+    mixture.kets.push_back(parts.vectors.col(k));
+    mixture.weights.push_back(parts.values[k]);
+  }
+  return mixture;
 }
 
 Result<Mixture, RunError> begin_state(const Plan& plan, ChipLevels& levels, double first_s,

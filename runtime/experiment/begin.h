@@ -7,7 +7,8 @@
 
 namespace tarn::runtime {
 
-/// Orthonormal kets with weights that are positive and sum to 1. One ket is a pure state.
+/// Orthonormal kets with weights that sum to 1; they are positive but where an equation's own stationary state is
+/// not. One ket is a pure state.
 struct Mixture {
   std::vector<Ket> kets;
   std::vector<double> weights;
@@ -15,8 +16,10 @@ struct Mixture {
 
 /// The mixture as a density matrix.
 Density density_of(const Mixture& mixture);
+/// The eigenvectors of a density matrix.
+Mixture mixture_of(const Density& rho);
 
-/// The state `begin` names, from the levels at the first s. A weight that belongs to one of several
+/// The state `begin` names (`steady` apart: who has the generator finds it), from the levels at the first s. A weight that belongs to one of several
 /// levels that coincide is shared evenly among them. Weights below 1e-16 of the largest are dropped.
 /// Errors: `not_finite`, `no_common_temperature` (baths differ or there are none),
 /// `negative_temperature`, `bad_populations` (negative, or their sum is not 1 within 1e-9),

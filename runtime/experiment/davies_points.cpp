@@ -9,66 +9,27 @@
 
 #include "lang/support/check.h"
 #include "runtime/bath/shift.h"
+#include "runtime/equation/davies_modes.h"
 #include "runtime/equation/davies_refinement.h"
 #include "runtime/experiment/bath_of_plan.h"
 #include "runtime/experiment/memory.h"
+#include "runtime/experiment/noise_of_point.h"
 #include "runtime/experiment/words.h"
 
 namespace tarn::runtime {
 namespace {
 
+using Complex = std::complex<double>;
+
 constexpr double kOfAvailable = 0.3;   ///< Of the memory there is: what tracks and tables may keep.
 constexpr double kUsualMemory = 4e9;   ///< Where the system does not tell.
 constexpr double kOfDistance = 0.03;  ///< Error of an answer over what the distance of the states could do to it.
-constexpr std::size_t kKeySamples = 257;
-constexpr double kNarrowest = 0.02;  ///< A track covers at least so much of s.
-
-std::vector<double> key_positions() {
-  std::vector<double> s(kKeySamples);
-  for (std::size_t i = 0; i < kKeySamples; ++i) s[i] = static_cast<double>(i) / (kKeySamples - 1);
-  return s;
-}
-
-/// Rows of the coefficients of H and of the noise operators.
-std::set<std::uint32_t> tracked_rows(const Plan& plan) {
-  std::set<std::uint32_t> rows;
-  const auto collect = [&](const OperatorSum& sum) {
-    for (const OperatorGroup& group : sum.groups) rows.insert(group.coefficient);
-  };
-  collect(plan.chip.hamiltonian);
-  for (const Coupling& coupling : plan.chip.couplings) collect(coupling.op);
-  return rows;
-}
-
-HamiltonianFamily family_of(const PlanModel& model, std::shared_ptr<const Functions> functions,
-                            std::span<const double> kinks) {
-  const Chip& chip = model.plan().chip;
-  HamiltonianFamily family;
-  family.qubits = static_cast<int>(chip.qubits.size());
-  family.rows = model.kernel().rows(kCoefficients);
-  family.hamiltonian = chip.hamiltonian;
-  for (const Coupling& coupling : chip.couplings) family.couplings.push_back(coupling.op);
-  family.coefficients = [functions](std::span<const double> s, double* out) {
-    const std::vector<double> values = functions->along(kCoefficients, s);
-    std::copy(values.begin(), values.end(), out);
-  };
-  family.derivative = [functions](std::span<const double> s, double* out) {
-    const std::vector<double> values = functions->slopes_along(kCoefficients, s);
-    std::copy(values.begin(), values.end(), out);
-  };
-  family.breaks.assign(kinks.begin(), kinks.end());
-  return family;
-}
 
 TrackOptions track_options(const PointTask& task) {
   TrackOptions options;
-  const RangeOfS range = range_of_s(task.timeline());
+  const RangeOfS range = followed_range(task.timeline());
   options.s_min = range.lowest;
   options.s_max = range.highest;
-  if (const double missing = kNarrowest - (range.highest - range.lowest); missing > 0) {
-    options.s_min = std::max(0.0, range.lowest - missing);
-    options.s_max = std::min(1.0, range.highest + missing);
-  }
   if (task.model().plan().levels) {
     options.levels = static_cast<Eigen::Index>(*task.model().plan().levels);
     // Where the cut between kept and left out levels is crossed, nodes gain nothing.
@@ -77,43 +38,36 @@ TrackOptions track_options(const PointTask& task) {
   return options;
 }
 
-/// gamma and S of every coupling's bath, good for frequencies up to `width`.
-Result<std::vector<BathFunctions>, RunError> baths_of(const PointTask& task, std::shared_ptr<const Functions> functions,
-                                                      double width) {
-  const Plan& plan = task.model().plan();
+/// gamma and S of every noise operator's bath, good for frequencies up to `width`.
+std::vector<BathFunctions> functions_of_baths(const Plan& plan, const NoiseOperators& noise,
+                                              std::span<const std::shared_ptr<const ThermalBath>> baths, double width) {
   std::vector<BathFunctions> made;
-  for (std::uint32_t b = 0; b < plan.chip.baths.size(); ++b) {
-    auto bath = make_bath(plan, b, task.settings(), functions);
-    if (!bath) return Unexpected{bath.error()};
-    if (const auto zero = bath->zero_rate(); !zero) {
-      return Unexpected{bath_error(plan, b, zero.error())};
-    }
-    const auto shared = std::make_shared<const ThermalBath>(std::move(bath).value());
+  for (const std::shared_ptr<const ThermalBath>& bath : baths) {
     BathFunctions& both = made.emplace_back();
-    both.rate = [shared](std::span<const double> w, double* out) {
+    both.rate = [bath](std::span<const double> w, double* out) {
       const auto n = static_cast<Eigen::Index>(w.size());
-      Eigen::Map<Eigen::ArrayXd>(out, n) = shared->rate(Eigen::Map<const Eigen::ArrayXd>(w.data(), n));
+      Eigen::Map<Eigen::ArrayXd>(out, n) = bath->rate(Eigen::Map<const Eigen::ArrayXd>(w.data(), n));
     };
     if (!plan.choice.lamb_shift) continue;
-    const auto table = std::make_shared<const ShiftTable>(ShiftFunction(*shared), width);
+    const auto table = std::make_shared<const ShiftTable>(ShiftFunction(*bath), width);
     both.shift = [table](std::span<const double> w, double* out) {
       const auto n = static_cast<Eigen::Index>(w.size());
       Eigen::Map<Eigen::ArrayXd>(out, n) = (*table)(Eigen::Map<const Eigen::ArrayXd>(w.data(), n));
     };
   }
-  std::vector<BathFunctions> of_coupling;
-  for (const Coupling& coupling : plan.chip.couplings) {
-    of_coupling.push_back(made[coupling.bath]);
-    of_coupling.back().alike = static_cast<int>(coupling.bath);
+  std::vector<BathFunctions> of_operator;
+  for (const std::uint32_t bath : noise.bath) {
+    of_operator.push_back(made[bath]);
+    of_operator.back().alike = static_cast<int>(bath);
   }
-  return of_coupling;
+  return of_operator;
 }
 
 /// The jumps as written, at fixed coefficients.
 Result<std::vector<LabJump>, RunError> jumps_of(const PointTask& task, const Functions& functions) {
   const Plan& plan = task.model().plan();
   const std::vector<double> here = functions.values(kCoefficients, task.timeline().first_s, 0);
-  const std::vector<double> s = key_positions();
+  const std::vector<double> s = sampled_positions();
   const std::vector<double> along = plan.chip.jumps.empty() ? std::vector<double>{} : functions.along(kCoefficients, s);
   std::vector<LabJump> jumps;
   for (const Jump& jump : plan.chip.jumps) {
@@ -173,68 +127,32 @@ void refine(PointTask& task, DaviesRefinement<Scalar> refinement) {
   }
 }
 
-std::shared_ptr<const Functions> functions_of(const PointTask& task) {
-  auto functions = std::make_shared<Functions>(task.model().kernel(), task.model().tables(), task.model().plan());
-  for (std::uint32_t i = 0; i < task.model().kernel().inputs(); ++i) functions->set_input(i, task.input(i));
-  return functions;
-}
-
 }  // namespace
 
 DaviesPoints::DaviesPoints(const PlanModel& model, std::size_t kept)
     : model_(model), memory_(std::make_shared<MemoryBudget>(kOfAvailable * memory_available().value_or(kUsualMemory))),
       tracks_(kept), tables_(kept) {}
 
-std::vector<double> DaviesPoints::track_key(const Functions& functions) const {
-  std::vector<double> key;
-  for (const std::uint32_t slot : model_.plan().chip.level_inputs) key.push_back(functions.input(slot));
-  return key;
-}
-
-/// True if every coefficient that tracking reads is finite at the places where it is looked at first.
-bool DaviesPoints::finite_levels(const Functions& functions) const {
-  const std::vector<double> s = key_positions();
-  const std::vector<double> all = functions.along(kCoefficients, s);
-  for (const std::uint32_t row : tracked_rows(model_.plan())) {
-    const auto first = all.begin() + static_cast<std::ptrdiff_t>(row * s.size());
-    if (!std::all_of(first, first + static_cast<std::ptrdiff_t>(s.size()), [](double x) { return std::isfinite(x); })) {
-      return false;
-    }
+Result<DaviesPoints::AnyTables, RunError> DaviesPoints::tables_for(PointTask& task, const Interrupted& interrupted) {
+  const Plan& plan = model_.plan();
+  const std::shared_ptr<const Functions> functions = functions_of(task);
+  if (!finite_levels(plan, *functions)) {
+    return Unexpected{RunError{"not_finite", "a coefficient of the Hamiltonian or of a noise operator is not finite"}};
   }
-  return true;
-}
-
-DaviesPoints::AnyTrack DaviesPoints::make_track(const PointTask& task, const Interrupted& interrupted) const {
-  const HamiltonianFamily family = family_of(model_, functions_of(task), task.positions());
+  const auto noise = independent_noise(plan, task.settings());
+  if (!noise) return Unexpected{noise.error()};
+  const auto baths = fast_baths(plan, task.settings(), functions);
+  if (!baths) return Unexpected{baths.error()};
   TrackOptions options = track_options(task);
   options.interrupted = interrupted;
   options.memory = memory_;
-  if (is_real(family)) return std::make_shared<const Track<double>>(dense_levels<double>(family), options);
-  using Complex = std::complex<double>;
-  return std::make_shared<const Track<Complex>>(dense_levels<Complex>(family), options);
-}
-
-Result<DaviesPoints::AnyTables, RunError> DaviesPoints::make_tables(const PointTask& task, const AnyTrack& any) const {
-  const double width = std::visit([](const auto& track) { return track->width(); }, any);
-  auto baths = baths_of(task, functions_of(task), std::max(1.05 * width, 1e-6));
-  if (!baths) return Unexpected{baths.error()};
-  return std::visit(
-      [&]<class Scalar>(const TrackOf<Scalar>& track) -> AnyTables {
-        return std::make_shared<const DaviesTables<Scalar>>(track, std::move(baths).value(), memory_);
-      },
-      any);
-}
-
-Result<DaviesPoints::AnyTables, RunError> DaviesPoints::tables_for(PointTask& task, const Interrupted& interrupted) {
-  const Chip& chip = model_.plan().chip;
-  const std::shared_ptr<const Functions> functions = functions_of(task);
-  std::vector<double> key = track_key(*functions);
-  if (!finite_levels(*functions)) {
-    return Unexpected{RunError{"not_finite", "a coefficient of the Hamiltonian or of a noise operator is not finite"}};
-  }
-  const TrackOptions options = track_options(task);
+  std::vector<double> key = levels_key(plan, *functions, task.settings());
   key.insert(key.end(), {options.s_min, options.s_max});
-  const AnyTrack track = tracks_.get(key, [&] { return make_track(task, interrupted); });
+  const AnyTrack track = tracks_.get(key, [&]() -> AnyTrack {
+    const HamiltonianFamily family = family_of(model_, functions, *noise, task.positions());
+    if (is_real(family)) return std::make_shared<const Track<double>>(dense_levels<double>(family), options);
+    return std::make_shared<const Track<Complex>>(dense_levels<Complex>(family), options);
+  });
   if (interrupted && interrupted()) return Unexpected{RunError{"interrupted", "stopped before the end", {}}};
   if (!std::visit([](const auto& typed) { return typed->resolved(); }, track)) {
     task.remark("levels change too fast somewhere along s to be followed; answers are marked by their errors at best");
@@ -243,11 +161,52 @@ Result<DaviesPoints::AnyTables, RunError> DaviesPoints::tables_for(PointTask& ta
   if (options.levels > 0 && kept > options.levels) {
     task.remark(fmt::format("{} levels are kept instead of {}: a cut below would part levels that coincide", kept, options.levels));
   }
-  for (std::uint32_t b = 0; b < chip.baths.size(); ++b) {
-    const std::vector<double> more = bath_fingerprint(model_.plan(), b, task.settings(), *functions);
+  for (std::uint32_t b = 0; b < plan.chip.baths.size(); ++b) {
+    const std::vector<double> more = bath_fingerprint(plan, b, task.settings(), *functions);
     key.insert(key.end(), more.begin(), more.end());
   }
-  return tables_.get(key, [&] { return make_tables(task, track); });
+  return tables_.get(key, [&]() -> AnyTables {
+    return std::visit([&]<class Scalar>(const TrackOf<Scalar>& typed) -> AnyTables {
+      const double width = std::max(1.05 * typed->width(), 1e-6);
+      return std::make_shared<const DaviesTables<Scalar>>(typed, functions_of_baths(plan, *noise, *baths, width), memory_);
+    }, track);
+  });
+}
+
+/// The generator at one s, and the levels that it is written in.
+struct DaviesPoints::Standing {
+  DaviesTable table;
+  Eigen::VectorXd energies;
+  Eigen::MatrixXcd vectors;
+};
+
+Result<DaviesPoints::Standing, RunError> DaviesPoints::standing(PointTask& task, double s, const Interrupted& interrupted) {
+  const auto tables = tables_for(task, interrupted);
+  if (!tables) return Unexpected{tables.error()};
+  return std::visit([&]<class Scalar>(const TablesOf<Scalar>& typed) -> Standing {
+    const Track<Scalar>& track = typed->track();
+    const Frame<Scalar> frame = track.at(s);
+    return {davies_table<Scalar>(track.model(), frame, frequency_groups(frame.energies, track.tolerance()), typed->baths()),
+            frame.energies, frame.vectors.template cast<Complex>()};
+  }, *tables);
+}
+
+Result<Mode, RunError> DaviesPoints::mode(PointTask& task, double s, std::optional<LevelPair> pair, const Interrupted& interrupted) {
+  const auto here = standing(task, s, interrupted);
+  if (!here) return Unexpected{here.error()};
+  const Eigen::Index levels = here->energies.size();
+  if (levels < 2 || (pair && std::max(pair->row, pair->column) >= levels)) return Unexpected{RunError{"no_such_level", "the chip has fewer levels"}};
+  const auto mode = pair ? coherence_mode(here->table, here->energies, pair->row, pair->column) : population_mode(here->table, here->energies);
+  if (!mode) return Unexpected{no_modes()};
+  return *mode;
+}
+
+Result<Density, RunError> DaviesPoints::steady(PointTask& task, double s, const Interrupted& interrupted) {
+  const auto here = standing(task, s, interrupted);
+  if (!here) return Unexpected{here.error()};
+  const auto state = stationary_state(here->table, here->energies);
+  if (!state) return Unexpected{no_steady_state()};
+  return Density(here->vectors * *state * here->vectors.adjoint());
 }
 
 void DaviesPoints::advance(PointTask& task, const Interrupted& interrupted) {

@@ -6,8 +6,10 @@
 #include <vector>
 
 #include "runtime/equation/davies.h"
+#include "runtime/equation/davies.h"
+#include "runtime/experiment/chip_family.h"
+#include "runtime/experiment/generator_at.h"
 #include "runtime/experiment/keyed_cache.h"
-#include "runtime/experiment/point.h"
 
 namespace tarn::runtime {
 
@@ -19,15 +21,13 @@ class DaviesPoints {
   /// has left holds them; the rest is made anew when needed.
   DaviesPoints(const PlanModel& model, std::size_t kept);
 
-  /// What points must share, bit by bit, to share a track: the coefficients of the Hamiltonian and
-  /// of the noise operators, sampled along s. Points that go one after the other are cheapest when
-  /// equal keys stand together.
-  std::vector<double> track_key(const Functions& functions) const;
-  bool finite_levels(const Functions& functions) const;
-
   /// Repeats until the task wants no run. Errors end up in the task: `bad_bath`,
   /// `jump_depends_on_s`, and those of davies_pass().
   void advance(PointTask& task, const Interrupted& interrupted);
+
+  /// As GeneratorAt has them (generator_at.h).
+  Result<Mode, RunError> mode(PointTask& task, double s, std::optional<LevelPair> pair, const Interrupted& interrupted);
+  Result<Density, RunError> steady(PointTask& task, double s, const Interrupted& interrupted);
 
  private:
   template <class Scalar>
@@ -37,9 +37,10 @@ class DaviesPoints {
   using AnyTrack = std::variant<TrackOf<double>, TrackOf<std::complex<double>>>;
   using AnyTables = std::variant<TablesOf<double>, TablesOf<std::complex<double>>>;
 
+  struct Standing;
+
   Result<AnyTables, RunError> tables_for(PointTask& task, const Interrupted& interrupted);
-  AnyTrack make_track(const PointTask& task, const Interrupted& interrupted) const;
-  Result<AnyTables, RunError> make_tables(const PointTask& task, const AnyTrack& track) const;
+  Result<Standing, RunError> standing(PointTask& task, double s, const Interrupted& interrupted);
 
   const PlanModel& model_;
   std::shared_ptr<MemoryBudget> memory_;

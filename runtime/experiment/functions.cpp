@@ -33,6 +33,11 @@ std::vector<double> Functions::along(std::uint32_t set, std::span<const double> 
   return call(kernel_.values(set), set, s, zeros, zeros);
 }
 
+std::vector<double> Functions::at(std::uint32_t set, std::span<const double> s, std::span<const double> t) const {
+  const std::vector<double> zeros(s.size(), 0.0);
+  return call(kernel_.values(set), set, s, t, zeros);
+}
+
 std::vector<double> Functions::slopes_along(std::uint32_t set, std::span<const double> s) const {
   TARN_CHECK(kernel_.derivatives(set) != nullptr);
   const std::vector<double> zeros(s.size(), 0.0);

@@ -30,7 +30,10 @@ class Functions {
   /// All rows of a set at every s, t = 0: out[row * s.size() + point].
   std::vector<double> along(std::uint32_t set, std::span<const double> s) const;
 
-  /// Likewise, their derivatives with respect to s. Precondition: the kernel has them.
+  /// Likewise at pairs (s, t).
+  std::vector<double> at(std::uint32_t set, std::span<const double> s, std::span<const double> t) const;
+
+  /// Likewise along s, their derivatives with respect to s. Precondition: the kernel has them.
   std::vector<double> slopes_along(std::uint32_t set, std::span<const double> s) const;
 
   /// The one row of a spectrum's set at every w [rad/ns].

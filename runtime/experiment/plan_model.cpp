@@ -44,15 +44,15 @@ std::size_t lanes_used(const Plan& plan, const Kernel& kernel) {
 PlanModel::PlanModel(const Plan& plan, const Kernel& kernel, std::span<const TableNumbers> tables)
     : plan_(plan), kernel_(kernel), tables_(tables),
       generator_(generator_of(plan)) {
+  reads_t_ = !plan.chip.drive.groups.empty();
+  if (!reads_t_ && plan.choice.equation != Equation::schroedinger && !plan.chip.jumps.empty()) {
+    reads_t_ = jumps_read_t(plan, Functions(kernel, tables, plan));
+  }
   if (!integrates(plan)) return;
   TARN_CHECK(kernel.generators() > generator_);
   prepared_ = AlignedArray(std::max<std::size_t>(1, kernel.prepared_doubles(generator_)));
   TARN_CHECK(kernel.prepare(generator_)(prepared_.data()) == TARN_OK);
   lanes_ = lanes_used(plan, kernel);
-  reads_t_ = !plan.chip.drive.groups.empty();
-  if (!reads_t_ && plan.choice.equation == Equation::lindblad) {
-    reads_t_ = jumps_read_t(plan, Functions(kernel, tables, plan));
-  }
 }
 
 Functions PlanModel::functions_at(std::uint64_t index) const {

@@ -32,6 +32,8 @@ class PlanModel {
   Entries entries() const;
   /// Points that go together: the lanes of the entries.
   std::size_t lanes() const { return lanes_; }
+  /// Some coefficient depends on t itself.
+  bool reads_t() const { return reads_t_; }
 
  private:
   const Plan& plan_;

@@ -66,13 +66,26 @@ Result<Done, RunError> PointTask::prepare() {
   if (plan_.choice.equation == Equation::none && !timeline_.segments.empty()) {
     return Unexpected{RunError{"no_equation", "an observable reads the state along the pace, which takes an `equation`"}};
   }
-  auto begin = begin_state(plan_, levels_, timeline_.first_s, settings_);
-  if (!begin) return Unexpected{begin.error()};
-  begin_ = std::move(begin).value();
+  const auto begun = find_begin();
+  if (!begun) return begun;
   tolerance_ = kFirstTolerance * plan_.tolerance;
   rounding_ = kEpsilon * largest_phase();
   shared_.assign(observations_.size(), rounding_);
   wants_run_ = true;
+  return Done{};
+}
+
+Result<Done, RunError> PointTask::find_begin() {
+  if (!begins_steady()) {
+    auto begin = begin_state(plan_, levels_, timeline_.first_s, settings_);
+    if (!begin) return Unexpected{begin.error()};
+    begin_ = std::move(begin).value();
+    return Done{};
+  }
+  if (!watch_.generator.steady) return Done{};
+  const auto rho = watch_.generator.steady(*this, timeline_.first_s);
+  if (!rho) return Unexpected{rho.error()};
+  begin_ = mixture_of(*rho);
   return Done{};
 }
 
@@ -152,8 +165,10 @@ Result<double, RunError> PointTask::find_width(const Observation& observation) {
 
 Result<InstantReadings, RunError> PointTask::make_readings(const Observation& observation) {
   if (watch_.interrupted && watch_.interrupted()) return Unexpected{RunError{"interrupted", "stopped before the end"}};
+  ModeAt mode;
+  if (watch_.generator.mode) mode = [this](double s, std::optional<LevelPair> pair) { return watch_.generator.mode(*this, s, pair); };
   return InstantReadings::make(plan_, readings_at(plan_, observation), observation.at, functions_, levels_, settings_,
-                               target_ ? &*target_ : nullptr);
+                               target_ ? &*target_ : nullptr, mode);
 }
 
 const InstantReadings* PointTask::readings_of(std::size_t observation) {
@@ -185,7 +200,7 @@ void PointTask::visit(std::size_t index, const State& state, double weight) {
     const InstantReadings* readings = readings_of(i);
     if (readings == nullptr) return;
     readings->add(state, weight, sums_[i]);
-    if (const auto* rho = std::get_if<Density>(&state)) shared_[i] = rounding_ * largest_coherence(*rho);
+    if (const auto* rho = std::get_if<Density>(&state)) shared_[i] = rounding_ * largest_coherence(*rho) + floor_;
     fine_[i].readings = readings->finish(sums_[i]);
     fine_[i].probes = sums_[i].probes;
     if (!observations_[i].distribution) continue;
@@ -210,7 +225,7 @@ void PointTask::end_run(const Counters& counters) {
   }
   tolerance_ *= kTighter;
   coarser_.clear();
-  coarser_.push_back({std::move(fine_), plan_.choice.equation == Equation::lindblad ? kOfLooserDensity : kOfLooserKet});
+  coarser_.push_back({std::move(fine_), plan_.choice.equation == Equation::schroedinger ? kOfLooserKet : kOfLooserDensity});
 }
 
 void PointTask::end_coarser_run(Weights weights) {

@@ -12,6 +12,7 @@
 
 #include "runtime/experiment/accuracy.h"
 #include "runtime/experiment/begin.h"
+#include "runtime/experiment/generator_at.h"
 #include "runtime/experiment/observations.h"
 #include "runtime/experiment/plan_model.h"
 
@@ -21,6 +22,7 @@ namespace tarn::runtime {
 struct Watch {
   Interrupted interrupted;
   std::function<void(double)> share;  ///< Told what share of a scan is done, place by place.
+  GeneratorAt generator = {};         ///< Of the plan's equation.
 };
 
 class PointTask {
@@ -44,6 +46,9 @@ class PointTask {
   std::span<const double> positions() const { return positions_; } ///< The same kinks in s.
   std::span<const double> times() const { return times_; }         ///< [ns], ascending.
   const Mixture& begin() const { return begin_; }
+  /// The run begins in the equation's stationary state. Where Watch::generator has none, who propagates finds it,
+  /// and begin() is empty.
+  bool begins_steady() const { return std::holds_alternative<BeginSteady>(*plan_.begin); }
 
   /// A run: begin_run(), then visit() for every ket of the mixture or for the density matrix
   /// (weight 1), then end_run(). `index` counts times().
@@ -57,6 +62,9 @@ class PointTask {
   void end_coarser_run(Weights weights);
   void end_best_run(const Counters& counters, std::span<const double> shared, bool last);
 
+  /// An error of the state, in the Frobenius norm, that all runs have in common.
+  void note_floor(double floor) { floor_ = floor; }
+
   void fail(RunError error);
   /// Population that left the levels kept, an upper estimate.
   void note_leakage(double leakage) { outcome_.leakage = leakage; }
@@ -67,6 +75,7 @@ class PointTask {
 
  private:
   Result<Done, RunError> prepare();
+  Result<Done, RunError> find_begin();
   Result<Done, RunError> prepare_observations();
   void note_held_offsets();
   void note_lacking(const InstantReadings& readings, double s);
@@ -110,6 +119,7 @@ class PointTask {
   std::vector<CoarserRun> coarser_;
   double rounding_ = 0;                            ///< Of coherences, by the phase they have gathered.
   std::vector<double> shared_;                     ///< Error of the state at each observation that all runs share.
+  double floor_ = 0;
   double tolerance_ = 0;
   bool wants_run_ = false;
   PointOutcome outcome_;

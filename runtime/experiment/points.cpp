@@ -10,8 +10,7 @@
 #include <optional>
 #include <thread>
 
-#include "runtime/experiment/advance.h"
-#include "runtime/experiment/davies_points.h"
+#include "runtime/experiment/equation_points.h"
 
 namespace tarn::runtime {
 namespace {
@@ -34,8 +33,7 @@ class Pool {
  public:
   Pool(std::span<const PointItem> items, const PointsOptions& options) : items_(items), options_(options) {
     for (const PointItem& item : items) {
-      const bool davies = item.model->plan().choice.equation == Equation::davies;
-      if (davies && !davies_[item.model]) davies_[item.model] = std::make_unique<DaviesPoints>(*item.model, options.jobs + 1);
+      if (!equations_[item.model]) equations_[item.model] = std::make_unique<EquationPoints>(*item.model, options.jobs + 1);
     }
     make_groups();
     outcomes_.resize(items.size());
@@ -64,7 +62,7 @@ class Pool {
 
   std::span<const PointItem> items_;
   const PointsOptions& options_;
-  std::map<const PlanModel*, std::unique_ptr<DaviesPoints>> davies_;
+  std::map<const PlanModel*, std::unique_ptr<EquationPoints>> equations_;
   std::vector<Group> groups_;
   std::vector<std::optional<PointOutcome>> outcomes_;
   std::atomic<std::size_t> next_ = 0;
@@ -76,15 +74,16 @@ class Pool {
   std::exception_ptr failure_;
 };
 
-/// Consecutive points of one plan share the lanes. Points with Davies' equation are put in an order
-/// in which those of one track follow each other, whatever the axes are.
+/// Consecutive points of one plan share the lanes. Points of equations in levels are put in an order
+/// in which those of one chip follow each other, whatever the axes are.
 void Pool::make_groups() {
   std::map<std::pair<const PlanModel*, std::vector<double>>, std::vector<Group>> by_track;
   std::vector<std::pair<const PlanModel*, std::vector<double>>> order;
   for (std::size_t i = 0; i < items_.size(); ++i) {
     const PlanModel* model = items_[i].model;
-    if (const auto found = davies_.find(model); found != davies_.end()) {
-      const std::pair key(model, found->second->track_key(model->functions_at(items_[i].index)));
+    if (equations_.at(model)->shares_levels()) {
+      const Functions functions = model->functions_at(items_[i].index);
+      const std::pair key(model, levels_key(model->plan(), functions, functions.values(kSettings, 0, 0)));
       if (!by_track.contains(key)) order.push_back(key);
       by_track[key].push_back({i});
       continue;
@@ -133,11 +132,10 @@ void Pool::run_group(const Group& group) {
   std::vector<PointTask*> tasks;
   for (const std::size_t i : group) {
     const auto share = [this, &noted = shares[owned.size()]](double now) { note_share(noted, now); };
-    owned.push_back(std::make_unique<PointTask>(model, items_[i].index, Watch{interrupted, share}));
+    owned.push_back(std::make_unique<PointTask>(model, items_[i].index, Watch{interrupted, share, equations_.at(&model)->generator(interrupted)}));
     tasks.push_back(owned.back().get());
   }
-  if (model.plan().choice.equation == Equation::davies) davies_.at(&model)->advance(*tasks.front(), interrupted);
-  else advance(model, tasks, interrupted);
+  equations_.at(&model)->advance(tasks, interrupted);
   const std::scoped_lock lock(reporting_);
   for (std::size_t k = 0; k < group.size(); ++k) {
     shares_ -= shares[k];

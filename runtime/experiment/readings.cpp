@@ -13,6 +13,7 @@ namespace {
 
 using Eigen::Index;
 
+constexpr double kOneMode = 0.9;  ///< Share of one mode below which a time is marked.
 constexpr double kOfProjector = 0.5;  ///< (1 + Z)/2: half of what a Pauli word moves by.
 
 Eigen::MatrixXcd single(std::complex<double> value) { return Eigen::MatrixXcd::Constant(1, 1, value); }
@@ -67,6 +68,7 @@ struct InstantReadings::Preparer {
   std::span<const double> settings;
   const Target* target;
   std::span<const double> coefficients;  ///< Of all operators at the instant.
+  const ModeAt& mode;
   Prepared& prepared;                    ///< To be filled.
   double& norm;
   std::vector<std::string>& reasons;  ///< Why values are lacking.
@@ -125,8 +127,16 @@ struct InstantReadings::Preparer {
     return done(OfSpace{lettered_space(read.letters), 0}, kOfProjector);
   }
   Outcome operator()(const ReadReduction&) const { return done(None{}, 0); }
-  Outcome operator()(const ReadRelaxation&) const { return not_yet("T1"); }
-  Outcome operator()(const ReadDephasing&) const { return not_yet("T2"); }
+  Outcome operator()(const ReadRelaxation&) const { return time_of("T1", std::nullopt); }
+  Outcome operator()(const ReadDephasing& read) const { return time_of("T2", LevelPair{read.row, read.column}); }
+  Outcome time_of(const std::string& name, std::optional<LevelPair> pair) const {
+    if (!mode) return Unexpected{RunError{"no_modes", "this equation has no generator that stands still, so that `" + name + "` has no value"}};
+    const auto found = mode(at.s, pair);
+    if (!found) return Unexpected{found.error()};
+    if (!(found->rate > 0)) return lacking("nothing decays that `" + name + "` could be read off");
+    if (found->share < kOneMode) reasons.push_back("`" + name + "` is marked: several modes share what decays, and the one it is of carries less than 90 %");
+    return done(OfLevels{{1 / found->rate, 0}}, 0);
+  }
   Outcome operator()(const ReadVerdict&) const { return not_yet("verdict"); }
   static Outcome not_yet(const std::string& word) {
     return Unexpected{RunError{"not_available", "`" + word + "` is not available yet"}};
@@ -162,13 +172,14 @@ InstantReadings::Preparer::Outcome InstantReadings::Preparer::operator()(const R
 
 Result<InstantReadings, RunError> InstantReadings::make(const Plan& plan, std::span<const std::uint32_t> rows,
                                                         Instant at, const Functions& functions, ChipLevels& levels,
-                                                        std::span<const double> settings, const Target* target) {
+                                                        std::span<const double> settings, const Target* target,
+                                                        const ModeAt& mode) {
   const std::vector<double> coefficients = functions.values(kCoefficients, at.s, at.t);
   InstantReadings readings;
   readings.prepared_.resize(plan.readings.size());
   readings.norms_.assign(plan.readings.size(), 0.0);
   for (const std::uint32_t row : rows) {
-    const Preparer prepare{plan, at, levels, settings, target, coefficients, readings.prepared_[row],
+    const Preparer prepare{plan, at, levels, settings, target, coefficients, mode, readings.prepared_[row],
                            readings.norms_[row], readings.lacking_};
     const auto done = std::visit(prepare, plan.readings[row]);
     if (!done) return Unexpected{done.error()};

@@ -8,6 +8,7 @@
 #include <span>
 #include <vector>
 
+#include "runtime/experiment/generator_at.h"
 #include "runtime/experiment/pace.h"
 #include "runtime/experiment/state_sets.h"
 
@@ -27,13 +28,18 @@ struct ReadingSums {
   std::vector<double> probes;
 };
 
+/// How |1><1| - |0><0|, or |row><column| of a pair, decays under the equation standing still at s. Empty where the
+/// equation has no such generator.
+using ModeAt = std::function<Result<Mode, RunError>(double s, std::optional<LevelPair> pair)>;
+
 class InstantReadings {
  public:
   /// Prepares readings `rows` of the plan at `at`; others and reductions stay 0.
   /// `target` is set if a reading needs it.
   static Result<InstantReadings, RunError> make(const Plan& plan, std::span<const std::uint32_t> rows, Instant at,
                                                 const Functions& functions, ChipLevels& levels,
-                                                std::span<const double> settings, const Target* target);
+                                                std::span<const double> settings, const Target* target,
+                                                const ModeAt& mode);
 
   ReadingSums empty_sums() const;
   /// Adds a state with its weight. The kets of a mixture are orthonormal and evolve unitarily.

@@ -1,0 +1,33 @@
+#pragma once
+/// \file What the baths of one grid point are to its equation.
+
+#include <memory>
+#include <span>
+#include <vector>
+
+#include "runtime/experiment/chip_family.h"
+#include "runtime/generator/operator_form.h"
+
+namespace tarn::runtime {
+
+/// One for every bath of the plan.
+using ThermalBaths = std::vector<std::shared_ptr<const ThermalBath>>;
+
+/// The baths of the plan at one point, checked: good for fast-noise equations (no infinite rate at zero
+/// frequency). Errors: `bad_bath`.
+Result<ThermalBaths, RunError> fast_baths(const Plan& plan, std::span<const double> settings,
+                                          std::shared_ptr<const Functions> functions);
+
+/// The averaging time of a bath for coupling operators of norm `norm` [ns]: sqrt(tau_SB tau_B), rounded to a
+/// quarter of an octave, so that anneals of similar length share their tables. tau_B is of a run of `duration`;
+/// 0: of 10 tau_SB. Source: the geometric mean is common practice; times: Quantum 4, 227 (2020). Errors: `bad_bath`.
+Result<double, RunError> automatic_window(const Plan& plan, std::uint32_t bath, const ThermalBath& made, double norm,
+                                          double duration);
+
+/// A FastBath for every noise operator, good for frequencies up to `width` [rad/ns] and times up to `duration`
+/// [ns]. `windows`: of each operator, for `coarse_grained`.
+std::vector<FastBath> fast_noise_of(const EquationChoice& choice, const NoiseOperators& noise,
+                                    const ThermalBaths& baths, double width,
+                                    double duration, std::span<const double> windows);
+
+}  // namespace tarn::runtime
