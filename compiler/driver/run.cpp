@@ -150,7 +150,7 @@ std::optional<ReadyExperiment> Session::prepare_experiment(const ChosenExperimen
       say({"no_kernel", prepared.error().message});
       return std::nullopt;
     }
-    ready.plans.push_back({std::move(prepared->plan), prepared->kernel, std::move(prepared->tables)});
+    for (runtime::Plan& plan : plan_of_each(prepared->plan)) ready.plans.push_back({std::move(plan), prepared->kernel, prepared->tables});
   }
   for (const std::string& remark : ready.engine.remarks) say({"cache_not_used", remark, "", Severity::remark});
   return ready;

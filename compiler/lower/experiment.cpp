@@ -1,5 +1,7 @@
 #include "compiler/lower/experiment.h"
 
+#include <algorithm>
+
 #include "lang/support/match.h"
 #include "compiler/lower/claims.h"
 
@@ -16,6 +18,7 @@ runtime::Begin lower_begin(const BeginI& begin, const ExperimentRows& rows) {
               return runtime::BeginThermal{rows.setting(*thermal.temperature)};
             },
             [](const BeginPlusI&) -> runtime::Begin { return runtime::BeginPlus{}; },
+            [](const BeginSteadyI&) -> runtime::Begin { return runtime::BeginSteady{}; },
             [](const BeginStateI& state) -> runtime::Begin { return runtime::BeginState{state.letters}; },
             [&](const BeginPopulationsI& populations) -> runtime::Begin {
               runtime::BeginPopulations result;
@@ -55,6 +58,9 @@ runtime::Reading lower_reading(const ReadingI& reading, const ExperimentRows& ro
             [](const PurityI&) -> runtime::Reading { return runtime::ReadPurity{}; },
             [](const CoherenceI& r) -> runtime::Reading { return runtime::ReadCoherence{r.row, r.column}; },
             [](const FidelityI& r) -> runtime::Reading { return runtime::ReadFidelity{r.letters}; },
+            [](const RelaxationI&) -> runtime::Reading { return runtime::ReadRelaxation{}; },
+            [](const DephasingI& r) -> runtime::Reading { return runtime::ReadDephasing{r.row, r.column}; },
+            [](const VerdictI&) -> runtime::Reading { return runtime::ReadVerdict{}; },
             [](const ReduceI& r) -> runtime::Reading {
               return runtime::ReadReduction{static_cast<runtime::Over>(r.over), r.observable};
             }},
@@ -109,17 +115,29 @@ runtime::Observable lower_observable(const ObservableI& observable, const Instan
   return result;
 }
 
+void add_once(std::vector<std::uint32_t>& rows, std::uint32_t row) {
+  if (std::find(rows.begin(), rows.end(), row) == rows.end()) rows.push_back(row);
+}
+
 runtime::Claim lower_claim(const ClaimI& claim, const Instance& instance, const SourceSet& sources,
                            const ExperimentRows& rows) {
   runtime::Claim result;
   result.text = claim.text;
   result.holds = claim_tree(instance.graph, claim.holds, rows);
-  result.observables = reads(instance.graph, claim.holds, NodeOp::observable);
-  if (claim.where) {
-    result.where = claim_tree(instance.graph, *claim.where, rows);
-    const auto more = reads(instance.graph, *claim.where, NodeOp::observable);
-    result.observables.insert(result.observables.end(), more.begin(), more.end());
+  if (claim.where) result.where = claim_tree(instance.graph, *claim.where, rows);
+  bool plain = false;
+  for (const NodeId side : {claim.holds, claim.where.value_or(claim.holds)}) {
+    for (const std::uint32_t row : reads(instance.graph, side, NodeOp::observable)) {
+      add_once(result.observables, row);
+      plain = true;
+    }
+    for (const std::uint32_t row : reads(instance.graph, side, NodeOp::under)) {
+      add_once(result.under, row);
+      add_once(result.observables, instance.under[row].observable);
+    }
   }
+  std::sort(result.under.begin(), result.under.end());
+  result.under_all = !plain && !result.under.empty();
   result.place = sources.place(claim.span);
   return result;
 }
@@ -132,16 +150,26 @@ runtime::Axis lower_axis(const AxisI& axis) {
   return result;
 }
 
-std::vector<std::string> left_out(const Instance& instance) {
-  std::vector<std::string> result;
-  const bool closed = instance.equation == EquationKind::schroedinger;
-  if (closed || instance.equation == EquationKind::lindblad) {
-    for (const NoiseTerm& noise : instance.noise) result.push_back("noise " + noise.what);
-  }
-  if (closed) {
-    for (const JumpTerm& jump : instance.jumps) result.push_back("jump " + jump.what);
-  }
+runtime::EquationChoice lower_equation(const EquationI& equation, const SourceSet& sources, const ExperimentRows& rows) {
+  runtime::EquationChoice result;
+  result.label = equation.label;
+  result.equation = static_cast<runtime::Equation>(equation.kind);
+  result.lamb_shift = equation.lamb_shift;
+  result.memory = static_cast<runtime::Memory>(equation.memory);
+  if (equation.window) result.window = rows.setting(*equation.window);
+  result.depth = equation.depth;
+  result.place = sources.place(equation.span);
   return result;
+}
+
+void lower_equations(const Instance& instance, const SourceSet& sources, const ExperimentRows& rows, runtime::Plan& plan) {
+  for (const EquationI& equation : instance.equations) plan.compared.push_back(lower_equation(equation, sources, rows));
+  if (!plan.compared.empty()) plan.choice = plan.compared.front();
+  if (!instance.compares) plan.compared.clear();
+  plan.levels = instance.levels;
+  plan.levels_auto = instance.levels_auto;
+  if (instance.trajectories) plan.trajectories = runtime::Trajectories{instance.trajectories->count, instance.trajectories->seed};
+  for (const UnderI& under : instance.under) plan.under.push_back({under.equation, under.observable});
 }
 
 }  // namespace
@@ -155,9 +183,7 @@ runtime::Plan lower_experiment(const Instance& instance, const SourceSet& source
   }
   if (instance.begin) plan.begin = lower_begin(*instance.begin, rows);
   for (const PacePieceI& piece : instance.pace) plan.pace.push_back(lower_piece(piece, sources, rows));
-  plan.choice.equation = static_cast<runtime::Equation>(instance.equation);
-  plan.choice.lamb_shift = instance.lamb_shift;
-  plan.levels = instance.levels;
+  lower_equations(instance, sources, rows, plan);
   for (const ReadingI& reading : instance.readings) plan.readings.push_back(lower_reading(reading, rows));
   for (const ObservableI& o : instance.observables) plan.observables.push_back(lower_observable(o, instance, sources, rows));
   plan.distribution_at_end = instance.distribution_at_end;
@@ -166,9 +192,32 @@ runtime::Plan lower_experiment(const Instance& instance, const SourceSet& source
   plan.points = instance.points;
   if (!instance.scan.empty()) plan.scan = runtime::Scan{instance.scan};
   plan.tolerance = instance.tolerance;
-  plan.left_out = left_out(instance);
   plan.remarks = instance.remarks;
   return plan;
+}
+
+std::vector<std::string> left_out(const runtime::Plan& plan) {
+  const auto kind = static_cast<EquationKind>(plan.choice.equation);
+  std::vector<std::string> result;
+  if (kind == EquationKind::none) return result;
+  if (!takes_noise(kind)) {
+    for (const runtime::Coupling& coupling : plan.chip.couplings) result.push_back("noise " + coupling.what);
+  }
+  if (!takes_jumps(kind)) {
+    for (const runtime::Jump& jump : plan.chip.jumps) result.push_back("jump " + jump.what);
+  }
+  return result;
+}
+
+std::vector<runtime::Plan> plan_of_each(const runtime::Plan& plan) {
+  if (plan.compared.empty()) return {plan};
+  std::vector<runtime::Plan> plans;
+  for (const runtime::EquationChoice& choice : plan.compared) {
+    plans.push_back(plan);
+    plans.back().choice = choice;
+    plans.back().left_out = left_out(plans.back());
+  }
+  return plans;
 }
 
 }  // namespace tarn::compiler

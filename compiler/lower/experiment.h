@@ -16,7 +16,10 @@ struct ExperimentRows {
   std::function<runtime::OperatorSum(const Operator&)> sum;
 };
 
-/// Everything of the plan except `chip` and the slots.
+/// Everything of the plan except `chip`, the slots and what is left out.
 runtime::Plan lower_experiment(const Instance& instance, const SourceSet& sources, const ExperimentRows& rows);
+
+/// What the plan's equation leaves out of its chip.
+std::vector<std::string> left_out(const runtime::Plan& plan);
 
 }  // namespace tarn::compiler

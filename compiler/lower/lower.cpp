@@ -1,5 +1,6 @@
 #include "compiler/lower/lower.h"
 
+#include <algorithm>
 #include <map>
 #include <set>
 #include <utility>
@@ -43,6 +44,7 @@ Slots slots_of(const Instance& instance) {
   slots.offsets_on = static_cast<std::uint32_t>(instance.parameters.size());
   slots.readings = slots.offsets_on + 1;
   slots.observables = slots.readings + static_cast<std::uint32_t>(instance.readings.size());
+  slots.under = slots.observables + static_cast<std::uint32_t>(instance.observables.size());
   return slots;
 }
 
@@ -52,6 +54,9 @@ std::vector<std::string> input_names(const Instance& instance) {
   names.push_back("offsets on");
   for (std::size_t i = 0; i < instance.readings.size(); ++i) names.push_back("reading " + std::to_string(i));
   for (const ObservableI& observable : instance.observables) names.push_back(observable.name);
+  for (const UnderI& under : instance.under) {
+    names.push_back(instance.observables[under.observable].name + " under " + instance.equations[under.equation].label);
+  }
   return names;
 }
 
@@ -188,6 +193,11 @@ runtime::Chip lower_chip(const Instance& instance, const RecognisedBaths& spectr
     chip.baths.push_back(lower_bath(instance.baths[b], spectra[b], instance, lowering, sources));
   }
   for (const NoiseTerm& noise : instance.noise) chip.couplings.push_back({lowering.sum(noise.op), noise.bath, noise.what});
+  for (const CorrelationI& correlation : instance.correlations) {
+    runtime::Correlation made{correlation.first, correlation.count, {}, sources.place(correlation.span)};
+    for (const NodeId element : correlation.elements) made.elements.push_back(lowering.row(runtime::kSettings, element));
+    chip.correlations.push_back(std::move(made));
+  }
   for (const JumpTerm& jump : instance.jumps) chip.jumps.push_back({lowering.sum(jump.op), jump.what});
   chip.offsets_slot = slots_of(instance).offsets_on;
   chip.level_inputs = level_inputs(instance, fixed);
@@ -215,7 +225,9 @@ Lowered lower(Instance instance, const SourceSet& sources) {
   for (const KinkCondition& kink : kinks) {
     chip.kinks.push_back({lowering.row(runtime::kKinks, kink.node), kink.levels});
   }
-  append_generators(chip, instance.equation == EquationKind::lindblad, lowering.coefficients(), module);
+  const bool liouvillian = std::any_of(instance.equations.begin(), instance.equations.end(),
+                                       [](const EquationI& equation) { return equation.kind == EquationKind::lindblad; });
+  append_generators(chip, liouvillian, lowering.coefficients(), module);
   const ExperimentRows rows{[&](runtime::SetIndex set, NodeId node) { return lowering.row(set, node); },
                             [&](NodeId node) { return lowering.setting(node); },
                             [&](const Operator& op) { return lowering.sum(op); }};
@@ -223,6 +235,8 @@ Lowered lower(Instance instance, const SourceSet& sources) {
   result.plan.chip = std::move(chip);
   result.plan.reading_slot = slots_of(instance).readings;
   result.plan.observable_slot = slots_of(instance).observables;
+  result.plan.under_slot = slots_of(instance).under;
+  result.plan.left_out = left_out(result.plan);
   append_spectra(instance, lowering, module);
   return result;
 }

@@ -80,6 +80,7 @@ ValueId lower_node(const Node& node, const Graph& graph, const Slots& slots,
   if (node.op == NodeOp::parameter) return ir::append(module, ir::Input{slots.parameters + node.index}, type);
   if (node.op == NodeOp::reading) return ir::append(module, ir::Input{slots.readings + node.index}, type);
   if (node.op == NodeOp::observable) return ir::append(module, ir::Input{slots.observables + node.index}, type);
+  if (node.op == NodeOp::under) return ir::append(module, ir::Input{slots.under + node.index}, type);
   if (node.op == NodeOp::offsets_on) return ir::append(module, ir::Input{slots.offsets_on}, type);
   if (node.op == NodeOp::s) return ir::append(module, ir::ReadArgument{ir::Argument::s}, type);
   if (node.op == NodeOp::t) return ir::append(module, ir::ReadArgument{ir::Argument::t}, type);

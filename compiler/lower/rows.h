@@ -17,6 +17,7 @@ struct Slots {
   std::uint32_t offsets_on = 0;
   std::uint32_t readings = 0;     ///< First slot of the readings.
   std::uint32_t observables = 0;  ///< First slot of the observables.
+  std::uint32_t under = 0;        ///< First slot of observables under a named equation.
 };
 
 /// Copies every node and table of a graph into a module and returns the value of each node. A

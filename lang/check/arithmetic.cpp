@@ -219,6 +219,20 @@ Value combine_texts(Session& session, BinaryOp op, const Operand& left, const Op
   return {TruthValue{session.graph.add({.number = holds ? 1.0 : 0.0, .truth = true, .span = span})}};
 }
 
+/// A verdict is an order of three, no amount.
+Value compare_verdicts(Session& session, BinaryOp op, const Operand& left, const Operand& right, Span span) {
+  const auto* a = left.value.get<VerdictValue>();
+  const auto* b = right.value.get<VerdictValue>();
+  const auto is_word = [&](const VerdictValue* verdict) {
+    return verdict != nullptr && session.graph[verdict->node].op == NodeOp::constant;
+  };
+  const bool equal = op == BinaryOp::equal && a != nullptr && b != nullptr && (is_word(a) || is_word(b));
+  const bool ordered = op == BinaryOp::less_equal && a != nullptr && is_word(b);
+  if (equal || ordered) return truth(session, equal ? NodeOp::equal : NodeOp::less_equal, a->node, b->node, span);
+  session.report(span, diag::verdict_comparison, excerpt(session, span)).remedy("`verdict == within`, `verdict <= marginal`");
+  return {};
+}
+
 }  // namespace
 
 Value make_number(Session& session, NodeOp op, NodeId a, NodeId b, Dimension dimension, Span span) {
@@ -263,6 +277,9 @@ Value apply(Session& session, ast::BinaryOp op, const Operand& left, const Opera
   if (left.value.unknown() || right.value.unknown()) return {};
   if (left.value.get<OperatorValue>() || right.value.get<OperatorValue>()) {
     return combine_operators(session, op, left, right, span);
+  }
+  if (left.value.get<VerdictValue>() || right.value.get<VerdictValue>()) {
+    return compare_verdicts(session, op, left, right, span);
   }
   if (left.value.get<TruthValue>() || right.value.get<TruthValue>()) {
     return combine_truths(session, op, left, right, span);

@@ -21,6 +21,7 @@ struct Unrolled {
   std::set<std::tuple<const ast::Item*, std::uint32_t, std::uint32_t>> couplers;
   std::vector<EnergyTerm> energy;
   std::vector<NoiseTerm> noise;
+  std::vector<CorrelationI> correlations;
   std::vector<JumpTerm> jumps;
   std::vector<InstanceBath> baths;
   std::size_t placements = 0;

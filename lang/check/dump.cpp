@@ -107,6 +107,13 @@ class InstanceDump {
       line(fmt::format("bath {}: density {}, temperature {}", bath.name, expr(bath.density), expr(bath.temperature)));
     }
     for (const NoiseTerm& term : instance_.noise) line(fmt::format("noise {}: {}", term.what, op(term.op)));
+    for (const CorrelationI& c : instance_.correlations) {
+      for (std::size_t i = 0; i < c.count; ++i) {
+        std::string row;
+        for (std::size_t j = 0; j < c.count; ++j) row += (j == 0 ? "" : ", ") + expr(c.elements[i * c.count + j]);
+        line(fmt::format("correlation of noise {} with {} .. {}: {}", c.first + i, c.first, c.first + c.count - 1, row));
+      }
+    }
     for (const JumpTerm& term : instance_.jumps) line(fmt::format("jump {}: {}", term.what, op(term.op)));
   }
 
@@ -114,6 +121,7 @@ class InstanceDump {
     return std::visit(Match{[](const BeginGroundI&) -> std::string { return "ground"; },
                             [&](const BeginThermalI& b) { return b.temperature ? fmt::format("thermal({})", expr(*b.temperature)) : "thermal"; },
                             [](const BeginPlusI&) -> std::string { return "plus"; },
+                            [](const BeginSteadyI&) -> std::string { return "steady"; },
                             [](const BeginStateI& b) { return fmt::format("state \"{}\"", b.letters); },
                             [&](const BeginPopulationsI& b) {
                               std::string text = "populations";
@@ -132,13 +140,24 @@ class InstanceDump {
                       piece);
   }
 
+  std::string equation_text(const EquationI& equation) const {
+    const char* const memories[] = {"markov", "growing", "driven"};
+    std::string text = equation.label.empty() ? "" : equation.label + " = ";
+    text += word_of(equation.kind);
+    if (equation.kind == EquationKind::redfield) text += fmt::format(" memory {}", memories[static_cast<std::size_t>(equation.memory)]);
+    if (equation.kind == EquationKind::coarse_grained) text += equation.window ? " window " + expr(*equation.window) : " window auto";
+    if (equation.depth) text += fmt::format(" depth {}", *equation.depth);
+    return text + (equation.lamb_shift ? "" : " without shift");
+  }
+
   void experiment() {
     if (instance_.begin) line("begin " + begin_text());
     for (const PacePieceI& piece : instance_.pace) line("pace " + piece_text(piece));
-    const char* const equations[] = {"none", "schroedinger", "lindblad", "davies"};
-    const bool no_shift = instance_.equation == EquationKind::davies && !instance_.lamb_shift;
-    line(fmt::format("equation {}{}", equations[static_cast<std::size_t>(instance_.equation)], no_shift ? " without shift" : ""));
+    if (instance_.equations.empty()) line("equation none");
+    for (const EquationI& equation : instance_.equations) line("equation " + equation_text(equation));
     if (instance_.levels) line(fmt::format("levels {}", *instance_.levels));
+    if (instance_.levels_auto) line("levels auto");
+    if (instance_.trajectories) line(fmt::format("trajectories {} seed {}", instance_.trajectories->count, instance_.trajectories->seed));
     line(fmt::format("tolerance {}", instance_.tolerance));
     if (!instance_.scan.empty()) line(fmt::format("scan {} values of s", instance_.scan.size()));
     for (const AxisI& axis : instance_.axes) {
@@ -166,6 +185,9 @@ class InstanceDump {
                             [](const PurityI&) -> std::string { return "purity"; },
                             [](const CoherenceI& r) { return fmt::format("coherence {} {}", r.row, r.column); },
                             [](const FidelityI& r) { return "fidelity with " + r.letters; },
+                            [](const RelaxationI&) -> std::string { return "T1"; },
+                            [](const DephasingI& r) { return fmt::format("T2 {} {}", r.row, r.column); },
+                            [](const VerdictI&) -> std::string { return "verdict"; },
                             [](const ReduceI& r) {
                               const char* const words[] = {"lowest", "highest", "final"};
                               return fmt::format("{} of observable {}", words[static_cast<std::size_t>(r.over)], r.observable);
@@ -189,6 +211,10 @@ class InstanceDump {
       line(fmt::format("observable {} {}{} = {} [{}] {}", k, o.name, o.shown ? "" : " (for a claim)", expr(o.value), o.unit.label, moment_text(o.moment)));
     }
     if (instance_.distribution_at_end) line("distribution at end");
+    for (std::size_t k = 0; k < instance_.under.size(); ++k) {
+      const UnderI& under = instance_.under[k];
+      line(fmt::format("under {}: observable {} under {}", k, under.observable, instance_.equations[under.equation].label));
+    }
     for (const ClaimI& claim : instance_.claims) {
       line(fmt::format("claim {}{}", expr(claim.holds), claim.where ? " where " + expr(*claim.where) : ""));
     }

@@ -113,6 +113,56 @@ struct NoiseSink {
   }
 };
 
+/// Copies are told apart by the one index of one loop.
+bool check_correlation_form(Session& session, const ast::NoiseTerm& term) {
+  const auto refuse = [&](Span span, std::string_view needs) {
+    session.report(span, diag::correlation_form, needs).remedy("`noise Z(q[i]) ~ cold for i in 0 .. n-1 correlation(i, j) = c^abs(i - j)`");
+    return false;
+  };
+  const ast::Correlation& correlation = *term.correlation;
+  if (term.shared) return refuse(term.span, "a copy of the bath for each operator, `shared` makes one of all");
+  if (term.operators.size() != 1) return refuse(term.span, "a single operator");
+  if (term.loops.size() != 1) return refuse(correlation.span, "one loop before it");
+  if (term.loops.front().names.size() != 1) return refuse(term.loops.front().span, "a loop over one index");
+  if (correlation.first.text != correlation.second.text) return true;
+  session.report(correlation.second.span, diag::duplicate_name, correlation.second.text).note(correlation.first.span, "first declared here");
+  return false;
+}
+
+std::string index_text(const ast::Name& name, const Value& value, std::size_t copy) {
+  const auto* count = value.get<CountValue>();
+  return count != nullptr && count->value ? fmt::format("{} = {}", name.text, *count->value) : fmt::format("copy {}", copy);
+}
+
+/// The matrix of correlations of the copies first, first + 1, ... whose indices are given.
+void elaborate_correlation(Session& session, const Scope& scope, const ast::NoiseTerm& term, std::size_t first,
+                           const std::vector<Value>& indices, Unrolled& unrolled) {
+  const ast::Correlation& correlation = *term.correlation;
+  Site site = *scope.site;
+  site.where = "in `correlation`";
+  site.operators = false;
+  site.s.reset();
+  CorrelationI made{static_cast<std::uint32_t>(first), static_cast<std::uint32_t>(indices.size()), {}, {}, span_of(session, scope, correlation.value)};
+  for (std::size_t i = 0; i < indices.size(); ++i) {
+    made.indices.push_back(index_text(term.loops.front().names.front(), indices[i], i));
+    for (const Value& other : indices) {
+      Scope inner{&scope, scope.module, &site, {}};
+      declare(session, inner, correlation.first, indices[i]);
+      declare(session, inner, correlation.second, other);
+      const auto element = evaluate_quantity(session, inner, correlation.value, kNumber);
+      if (!element) return;
+      made.elements.push_back(*element);
+    }
+  }
+  if (unrolled.noise.size() - first != indices.size()) return;  // What is missing was reported, or is not known.
+  for (std::size_t i = first + 1; i < unrolled.noise.size(); ++i) {
+    if (unrolled.noise[i].bath == unrolled.noise[first].bath) continue;
+    session.report(term.bath.span, diag::correlation_form, "copies of one bath");
+    return;
+  }
+  if (made.count > 0) unrolled.correlations.push_back(std::move(made));
+}
+
 /// Terms as the program's dump shows them.
 std::vector<std::string> describe_terms(const Session& session, const Unrolled& unrolled, std::uint32_t qubits) {
   std::vector<std::string> lines;
@@ -207,17 +257,18 @@ void elaborate_jump(Session& session, const Scope& scope, const ast::JumpTerm& t
 }
 
 void elaborate_noise(Session& session, const Scope& scope, const ast::NoiseTerm& term, const TermPlace& place) {
-  if (term.correlation) {
-    session.report(term.correlation->span, diag::not_available, "`correlation`", "independent copies, and `noise shared`");
-    return;
-  }
+  if (term.correlation && !check_correlation_form(session, term)) return;
+  const std::size_t first = place.unrolled.noise.size();
+  std::vector<Value> indices;
   const Site site = changed(scope, "in `noise`", false);
   NoiseSink sink{session, term, place};
   for_each(session, at_site(scope, site), term.loops, [&](const Scope& inner) {
     const auto callable = resolve_callable(session, inner, term.bath, {CallableKind::bath}, "a bath");
     const auto bath = callable ? elaborate_bath(session, *callable, place.unrolled, term.bath.span) : std::nullopt;
     sink.add(inner, bath, excerpt(session, term.bath.span));
+    if (term.correlation) indices.push_back(inner.names.find(term.loops.front().names.front().text)->second.value.value_or(Value{}));
   });
+  if (term.correlation) elaborate_correlation(session, at_site(scope, site), term, first, indices, place.unrolled);
   if (sink.shared) {
     sink.shared->what = fmt::format("shared {} ~ {}", sink.shared->what, excerpt(session, term.bath.span));
     place.unrolled.noise.push_back(*sink.shared);

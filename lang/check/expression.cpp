@@ -4,6 +4,7 @@
 
 #include "lang/check/arithmetic.h"
 #include "lang/check/path.h"
+#include "lang/check/readings.h"
 #include "lang/check/remedies.h"
 #include "lang/check/turns.h"
 #include "lang/program/operators.h"
@@ -69,10 +70,7 @@ Value evaluate_use(Session& session, const Scope& scope, const ast::Use& use) {
     session.report(use.held.front().span, diag::not_available, "`when`", "population(ground), population(state(...))");
     return {};
   }
-  if (use.under) {
-    session.report(use.under->span, diag::not_available, "`under`", "one equation in an experiment");
-    return {};
-  }
+  if (use.under) return evaluate_under(session, scope, use);
   return evaluate_path(session, scope, use.path);
 }
 

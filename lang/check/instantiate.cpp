@@ -27,11 +27,6 @@ void refuse(Session& session, Span span, std::string_view word, std::string_view
   session.report(span, diag::not_available, fmt::format("`{}`", word), std::string(now));
 }
 
-std::string_view word_of(ast::DrawKind kind) {
-  if (kind == ast::DrawKind::trajectories) return "trajectories";
-  return kind == ast::DrawKind::ensemble ? "ensemble" : "freeze";
-}
-
 struct Sorter {
   Session& session;
   Statements result{};
@@ -47,7 +42,10 @@ struct Sorter {
   void operator()(const ast::Observe& observe) { result.observes.push_back(&observe); }
   void operator()(const ast::Sweep& sweep) { result.sweeps.push_back(&sweep); }
   void operator()(const ast::Expect& expect) { result.expects.push_back(&expect); }
-  void operator()(const ast::Draws& draws) { refuse(session, draws.span, word_of(draws.kind), "a density matrix or one state, and `sweep`"); }
+  void operator()(const ast::Draws& draws) {
+    if (draws.kind == ast::DrawKind::trajectories) take_once(session, result.trajectories, draws, "trajectories");
+    else refuse(session, draws.span, draws.kind == ast::DrawKind::ensemble ? "ensemble" : "freeze", "`sweep` over values of your own");
+  }
   void operator()(const ast::Data& data) { refuse(session, data.span, "data", "`sweep` and `expect`"); }
   void operator()(const ast::Compare& compare) { refuse(session, compare.span, "compare", "`sweep` and `expect`"); }
   void operator()(const ast::Fit& fit) { refuse(session, fit.span, "fit", "`sweep` and `expect`"); }
@@ -68,6 +66,7 @@ void finish_chip(const Unrolled& unrolled, Instance& instance) {
   instance.noise = unrolled.noise;
   instance.jumps = unrolled.jumps;
   instance.baths = unrolled.baths;
+  instance.correlations = unrolled.correlations;
   for (EnergyTerm& term : instance.energy) term.op = most_significant_first(std::move(term.op), qubits);
   for (NoiseTerm& term : instance.noise) term.op = most_significant_first(std::move(term.op), qubits);
   for (JumpTerm& term : instance.jumps) term.op = most_significant_first(std::move(term.op), qubits);
@@ -112,8 +111,9 @@ Instance elaborate(Session& session, const Statements& statements, const Program
   if (statements.scan != nullptr) instance.scan = elaborate_scan(session, scope, *statements.scan);
   if (statements.equation != nullptr) elaborate_equation(session, scope, *statements.equation, instance);
   if (statements.levels != nullptr) elaborate_levels(session, scope, *statements.levels, instance);
+  if (statements.trajectories != nullptr) elaborate_trajectories(session, scope, *statements.trajectories, instance);
   if (statements.tolerance != nullptr) elaborate_tolerance(session, scope, *statements.tolerance, instance);
-  Readings readings{&unrolled, &instance.readings, &instance.observables};
+  Readings readings{&unrolled, &instance};
   readings.scans = statements.scan != nullptr;
   readings.pace_broken = statements.pace != nullptr && statements.pace->pieces.size() != instance.pace.size();
   elaborate_observables(session, scope, statements, readings, instance);
@@ -213,7 +213,7 @@ Instance elaborate_group(const Program& program, std::uint32_t experiment, const
   Instance instance = elaborate(session, statements, program.experiments[experiment]);
   instance.graph = graph;
   attach_axes(session, axes, instance);
-  check_densities(session, instance);
+  check_baths(session, instance);
   if (!session.exhausted && !trial) report_missing_values(session, instance);
   instance.parameters = session.parameters;
   instance.points = group.points;

@@ -170,15 +170,16 @@ class ObserveReader {
     for (const auto& [name, row] : readings_.by_name) {
       const ObservableI& earlier = instance_.observables[row];
       if (!same_moment(earlier.moment, moment)) continue;
-      inner.names.insert_or_assign(name, Binding{number_value(earlier.value), nullptr, false, earlier.span});
+      inner.names.insert_or_assign(name, Binding{observed_value(session_.graph, readings_, earlier.value, earlier.value), nullptr, false, earlier.span});
     }
     declare_broken(readings_, inner);
     if (observe.value) return to_observed(evaluate(session_, inner, *observe.value), span_of(session_, inner, *observe.value));
     const ast::Path path{observe.name.span, {{observe.name, std::nullopt}}, false, {}};
-    return to_number(session_, evaluate_reading(session_, inner, path), observe.name.span);
+    return to_observed(evaluate_reading(session_, inner, path), observe.name.span);
   }
 
   std::optional<NodeId> to_observed(const Value& value, Span span) {
+    if (const auto* verdict = value.get<VerdictValue>()) return verdict->node;
     if (!value.get<OperatorValue>()) return to_number(session_, value, span);
     session_.report(span, diag::wrong_kind, "a number", describe(value)).remedy(fmt::format("`mean({})`", excerpt(session_, span)));
     return std::nullopt;
@@ -193,7 +194,7 @@ class ObserveReader {
 /// True if the observable has a value at each s of a scan or each t of a trace.
 bool has_many(const Session& session, const Instance& instance, const ObservableI& observable) {
   if (std::holds_alternative<AlongI>(observable.moment)) return true;
-  if (instance.scan.empty() || !observable.shown) return false;
+  if (instance.scan.empty()) return false;
   const Dependence reads = dependence(session.graph, observable.value);
   if (reads.s || !reads.readings) return true;
   const Sampler needed(session.graph, {observable.value});
@@ -207,6 +208,7 @@ bool reads_many(const Session& session, const Instance& instance, NodeId claim) 
   const Sampler needed(session.graph, {claim});
   return std::any_of(needed.rows().begin(), needed.rows().end(), [&](std::uint32_t row) {
     const Node& node = session.graph.nodes[row];
+    if (node.op == NodeOp::under) return has_many(session, instance, instance.observables[instance.under[node.index].observable]);
     return node.op == NodeOp::observable && has_many(session, instance, instance.observables[node.index]);
   });
 }
@@ -229,6 +231,7 @@ Shown shown_unit(Dimension dimension) {
 }
 
 void elaborate_observables(Session& session, Scope& scope, const Statements& statements, Readings& readings, Instance& instance) {
+  readings.moves = runs(instance) && instance.scan.empty();
   ObserveReader reader(session, scope, readings, instance);
   for (const ast::Observe* observe : statements.observes) reader.read(*observe);
 }
@@ -245,7 +248,8 @@ void elaborate_claims(Session& session, Scope& scope, const Statements& statemen
     const ObservableI& observable = instance.observables[row];
     const Dimension dimension = session.graph[observable.value].dimension;
     const NodeId node = session.graph.add({.op = NodeOp::observable, .index = row, .dimension = dimension, .span = observable.span});
-    inner.names.insert_or_assign(name, Binding{number_value(node), nullptr, false, observable.span});
+    const Value value = observed_value(session.graph, readings, observable.value, node);
+    inner.names.insert_or_assign(name, Binding{value, nullptr, false, observable.span});
   }
   declare_broken(readings, inner);
   for (const ast::Expect* expect : statements.expects) {

@@ -14,30 +14,12 @@
 namespace tarn {
 namespace {
 
-constexpr std::string_view kBegins = "`begin` available: ground, thermal, thermal(T), plus, state(\"01+-\"), populations(...)";
-constexpr std::string_view kEquations = "equations available: schroedinger, lindblad, davies";
-constexpr auto kBeginWords = std::to_array<std::string_view>({"ground", "thermal", "plus", "state", "populations"});
-constexpr auto kEquationWords = std::to_array<std::string_view>(
-    {"schroedinger", "lindblad", "davies", "redfield", "coarse_grained", "universal", "hybrid", "blip", "hierarchy"});
-
-bool is_among(std::string_view word, std::span<const std::string_view> words) {
-  return std::find(words.begin(), words.end(), word) != words.end();
-}
-
-/// "did you mean `near`?" and what there is, for a word that is none of `words`.
-std::string near_and(std::string_view word, std::span<const std::string_view> words, std::string_view available) {
-  const std::string_view near = near_word(word, words);
-  if (near.empty()) return std::string(available);
-  const bool there = available.find(near) != std::string_view::npos;
-  return fmt::format("did you mean `{}`?{}{}", near, there ? " " : " it is not available yet; ", available);
-}
+constexpr std::string_view kBegins =
+    "`begin` available: ground, thermal, thermal(T), steady, plus, state(\"01+-\"), populations(...)";
+constexpr auto kBeginWords = std::to_array<std::string_view>({"ground", "thermal", "steady", "plus", "state", "populations"});
 
 void report_begin(Session& session, std::string_view word, Span span, std::size_t qubits) {
   const std::string text = excerpt(session, span);
-  if (word == "steady") {
-    session.report(span, diag::not_available, fmt::format("`begin {}`", text), std::string(kBegins));
-    return;
-  }
   auto tail = session.report(span, diag::unknown_begin, text);
   if (word == "state") tail.remedy("`begin state(\"01\")`, a letter for each qubit");
   else if (text.starts_with('"')) tail.remedy(fmt::format("`begin state({})`", text));
@@ -66,6 +48,7 @@ std::optional<BeginI> begin_of(Session& session, const Scope& scope, const ast::
   const std::string& word = path.steps.front().name.text;
   if (word == "ground" && !path.call) return BeginGroundI{};
   if (word == "plus" && !path.call) return BeginPlusI{};
+  if (word == "steady" && !path.call) return BeginSteadyI{};
   if (word == "thermal" && path.given.empty()) return BeginThermalI{};
   if (word == "thermal" && path.given.size() == 1) {
     const auto temperature = evaluate_quantity(session, scope, path.given.front().value, kTemperature);
@@ -148,19 +131,6 @@ class PaceReader {
   Instance& instance_;
 };
 
-void read_davies_options(Session& session, const Scope& scope, const ast::Path& path, Instance& instance) {
-  for (const ast::Given& given : path.given) {
-    const auto* use = std::get_if<ast::Use>(&session.ast(scope).expr(given.value).node);
-    const std::string value = use == nullptr ? "" : use->path.steps.front().name.text;
-    if (given.name && given.name->text == "shift" && (value == "off" || value == "on")) {
-      instance.lamb_shift = value == "on";
-    } else {
-      session.report(given.span, diag::unknown_argument, "davies", excerpt(session, given.span))
-          .remedy("`davies` or `davies(shift = off)`");
-    }
-  }
-}
-
 }  // namespace
 
 void elaborate_begin(Session& session, const Scope& scope, const ast::Begin& begin, Instance& instance) {
@@ -177,46 +147,6 @@ void elaborate_begin(Session& session, const Scope& scope, const ast::Begin& beg
 void elaborate_pace(Session& session, const Scope& scope, const ast::Pace& pace, Instance& instance) {
   PaceReader reader(session, scope, instance);
   for (const ast::Piece& piece : pace.pieces) reader.read(piece, &piece == &pace.pieces.front());
-}
-
-void elaborate_equation(Session& session, const Scope& scope, const ast::Equation& equation, Instance& instance) {
-  if (equation.each || equation.choices.size() != 1) {
-    session.report(equation.span, diag::not_available, "`each of`", "one equation in an experiment");
-    return;
-  }
-  const ast::Path& path = equation.choices.front().equation;
-  const std::string& word = path.steps.front().name.text;
-  const bool plain = path.steps.size() == 1 && !path.steps.front().index;
-  const bool bare = word == "schroedinger" || word == "lindblad";
-  if (!plain || !is_among(word, kEquationWords)) {
-    session.report(path.span, diag::unknown_equation, excerpt(session, path.span)).remedy(near_and(word, kEquationWords, kEquations));
-  } else if (word == "davies") {
-    instance.equation = EquationKind::davies;
-    read_davies_options(session, scope, path, instance);
-  } else if (!bare) {
-    session.report(path.span, diag::not_available, fmt::format("`{}`", excerpt(session, path.span)), std::string(kEquations));
-  } else if (!path.given.empty()) {
-    session.report(path.given.front().span, diag::unknown_argument, word,
-                   path.given.front().name ? path.given.front().name->text : excerpt(session, path.given.front().span))
-        .remedy(fmt::format("`equation {}` takes none", word));
-  } else {
-    instance.equation = word == "lindblad" ? EquationKind::lindblad : EquationKind::schroedinger;
-  }
-}
-
-void elaborate_levels(Session& session, const Scope& scope, const ast::Levels& levels, Instance& instance) {
-  if (!levels.count) {
-    session.report(levels.span, diag::not_available, "`levels auto`", "`levels K` with a number K");
-    return;
-  }
-  const auto count = evaluate_count(session, scope, *levels.count);
-  if (!count) return;
-  if (*count < 1) {
-    session.report(span_of(session, scope, *levels.count), diag::count_too_small, "the number of levels", 1);
-    return;
-  }
-  const double all = std::exp2(static_cast<double>(instance.qubits.size()));
-  instance.levels = static_cast<std::uint32_t>(std::min({static_cast<double>(*count), all, 4294967295.0}));
 }
 
 }  // namespace tarn

@@ -272,6 +272,9 @@ Value evaluate_path(Session& session, const Scope& scope, const ast::Path& path)
     if (!found) tail.remedy(file_remedy(session, scope, step.name.text));
     return {};
   }
+  // `observe T2` gives a name to one of the values that T2 can have.
+  const bool measures = path.call && path.steps.size() == 1 && is_reading_word(step.name.text);
+  if (measures) return evaluate_word(session, scope, path);
   Value value = *found;
   if (step.index) value = indexed(session, scope, step, value);
   if (path.call) return call_value(session, scope, path, value);

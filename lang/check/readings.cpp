@@ -4,6 +4,7 @@
 #include <array>
 
 #include "lang/check/expression.h"
+#include "lang/check/path.h"
 #include "lang/check/remedies.h"
 #include "lang/program/operators.h"
 #include "lang/support/near.h"
@@ -12,13 +13,14 @@ namespace tarn {
 namespace {
 
 constexpr std::string_view kObservables =
-    "observables available: population, mean, E, gap, purity, coherence, fidelity, lowest, highest, final";
+    "observables available: population, mean, E, gap, purity, coherence, fidelity, T1, T2, verdict, lowest, highest, final";
 constexpr std::string_view kSets = "state sets available: ground, level(k), state(\"01\"), any, target";
 
 constexpr std::array kAvailable = std::to_array<std::string_view>(
-    {"population", "mean", "E", "gap", "purity", "coherence", "fidelity", "lowest", "highest", "final"});
-constexpr std::array kLater = std::to_array<std::string_view>(
-    {"rate", "T1", "T2", "effective_temperature", "verdict", "within", "marginal", "outside", "quantile", "fraction"});
+    {"population", "mean", "E", "gap", "purity", "coherence", "fidelity", "T1", "T2", "verdict", "within", "marginal",
+     "outside", "lowest", "highest", "final"});
+constexpr std::array kLater = std::to_array<std::string_view>({"rate", "effective_temperature", "quantile", "fraction"});
+constexpr std::array kVerdicts = std::to_array<std::string_view>({"within", "marginal", "outside"});
 
 constexpr auto kSetWords = std::to_array<std::string_view>({"ground", "level", "state", "any", "target"});
 
@@ -49,7 +51,7 @@ void report_no_name(Session& session, const Scope& scope, const ast::Path& path)
 
 /// What there is for a word that is not yet available.
 std::string instead_of(std::string_view word) {
-  if (word == "T1" || word == "T2" || word == "rate" || word == "effective_temperature") {
+  if (word == "rate" || word == "effective_temperature") {
     return "a trace during `hold`, as in `observe p = population(level(1)) along 201`";
   }
   return std::string(kObservables);
@@ -75,8 +77,9 @@ const ast::Path* only_path(Session& session, const Scope& scope, const ast::Path
 
 Value add_reading(Session& session, const Scope& scope, ReadingI reading, Dimension dimension, Span span) {
   Readings& readings = *scope.site->readings;
-  const auto row = static_cast<std::uint32_t>(readings.rows->size());
-  readings.rows->push_back(std::move(reading));
+  std::vector<ReadingI>& rows = readings.instance->readings;
+  const auto row = static_cast<std::uint32_t>(rows.size());
+  rows.push_back(std::move(reading));
   return number_value(session.graph.add({.op = NodeOp::reading, .index = row, .dimension = dimension, .span = span}));
 }
 
@@ -203,6 +206,21 @@ Value read_fidelity(Session& session, const Scope& scope, const ast::Path& path)
   return add_reading(session, scope, FidelityI{*letters}, kNumber, path.span);
 }
 
+/// An observable as a claim reads it.
+Value claimed(Session& session, const Readings& readings, std::uint32_t row, Span span) {
+  const NodeId value = readings.instance->observables[row].value;
+  const Dimension dimension = session.graph[value].dimension;
+  const NodeId node = session.graph.add({.op = NodeOp::observable, .index = row, .dimension = dimension, .span = span});
+  return observed_value(session.graph, readings, value, node);
+}
+
+Value made_for_claim(Session& session, Readings& readings, ObservableI observable) {
+  std::vector<ObservableI>& all = readings.instance->observables;
+  const Span span = observable.span;
+  all.push_back(std::move(observable));
+  return claimed(session, readings, static_cast<std::uint32_t>(all.size() - 1), span);
+}
+
 /// lowest(x), highest(x), final(x) of an observable with a trace or a scan.
 Value read_reduction(Session& session, const Scope& scope, const ast::Path& path, const std::string& word) {
   const ast::Path* argument = only_path(session, scope, path);
@@ -220,7 +238,7 @@ Value read_reduction(Session& session, const Scope& scope, const ast::Path& path
         .remedy(near.empty() ? fmt::format("`observe {} along 101` or a scan before it", name) : fmt::format("did you mean `{}`?", near));
     return {};
   }
-  const ObservableI observed = (*readings.observables)[found->second];
+  const ObservableI observed = readings.instance->observables[found->second];
   const bool trace = std::holds_alternative<AlongI>(observed.moment) || readings.scans;
   if (!trace) {
     session.report(argument->span, diag::no_trace, word, name).note(observed.span, "observed here");
@@ -230,10 +248,53 @@ Value read_reduction(Session& session, const Scope& scope, const ast::Path& path
   const ReductionI over = word == "lowest" ? ReductionI::lowest : word == "highest" ? ReductionI::highest : ReductionI::final;
   const Dimension dimension = session.graph[observed.value].dimension;
   const Value reading = add_reading(session, scope, ReduceI{over, found->second}, dimension, path.span);
-  if (!readings.claims) return reading;
-  const auto row = static_cast<std::uint32_t>(readings.observables->size());
-  readings.observables->push_back({excerpt(session, path.span), observed.unit, StaticI{}, reading.get<NumberValue>()->node, path.span, false});
-  return number_value(session.graph.add({.op = NodeOp::observable, .index = row, .dimension = dimension, .span = path.span}));
+  const NodeId node = reading.get<NumberValue>()->node;
+  if (!readings.claims) return observed_value(session.graph, readings, node, node);
+  return made_for_claim(session, readings, {excerpt(session, path.span), observed.unit, StaticI{}, node, path.span, false});
+}
+
+/// T1, and T2 of two levels.
+Value read_times(Session& session, const Scope& scope, const ast::Path& path, const std::string& word) {
+  const std::size_t given = path.given.size();
+  if (given != 0 && (word == "T1" || given != 2)) {
+    session.report(path.span, diag::argument_count, word, word == "T1" ? "no arguments" : "no arguments or 2 levels", given);
+    return {};
+  }
+  DephasingI levels{0, 1};
+  if (given == 2) {
+    const auto row = level_number(session, scope, path.given[0].value);
+    const auto column = level_number(session, scope, path.given[1].value);
+    if (!row || !column) return {};
+    levels = {*row, *column};
+  }
+  if (levels.row == levels.column) {
+    session.report(path.span, diag::wrong_use, "T2").remedy("`T2(0, 1)` is of two different levels");
+    return {};
+  }
+  Readings& readings = *scope.site->readings;
+  readings.reads_generator = true;
+  if (!readings.relaxation) readings.relaxation = path.span;
+  const ReadingI reading = word == "T1" ? ReadingI(RelaxationI{}) : ReadingI(levels);
+  return add_reading(session, scope, reading, kTime, path.span);
+}
+
+/// The worst verdict so far; in a claim at the end of the pace.
+Value read_verdict(Session& session, const Scope& scope, const ast::Path& path) {
+  if (path.call) {
+    session.report(path.span, diag::argument_count, "verdict", "no arguments", path.given.size());
+    return {};
+  }
+  Readings& readings = *scope.site->readings;
+  readings.reads_generator = true;
+  const Instance& instance = *readings.instance;
+  for (std::uint32_t row = 0; readings.claims && row < instance.observables.size(); ++row) {
+    const ObservableI& made = instance.observables[row];
+    if (!made.shown && made.name == "verdict") return claimed(session, readings, row, path.span);
+  }
+  const NodeId node = add_reading(session, scope, VerdictI{}, kNumber, path.span).get<NumberValue>()->node;
+  if (!readings.claims) return {VerdictValue{node}};
+  const MomentI moment = readings.moves ? MomentI(AtEndI{}) : MomentI(StaticI{});
+  return made_for_claim(session, readings, {"verdict", {}, moment, node, path.span, false});
 }
 
 }  // namespace
@@ -249,16 +310,69 @@ Value evaluate_reading(Session& session, const Scope& scope, const ast::Path& pa
     session.report(path.span, diag::not_available, fmt::format("`{}`", word), instead_of(word));
     return {};
   }
+  const auto verdict = std::find(kVerdicts.begin(), kVerdicts.end(), word);
+  if (verdict != kVerdicts.end() && !path.call) {
+    return {VerdictValue{session.graph.constant(static_cast<double>(verdict - kVerdicts.begin()), kNumber, path.span)}};
+  }
+  if (word == "verdict") return read_verdict(session, scope, path);
   if (word == "lowest" || word == "highest" || word == "final") return read_reduction(session, scope, path, word);
   if (scope.site->readings->claims) {
     session.report(path.span, diag::not_observed, excerpt(session, path.span))
         .remedy("`observe` it under a name and use the name");
     return {};
   }
+  if (word == "T1" || word == "T2") return read_times(session, scope, path, word);
   if (word == "population") return read_population(session, scope, path);
   if (word == "mean") return read_mean(session, scope, path);
   if (word == "fidelity") return read_fidelity(session, scope, path);
   return read_levels(session, scope, path, word);
+}
+
+Value observed_value(const Graph& graph, const Readings& readings, NodeId value, NodeId node) {
+  const Node* at = &graph[value];
+  while (at->op == NodeOp::reading) {
+    const ReadingI& reading = readings.instance->readings[at->index];
+    if (std::holds_alternative<VerdictI>(reading)) return {VerdictValue{node}};
+    const auto* reduced = std::get_if<ReduceI>(&reading);
+    if (reduced == nullptr) break;
+    at = &graph[readings.instance->observables[reduced->observable].value];
+  }
+  return number_value(node);
+}
+
+Value evaluate_under(Session& session, const Scope& scope, const ast::Use& use) {
+  const ast::Name& label = *use.under;
+  Readings* readings = scope.site != nullptr ? scope.site->readings : nullptr;
+  if (readings == nullptr || !readings->claims) {
+    session.report(label.span, diag::name_not_here, "under", scope.site != nullptr ? scope.site->where : "here")
+        .remedy("`observe` it for every equation, and compare in `expect`");
+    return {};
+  }
+  Instance& instance = *readings->instance;
+  const auto chosen = std::find_if(instance.equations.begin(), instance.equations.end(),
+                                   [&](const EquationI& equation) { return instance.compares && equation.label == label.text; });
+  if (chosen == instance.equations.end()) {
+    std::vector<std::string> labels;
+    for (const EquationI& equation : instance.equations) labels.push_back(equation.label);
+    session.report(label.span, diag::unknown_label, label.text)
+        .remedy(instance.compares ? offer(label.text, labels, "there is") : "`equation each of (davies, redfield)` compares equations");
+    return {};
+  }
+  const Value value = evaluate_path(session, scope, use.path);
+  if (value.unknown()) return {};
+  const auto* number = value.get<NumberValue>();
+  const auto* verdict = value.get<VerdictValue>();
+  const Node* node = number != nullptr ? &session.graph[number->node] : verdict != nullptr ? &session.graph[verdict->node] : nullptr;
+  if (node == nullptr || node->op != NodeOp::observable) {
+    session.report(use.path.span, diag::wrong_kind, "the name of an observable", fmt::format("`{}`", excerpt(session, use.path.span)));
+    return {};
+  }
+  const UnderI wanted{static_cast<std::uint32_t>(chosen - instance.equations.begin()), node->index};
+  const auto known = std::find(instance.under.begin(), instance.under.end(), wanted);
+  const auto row = static_cast<std::uint32_t>(known - instance.under.begin());
+  if (known == instance.under.end()) instance.under.push_back(wanted);
+  const NodeId made = session.graph.add({.op = NodeOp::under, .index = row, .dimension = node->dimension, .span = cover(use.path.span, label.span)});
+  return verdict != nullptr ? Value{VerdictValue{made}} : number_value(made);
 }
 
 std::optional<std::string> state_letters(Session& session, const Scope& scope, const ast::Path& path,

@@ -176,6 +176,13 @@ std::string in_unit(double value, const Shown& unit) {
   return fmt::format(fmt::runtime(product ? "{:.6g} [{}]" : "{:.6g} {}"), value / unit.factor, unit.label);
 }
 
+std::string near_and(std::string_view word, std::span<const std::string_view> words, std::string_view available) {
+  const std::string_view near = near_word(word, words);
+  if (near.empty()) return std::string(available);
+  const bool there = available.find(near) != std::string_view::npos;
+  return fmt::format("did you mean `{}`?{}{}", near, there ? " " : " it is not available yet; ", available);
+}
+
 std::string in_list(const std::vector<std::string>& words) {
   constexpr std::size_t kMost = 12;
   std::string result;

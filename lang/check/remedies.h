@@ -1,6 +1,7 @@
 #pragma once
 /// \file What would mend a dimension that does not fit, or a word that is not known.
 
+#include <span>
 #include <string>
 #include <string_view>
 #include <vector>
@@ -34,6 +35,9 @@ std::string in_unit(double value, const Shown& unit);
 /// "did you mean `near`?"; where no word is near, what there is: "`spectra` has `ohmic`, `drude`"
 /// for `what` = "`spectra` has". Empty if there is nothing.
 std::string offer(std::string_view word, const std::vector<std::string>& known, std::string_view what);
+
+/// "did you mean `near`?", where that one is `available`, and all that are, for a word that is none of `words`.
+std::string near_and(std::string_view word, std::span<const std::string_view> words, std::string_view available);
 
 /// Words in backticks, joined by commas; at most twelve.
 std::string in_list(const std::vector<std::string>& words);

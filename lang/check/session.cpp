@@ -93,6 +93,7 @@ std::string describe(const Value& value) {
   if (value.get<NumberValue>()) return "a number";
   if (value.get<TruthValue>()) return "a truth";
   if (value.get<CountValue>()) return "a count";
+  if (value.get<VerdictValue>()) return "a verdict";
   if (value.get<TextValue>()) return "a text";
   if (value.get<OperatorValue>()) return "an operator";
   if (value.get<ListValue>()) return "a list";

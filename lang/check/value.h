@@ -35,6 +35,11 @@ struct CountValue {
   NodeId node{};
 };
 
+/// `verdict`, or one of within, marginal, outside: a number that is only compared.
+struct VerdictValue {
+  NodeId node;
+};
+
 /// A text; nothing if it inserts a count that is not known.
 struct TextValue {
   std::optional<std::string> text;
@@ -75,7 +80,8 @@ struct Callable {
 };
 
 struct Value {
-  std::variant<Unknown, NumberValue, TruthValue, CountValue, TextValue, OperatorValue, ListValue, RowsValue, Callable>
+  std::variant<Unknown, NumberValue, TruthValue, CountValue, VerdictValue, TextValue, OperatorValue, ListValue, RowsValue,
+               Callable>
       is;
 
   template <class T>

@@ -1,5 +1,3 @@
-#include <unistd.h>
-
 #include <algorithm>
 #include <cmath>
 #include <set>
@@ -15,25 +13,32 @@ bool moves(const Instance& instance) {
                      [](const PacePieceI& piece) { return !std::holds_alternative<PaceStartI>(piece); });
 }
 
+bool begins_steady(const Instance& instance) { return instance.begin && std::holds_alternative<BeginSteadyI>(*instance.begin); }
+
 /// Statements about a state that no observable reads, or that does not change.
 void check_use(Session& session, const Statements& statements, const Readings& readings, const Instance& instance) {
   constexpr std::string_view kUnread = "no observable reads a state";
   const bool unread = !readings.reads_state;
   if (unread && statements.begin != nullptr) session.report(statements.begin->span, diag::unused_statement, "begin", kUnread);
-  if (statements.equation == nullptr || (!unread && (readings.pace_broken || moves(instance)))) return;
+  if (statements.equation == nullptr || readings.reads_generator) return;
+  if (!unread && (readings.pace_broken || moves(instance) || begins_steady(instance))) return;
   session.report(statements.equation->span, diag::unused_statement, "equation", unread ? kUnread : "there is no pace, so nothing moves");
 }
 
 void check_statements(Session& session, const Statements& statements, const Readings& readings, const Instance& instance) {
   const Span span = instance.span;
   const bool scan = statements.scan != nullptr;
+  const bool idle = scan && statements.equation != nullptr && !readings.reads_generator;
   if (scan && statements.pace != nullptr) session.report(statements.pace->span, diag::not_in_scan, "pace");
   if (scan && statements.begin != nullptr) session.report(statements.begin->span, diag::not_in_scan, "begin");
-  if (scan && statements.equation != nullptr) session.report(statements.equation->span, diag::not_in_scan, "equation");
+  if (idle && readings.broken.empty()) session.report(statements.equation->span, diag::not_in_scan, "equation");
   if (scan && readings.reads_state) session.report(statements.scan->span, diag::state_in_scan);
   if (!scan && readings.reads_state && statements.begin == nullptr) session.report(span, diag::statement_missing, "begin").remedy("`begin ground`");
-  const bool runs = moves(instance) && readings.reads_state && !scan;
-  if (runs && statements.equation == nullptr) session.report(span, diag::statement_missing, "equation").remedy("`equation schroedinger`");
+  const bool runs = (moves(instance) || begins_steady(instance)) && readings.reads_state && !scan;
+  if ((runs || readings.reads_generator) && statements.equation == nullptr) {
+    session.report(span, diag::statement_missing, "equation")
+        .remedy(readings.reads_generator || begins_steady(instance) ? "`equation davies`" : "`equation schroedinger`");
+  }
   if (statements.observes.empty()) session.report(span, diag::nothing_observed);
   else if (!scan && readings.broken.empty()) check_use(session, statements, readings, instance);
 }
@@ -109,35 +114,6 @@ void check_targets(Session& session, const Statements& statements, const Instanc
   }
 }
 
-/// Bytes that the largest arrays of a run take, from below.
-double bytes_needed(const Instance& instance) {
-  const double dimension = std::exp2(static_cast<double>(instance.qubits.size()));
-  constexpr double kComplex = 16;
-  if (instance.equation == EquationKind::lindblad) return 12 * kComplex * dimension * dimension;
-  if (instance.equation == EquationKind::davies) {
-    const double kept = instance.levels ? static_cast<double>(*instance.levels) : dimension;
-    return kComplex * (2 * kept * dimension + 12 * kept * kept);
-  }
-  return 12 * kComplex * dimension;
-}
-
-/// `davies` keeps a density matrix of the whole chip.
-constexpr std::size_t kMostUnderDavies = 10;
-
-void check_memory(Session& session, const Instance& instance, Span span) {
-  if (instance.equation == EquationKind::davies && instance.qubits.size() > kMostUnderDavies) {
-    session.report(span, diag::too_many_for_equation, instance.qubits.size(), kMostUnderDavies, "davies")
-        .remedy("`schroedinger` takes 20 qubits and leaves the noise out");
-    return;
-  }
-  const double memory = static_cast<double>(sysconf(_SC_PHYS_PAGES)) * static_cast<double>(sysconf(_SC_PAGE_SIZE));
-  const double needed = bytes_needed(instance);
-  if (needed <= memory) return;
-  auto tail = session.report(span, diag::too_many_qubits, instance.qubits.size(), needed / (1 << 30));
-  if (instance.equation == EquationKind::lindblad) tail.remedy("`schroedinger` needs one state instead of a density matrix");
-  if (instance.equation == EquationKind::davies && !instance.levels) tail.remedy("`levels K` keeps the lowest K levels only");
-}
-
 void check_coefficients(Session& session, const Instance& instance) {
   std::vector<NodeId> nodes;
   const auto collect = [&](const Operator& op) {
@@ -147,40 +123,6 @@ void check_coefficients(Session& session, const Instance& instance) {
   for (const NoiseTerm& term : instance.noise) collect(term.op);
   for (const JumpTerm& term : instance.jumps) collect(term.op);
   report_not_finite_in_s(session, nodes);
-}
-
-/// `davies` takes a jump as one operator: what changes on the way would be left at its first value.
-void check_jumps(Session& session, const Instance& instance) {
-  if (instance.equation != EquationKind::davies) return;
-  for (const JumpTerm& jump : instance.jumps) {
-    const bool moves = std::any_of(jump.op.begin(), jump.op.end(), [&](const OperatorTerm& term) {
-      const Dependence reads = dependence(session.graph, term.coefficient);
-      return reads.s || reads.t;
-    });
-    if (!moves) continue;
-    session.report(jump.span, diag::not_available, "a jump that changes with `s` or `t` under `davies`",
-                   "`lindblad` for such jumps");
-  }
-}
-
-/// Slopes of J at w = 0 decide gamma(0): if they grow without bound, no rate at small w is finite.
-bool diverges(const Session& session, NodeId density) {
-  constexpr double kNear = 1e-15;  // [rad/ns]
-  Sampler sampler(session.graph, {density});
-  Bindings bindings;
-  for (const ParameterUse& use : session.parameters) bindings.parameters.push_back(use.value);
-  const auto slope = [&](double w) {
-    bindings.w = w;
-    sampler.run(bindings);
-    return sampler.value(density) / w;
-  };
-  return slope(kNear) > 0 && slope(kNear / 16) > slope(kNear) * 1.001;
-}
-
-void check_levels(Session& session, const Statements& statements, const Instance& instance) {
-  if (statements.levels == nullptr || instance.equation == EquationKind::davies) return;
-  session.report(statements.levels->span, diag::not_available, "`levels` without `equation davies`",
-                 "`levels K` with `equation davies`");
 }
 
 void collect_terms(const Operator& op, std::vector<NodeId>& roots) {
@@ -239,43 +181,28 @@ void check_whole(Session& session, const Statements& statements, const Readings&
   check_statements(session, statements, readings, instance);
   check_thermal(session, statements, instance);
   check_targets(session, statements, instance);
-  check_memory(session, instance, statements.chip->span);
   check_coefficients(session, instance);
-  check_jumps(session, instance);
-  check_levels(session, statements, instance);
-}
-
-void check_densities(Session& session, const Instance& instance) {
-  if (instance.equation != EquationKind::davies) return;
-  std::set<std::uint32_t> swept;
-  for (const AxisI& axis : instance.axes) {
-    for (const AxisColumnI& column : axis.columns) {
-      if (column.index) swept.insert(*column.index);
-    }
-  }
-  for (const NoiseTerm& term : instance.noise) {
-    const InstanceBath& bath = instance.baths[term.bath];
-    const auto reads = dependence(session.graph, bath.density).parameters;
-    const bool moves = std::any_of(reads.begin(), reads.end(), [&](std::uint32_t row) { return swept.contains(row); });
-    if (moves || !is_known(session, bath.density) || !diverges(session, bath.density)) continue;
-    session.report(bath.span, diag::density_at_zero, bath.name)
-        .note(instance.span, "`equation davies` stands in this experiment")
-        .remedy("give J(w) that falls with w at small w, at least as w does; there is no equation for slow noise yet");
-  }
+  check_equations(session, statements, readings, instance);
 }
 
 std::vector<std::uint32_t> live_parameters(const Instance& instance) {
   std::vector<NodeId> roots;
   for (const EnergyTerm& term : instance.energy) collect_terms(term.op, roots);
-  if (instance.equation == EquationKind::lindblad || instance.equation == EquationKind::davies) {
+  if (any_equation(instance, takes_jumps)) {
     for (const JumpTerm& term : instance.jumps) collect_terms(term.op, roots);
   }
-  if (instance.equation == EquationKind::davies) {
+  if (any_equation(instance, takes_noise)) {
     for (const NoiseTerm& term : instance.noise) {
       collect_terms(term.op, roots);
       roots.push_back(instance.baths[term.bath].density);
       roots.push_back(instance.baths[term.bath].temperature);
     }
+    for (const CorrelationI& correlation : instance.correlations) {
+      roots.insert(roots.end(), correlation.elements.begin(), correlation.elements.end());
+    }
+  }
+  for (const EquationI& equation : instance.equations) {
+    if (equation.window) roots.push_back(*equation.window);
   }
   for (const InstanceQubit& qubit : instance.qubits) {
     if (qubit.offset) roots.push_back(*qubit.offset);

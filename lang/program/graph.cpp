@@ -169,7 +169,7 @@ Dependence dependence(const Graph& graph, NodeId id) {
     if (node.op == NodeOp::t) result.t = true;
     if (node.op == NodeOp::w) result.w = true;
     if (node.op == NodeOp::reading) result.readings = true;
-    if (node.op == NodeOp::observable) result.observables = true;
+    if (node.op == NodeOp::observable || node.op == NodeOp::under) result.observables = true;
     if (node.op == NodeOp::parameter) result.parameters.push_back(node.index);
   }
   std::sort(result.parameters.begin(), result.parameters.end());
@@ -199,6 +199,7 @@ void Sampler::run(const Bindings& at) {
     if (node.op == NodeOp::parameter) return bound(at.parameters, node.index);
     if (node.op == NodeOp::reading) return bound(at.readings, node.index);
     if (node.op == NodeOp::observable) return bound(at.observables, node.index);
+    if (node.op == NodeOp::under) return bound(at.under, node.index);
     if (node.op == NodeOp::s) return at.s;
     if (node.op == NodeOp::t) return at.t;
     return node.op == NodeOp::w ? at.w : at.offsets_on;

@@ -29,6 +29,7 @@ enum class NodeOp : std::uint8_t {
   s, t, w,     ///< arguments: pace value, laboratory time, angular rate
   reading,     ///< reading `index` of the experiment: measured, known at run time only
   observable,  ///< value of observable `index`: in claims
+  under,       ///< an observable under a named equation, row `index` of Instance::under: in claims
   offsets_on,  ///< 1; the runtime sets it to 0 to turn anneal offsets off
   table,       ///< table `index` at a
   neg, exp, ln, log10, sqrt, sin, cos, tan, asin, acos, atan, sinh, cosh, tanh, abs, floor, logical_not,
@@ -98,7 +99,7 @@ Dependence dependence(const Graph& graph, NodeId id);
 
 /// Values for evaluating a graph outside compiled code: constants, counts, checks at samples.
 struct Bindings {
-  std::vector<double> parameters, readings, observables;
+  std::vector<double> parameters, readings, observables, under;
   double s = 0, t = 0, w = 0, offsets_on = 1;
 };
 /// The value of `id`; a truth is 0 or 1. Tables are read by the coefficients of

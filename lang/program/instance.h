@@ -9,6 +9,7 @@
 #include <variant>
 #include <vector>
 
+#include "lang/program/equation.h"
 #include "lang/program/graph.h"
 #include "lang/quantities/units.h"
 
@@ -73,6 +74,14 @@ struct NoiseTerm {
   Span span;
 };
 
+/// Noise terms first .. first + count - 1 have copies of one bath that are not independent.
+struct CorrelationI {
+  std::uint32_t first = 0, count = 0;
+  std::vector<NodeId> elements;      ///< count^2 numbers of parameters, row after row.
+  std::vector<std::string> indices;  ///< The index of each copy, as shown: i = 2.
+  Span span;                         ///< Of the expression.
+};
+
 struct JumpTerm {
   Operator op;
   std::string what;
@@ -86,7 +95,8 @@ struct BeginThermalI { std::optional<NodeId> temperature; };
 struct BeginPlusI {};
 struct BeginStateI { std::string letters; };
 struct BeginPopulationsI { std::vector<NodeId> weights; };
-using BeginI = std::variant<BeginGroundI, BeginThermalI, BeginPlusI, BeginStateI, BeginPopulationsI>;
+struct BeginSteadyI {};
+using BeginI = std::variant<BeginGroundI, BeginThermalI, BeginPlusI, BeginStateI, BeginPopulationsI, BeginSteadyI>;
 
 struct PaceStartI { NodeId s; };
 struct PaceRampI { NodeId to, over; };
@@ -95,7 +105,21 @@ struct PaceStepI { NodeId to; };
 struct PaceFollowI { std::vector<double> t, s; Span span; };
 using PacePieceI = std::variant<PaceStartI, PaceRampI, PaceHoldI, PaceStepI, PaceFollowI>;
 
-enum class EquationKind : std::uint8_t { none, schroedinger, lindblad, davies };
+/// An equation with its options. `none`: it has an error, which was reported.
+struct EquationI {
+  std::string label;                   ///< In `each of`; else empty.
+  EquationKind kind = EquationKind::none;
+  bool lamb_shift = true;
+  MemoryI memory = MemoryI::markov;    ///< Of redfield.
+  std::optional<NodeId> window;        ///< Of coarse_grained, a time; none: auto.
+  std::optional<std::uint32_t> depth;  ///< Of hierarchy; none: raised until the answers stand.
+  Span span;
+};
+
+struct TrajectoriesI {
+  std::uint32_t count = 0;
+  std::uint64_t seed = 0;
+};
 
 enum class SetKind : std::uint8_t { ground, level, state, any, target };
 struct StateSetI {
@@ -113,10 +137,13 @@ struct GapI {};
 struct PurityI {};
 struct CoherenceI { std::uint32_t row, column; };
 struct FidelityI { std::string letters; };
+struct RelaxationI {};                           ///< T1
+struct DephasingI { std::uint32_t row, column; };  ///< T2 of two levels
+struct VerdictI {};
 enum class ReductionI : std::uint8_t { lowest, highest, final };
 struct ReduceI { ReductionI over; std::uint32_t observable; };
-using ReadingI = std::variant<PopulationI, MeanI, MeanEnergyI, LevelI, GapI, PurityI, CoherenceI,
-                              FidelityI, ReduceI>;
+using ReadingI = std::variant<PopulationI, MeanI, MeanEnergyI, LevelI, GapI, PurityI, CoherenceI, FidelityI, ReduceI,
+                              RelaxationI, DephasingI, VerdictI>;
 
 struct AtEndI {};
 struct AtTimeI { NodeId time; };
@@ -132,6 +159,12 @@ struct ObservableI {
   NodeId value;  ///< Of parameters, s, t, readings.
   Span span;
   bool shown = true;  ///< False: made for a claim only, listed in no table.
+};
+
+/// `observable under label`, as NodeOp::under numbers them.
+struct UnderI {
+  std::uint32_t equation, observable;
+  bool operator==(const UnderI&) const = default;
 };
 
 /// A claim is a truth node over comparisons; lowering takes it apart.
@@ -163,15 +196,19 @@ struct Instance {
   std::vector<EnergyTerm> energy;
   std::vector<NoiseTerm> noise;          ///< One for each copy of a bath.
   std::vector<JumpTerm> jumps;
+  std::vector<CorrelationI> correlations;
   std::vector<InstanceBath> baths;
   std::optional<BeginI> begin;
   std::vector<PacePieceI> pace;
-  EquationKind equation = EquationKind::none;
-  bool lamb_shift = true;
+  std::vector<EquationI> equations;      ///< One, or those of `each of`; empty without the statement.
+  bool compares = false;                 ///< `each of`: the equations have labels.
   std::optional<std::uint32_t> levels;
+  bool levels_auto = false;
+  std::optional<TrajectoriesI> trajectories;
   std::vector<ReadingI> readings;
   std::vector<ObservableI> observables;
   bool distribution_at_end = false;
+  std::vector<UnderI> under;
   std::vector<ClaimI> claims;
   std::vector<AxisI> axes;
   std::vector<std::uint64_t> points;     ///< Grid indices with these counts; first axis slowest.

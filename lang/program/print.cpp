@@ -59,6 +59,7 @@ class Printer {
     if (node.op == NodeOp::w) return "w";
     if (node.op == NodeOp::reading) return fmt::format("reading {}", node.index);
     if (node.op == NodeOp::observable) return fmt::format("observable {}", node.index);
+    if (node.op == NodeOp::under) return fmt::format("under {}", node.index);
     return "offsets_on";
   }
 

@@ -221,7 +221,8 @@ struct Claim {
   std::string text;                         ///< As written.
   ClaimNode holds;
   std::optional<ClaimNode> where;
-  std::vector<std::uint32_t> observables;   ///< What claim and condition read.
+  std::vector<std::uint32_t> observables;   ///< What claim and condition read, under a named equation or not.
+  std::vector<std::uint32_t> under;         ///< Rows of Plan::under that they read.
   bool under_all = false;                   ///< Each of them under a named equation: judged once a point.
   Place place;
 };

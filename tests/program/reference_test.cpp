@@ -151,12 +151,10 @@ TEST_CASE("what the reference lists as not available is refused") {
     change(parts);
     cases.push_back({shown, parts});
   };
-  add("begin steady", [](Parts& p) { p.begin = "begin steady"; });
-  add("equation each of (schroedinger, davies)",
-      [](Parts& p) { p.equation = "equation each of (schroedinger, davies)"; });
-  add("under davies", [](Parts& p) { p.more = "expect x under davies > 0"; });
-  for (const char* statement : {"observe T1", "observe T2", "expect verdict <= marginal", "levels auto",
-                                "trajectories 200 seed 1", "freeze 100 seed 1", "ensemble 100 seed 1"}) {
+  for (const char* equation : {"equation hybrid(split = 1 MHz)", "equation blip"}) {
+    add(equation, [&](Parts& p) { p.equation = equation; });
+  }
+  for (const char* statement : {"freeze 100 seed 1", "ensemble 100 seed 1"}) {
     add(statement, [&](Parts& p) { p.more = statement; });
   }
   for (const char* value : {"rate(from = level(1), to = ground)", "effective_temperature"}) {
@@ -168,7 +166,6 @@ TEST_CASE("what the reference lists as not available is refused") {
   for (const char* setting : {"band 1 MHz .. 1 GHz", "width 10 MHz", "shift 10 MHz"}) {
     add(setting, [&](Parts& p) { p.bath += std::string(" ") + setting; });
   }
-  add("correlation(i, j) = 0.5", [](Parts& p) { p.noise += " correlation(i, j) = if i == j then 1 else 0.5"; });
 
   for (const Case& one : cases) {
     const Outcome outcome = check_model(one.parts.model());

@@ -75,7 +75,7 @@ experiment rabi {
   CHECK(one.jumps[0].op.size() == 2);  // |0><1| = (X + iY)/2
   CHECK(std::get<BeginStateI>(*one.begin).letters == "0");
   CHECK(evaluate(one.graph, std::get<PaceHoldI>(one.pace.at(0)).time, {}) == 500);
-  CHECK(one.equation == EquationKind::lindblad);
+  CHECK(one.equations.at(0).kind == EquationKind::lindblad);
   CHECK(std::get<AlongI>(one.observables.at(0).moment).samples == 501);
   REQUIRE(one.axes.size() == 1);
   CHECK(one.axes[0].columns[0].values[1] == Approx(0.02 * kGigahertz));
