@@ -31,7 +31,8 @@ struct Davies {
   std::vector<BathFunctions> baths;
   double tolerance;
   Index levels;
-  LabOperators lab;
+  LabOperators lab = {};
+  std::shared_ptr<const SmoothTable> table = {};
 
   Instant<Scalar> at(double s) const {
     Instant<Scalar> now;
@@ -63,6 +64,14 @@ struct Davies {
   bool drift(double s, double t, Eigen::MatrixXcd& out) const {
     const auto coefficients = lab_coefficients(lab, s, t);
     if (!coefficients) return false;
+    out.resize(model.dimension, model.dimension);
+    if (table) table->at(s, reinterpret_cast<double*>(out.data()));
+    else out = bath_drift(s);
+    add_lab_drift(lab, *coefficients, out);
+    return out.allFinite();
+  }
+
+  Eigen::MatrixXcd bath_drift(double s) const {
     const Instant<Scalar> now = at(s);
     // sum A_w^dagger A_w (gamma/2 + i S).
     Eigen::MatrixXcd loss = Eigen::MatrixXcd::Zero(levels, levels);
@@ -74,9 +83,7 @@ struct Davies {
           if (p % levels == q % levels) loss(p / levels, q / levels) += weight * std::conj(Complex(a[p])) * Complex(a[q]);
     }
     const Eigen::MatrixXcd v = now.frame.vectors.template cast<Complex>();
-    out = -product<Complex>(product<Complex>(v, loss), v.adjoint());
-    add_lab_drift(lab, *coefficients, out);
-    return out.allFinite();
+    return -product<Complex>(product<Complex>(v, loss), v.adjoint());
   }
 
   void jumps(double s, double t, const Ket& psi, JumpImages& out) const {
@@ -112,10 +119,10 @@ struct Davies {
 
 template <class Scalar>
 Unravelling unravel_davies(LevelModel<Scalar> model, std::vector<BathFunctions> baths, double tolerance, Index levels,
-                           LabOperators lab, bool reads_t) {
+                           LabOperators lab, bool reads_t, std::shared_ptr<const SmoothTable> table) {
   TARN_CHECK(baths.size() == model.couplings);
   const Index dimension = model.dimension, kept = levels > 0 ? std::min(levels, dimension) : dimension;
-  const auto davies = std::make_shared<const Davies<Scalar>>(Davies<Scalar>{std::move(model), std::move(baths), tolerance, kept, std::move(lab)});
+  const auto davies = std::make_shared<const Davies<Scalar>>(Davies<Scalar>{std::move(model), std::move(baths), tolerance, kept, std::move(lab), std::move(table)});
   Unravelling made;
   made.dimension = dimension;
   made.reads_t = reads_t;
@@ -124,7 +131,22 @@ Unravelling unravel_davies(LevelModel<Scalar> model, std::vector<BathFunctions> 
   return made;
 }
 
-template Unravelling unravel_davies<double>(LevelModel<double>, std::vector<BathFunctions>, double, Index, LabOperators, bool);
-template Unravelling unravel_davies<Complex>(LevelModel<Complex>, std::vector<BathFunctions>, double, Index, LabOperators, bool);
+template <class Scalar>
+std::shared_ptr<const SmoothTable> davies_drift(const LevelModel<Scalar>& model, const std::vector<BathFunctions>& baths, double tolerance,
+                                                Index levels, const SmoothTable::Options& options) {
+  const Index dimension = model.dimension;
+  const Davies<Scalar> davies{model, baths, tolerance, levels > 0 ? std::min(levels, dimension) : dimension};
+  SmoothTable::Options sized = options;
+  sized.size = static_cast<std::size_t>(2 * dimension * dimension);
+  const auto made = SmoothTable::make([&](double s, double* out) {
+    Eigen::Map<Eigen::MatrixXcd>(reinterpret_cast<Complex*>(out), dimension, dimension) = davies.bath_drift(s);
+  }, sized);
+  return made ? std::make_shared<const SmoothTable>(*made) : nullptr;
+}
+
+template Unravelling unravel_davies<double>(LevelModel<double>, std::vector<BathFunctions>, double, Index, LabOperators, bool, std::shared_ptr<const SmoothTable>);
+template Unravelling unravel_davies<Complex>(LevelModel<Complex>, std::vector<BathFunctions>, double, Index, LabOperators, bool, std::shared_ptr<const SmoothTable>);
+template std::shared_ptr<const SmoothTable> davies_drift<double>(const LevelModel<double>&, const std::vector<BathFunctions>&, double, Index, const SmoothTable::Options&);
+template std::shared_ptr<const SmoothTable> davies_drift<Complex>(const LevelModel<Complex>&, const std::vector<BathFunctions>&, double, Index, const SmoothTable::Options&);
 
 }  // namespace tarn::runtime

@@ -38,10 +38,17 @@ struct Unravelling {
 Unravelling unravel_fast_noise(std::shared_ptr<const NoiseTable> table, LabOperators lab, bool reads_t);
 
 /// Davies' equation among the `levels` lowest levels of each instant (0: all), with the jumps as written; frequencies
-/// that `tolerance` [rad/ns] does not tell apart belong to one jump. One bath for every coupling. Each drift() costs a
-/// diagonalisation.
+/// that `tolerance` [rad/ns] does not tell apart belong to one jump. One bath for every coupling. Without a
+/// table of davies_drift() each drift() costs a diagonalisation.
 template <class Scalar>
 Unravelling unravel_davies(LevelModel<Scalar> model, std::vector<BathFunctions> baths, double tolerance,
-                           Eigen::Index levels, LabOperators lab, bool reads_t);
+                           Eigen::Index levels, LabOperators lab, bool reads_t,
+                           std::shared_ptr<const SmoothTable> table = {});
+
+/// What the baths add to G along s, shared by all runs of one chip and its baths; options.size is set here. Null if
+/// interrupted.
+template <class Scalar>
+std::shared_ptr<const SmoothTable> davies_drift(const LevelModel<Scalar>& model, const std::vector<BathFunctions>& baths,
+                                                double tolerance, Eigen::Index levels, const SmoothTable::Options& options);
 
 }  // namespace tarn::runtime

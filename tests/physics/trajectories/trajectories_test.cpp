@@ -92,6 +92,18 @@ TEST_CASE("Davies' equation: trajectories agree with the density matrix within t
   }
 }
 
+TEST_CASE("Davies' drift from a table is the drift") {
+  NoisyRun run = chip_on_pace(2, 13);
+  const Unravelling made = davies_unravelling(run, 2e-3, true), exact = davies_unravelling(run, 2e-3);
+  Eigen::MatrixXcd from_table, drift;
+  for (const double s : {0.0, 0.13, 0.5, 0.77, 1.0}) {
+    REQUIRE(made.drift(s, 0, from_table));
+    REQUIRE(exact.drift(s, 0, drift));
+    CHECK((from_table - drift).cwiseAbs().maxCoeff() < 1e-7);
+  }
+  CHECK((readings_of(made, run, 20, 4) - readings_of(exact, run, 20, 4)).cwiseAbs().maxCoeff() < 1e-5);
+}
+
 // Row by row the same numbers: nothing about the number of threads may show.
 TEST_CASE("trajectories are the same bits for 1, 2 and 5 jobs, and for more trajectories") {
   NoisyRun run = chip_on_pace(2, 14);

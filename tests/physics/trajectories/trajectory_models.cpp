@@ -49,8 +49,12 @@ std::vector<BathFunctions> davies_baths(const NoisyRun& run, double eta) {
   return same_baths(run.family.couplings.size(), {ohmic_rate(eta, kCutoff, kTheta), smooth_shift(eta, kCutoff)});
 }
 
-Unravelling davies_unravelling(const NoisyRun& run, double eta) {
-  return unravel_davies<double>(dense_levels<double>(run.family), davies_baths(run, eta), 1e-6, 0, lab_with_jumps(run), false);
+Unravelling davies_unravelling(const NoisyRun& run, double eta, bool tabulated) {
+  const auto model = dense_levels<double>(run.family);
+  SmoothTable::Options options;
+  options.breaks = {0, 1};
+  const auto table = tabulated ? davies_drift<double>(model, davies_baths(run, eta), 1e-6, 0, options) : nullptr;
+  return unravel_davies<double>(model, davies_baths(run, eta), 1e-6, 0, lab_with_jumps(run), false, table);
 }
 
 std::vector<Density> pauli_words(int qubits) {

@@ -26,7 +26,7 @@ Timeline mixed_pace();
 LabOperators lab_with_jumps(const NoisyRun& run);
 std::shared_ptr<const NoiseTable> operators_table(const NoisyRun& run, FastEquation equation, double eta, double window = 0);
 std::vector<BathFunctions> davies_baths(const NoisyRun& run, double eta);
-Unravelling davies_unravelling(const NoisyRun& run, double eta);
+Unravelling davies_unravelling(const NoisyRun& run, double eta, bool tabulated = false);
 
 /// All Pauli words but the identity.
 std::vector<Density> pauli_words(int qubits);
