@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <cstdio>
 
+#include "compiler/driver/landed.h"
 #include "compiler/driver/messages.h"
 #include "lang/diagnostics/render.h"
 #include "lang/source/library.h"
@@ -84,6 +85,7 @@ std::optional<ChosenExperiments> choose_experiments(const LoadedModel& model, co
     if (!name.empty() && row != only) continue;
     Diagnostics own;
     ChosenExperiment experiment{experiments[row].name, instances(model.program, row, model.overrides, own)};
+    refuse_not_landed(experiment.instances, own);
     if (own.has_errors() && only_too_large(own)) {
       add_all(own, too_large);
       chosen.complete = false;

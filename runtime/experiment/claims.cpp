@@ -113,18 +113,20 @@ struct Spot {
 };
 
 /// Observables with one value hold at every place; those with more must all be there.
-std::vector<Spot> spots_of(const Plan& plan, const Claim& claim, const PointOutcome& outcome) {
+std::vector<Spot> spots_of(const Plan& plan, const Claim& claim, const PointOutcome& outcome, std::span<const Answer> under) {
   const std::size_t count = plan.observables.size();
-  Spot once{{0, 0}, std::vector<double>(count, NAN), std::vector<double>(count, 0.0)};
+  Spot once{{0, 0}, std::vector<double>(count + under.size(), NAN), std::vector<double>(count + under.size(), 0.0)};
+  for (std::size_t u = 0; u < under.size(); ++u) once.values[count + u] = under[u].value;
+  for (const std::uint32_t u : claim.under) once.errors[count + u] = under[u].error;
   // Rows of other claims are computed along: give them numbers that exist.
   for (std::size_t o = 0; o < count; ++o) {
-    if (!outcome.series[o].empty()) once.values[o] = outcome.series[o].front().answer.value;
+    if (!outcome.series.empty() && !outcome.series[o].empty()) once.values[o] = outcome.series[o].front().answer.value;
   }
   std::vector<std::uint32_t> along;
   for (const std::uint32_t o : claim.observables) {
     if (occurrence_of(plan, plan.observables[o]) != Occurrence::once) {
       along.push_back(o);
-    } else if (!outcome.series[o].empty()) {
+    } else if (!outcome.series.empty() && !outcome.series[o].empty()) {
       once.errors[o] = outcome.series[o].front().answer.error;
     }
   }
@@ -146,7 +148,7 @@ std::vector<Spot> spots_of(const Plan& plan, const Claim& claim, const PointOutc
   return spots;
 }
 
-void add(const Judgement& judgement, std::uint64_t point, std::optional<Instant> at, ClaimTally& tally) {
+void add(const Judgement& judgement, std::uint64_t point, const std::string& equation, std::optional<Instant> at, ClaimTally& tally) {
   ++tally.selected;
   if (judgement.verdict == Verdict::holds) ++tally.holding;
   if (judgement.verdict == Verdict::fails) ++tally.failing;
@@ -154,6 +156,7 @@ void add(const Judgement& judgement, std::uint64_t point, std::optional<Instant>
   if (!tally.weakest || worse(judgement, *tally.weakest)) {
     tally.weakest = judgement;
     tally.weakest_point = point;
+    tally.weakest_equation = equation;
     tally.weakest_at = at;
   }
 }
@@ -161,7 +164,8 @@ void add(const Judgement& judgement, std::uint64_t point, std::optional<Instant>
 /// True if `where` leaves a point out whatever its observables are.
 bool left_out(const Plan& plan, const Claim& claim, const ClaimRows& rows) {
   if (!claim.where) return false;
-  const std::vector<double> unknown(plan.observables.size(), NAN), none(plan.observables.size(), 0.0);
+  const std::size_t count = plan.observables.size() + plan.under.size();
+  const std::vector<double> unknown(count, NAN), none(count, 0.0);
   const auto selected = judge(*claim.where, rows, unknown, none, {0, 0});
   return selected && selected->verdict == Verdict::fails;
 }
@@ -182,13 +186,16 @@ Result<Judgement, RunError> judge(const ClaimNode& node, const ClaimRows& rows, 
 }
 
 Result<Done, RunError> tally_point(const Plan& plan, const Claim& claim, const ClaimRows& rows,
-                                   const PointOutcome& outcome, ClaimTally& tally) {
-  if (outcome.error) {
-    if (!left_out(plan, claim, rows)) add({Verdict::fails, -kInfinity, 0}, outcome.index, std::nullopt, tally);
+                                   const PointOutcome& outcome, ClaimTally& tally, std::span<const Answer> under) {
+  TARN_CHECK(under.size() == plan.under.size());
+  // Where every observable is under a named equation there is one answer for all of them.
+  const std::string equation = claim.under_all ? "" : plan.choice.label;
+  if (outcome.error && !claim.under_all) {
+    if (!left_out(plan, claim, rows)) add({Verdict::fails, -kInfinity, 0}, outcome.index, equation, std::nullopt, tally);
     return Done{};
   }
   const bool along = reads_along(plan, claim);
-  for (const Spot& spot : spots_of(plan, claim, outcome)) {
+  for (const Spot& spot : spots_of(plan, claim, outcome, under)) {
     if (claim.where) {
       const auto selected = judge(*claim.where, rows, spot.values, spot.errors, spot.at);
       if (!selected) return Unexpected{selected.error()};
@@ -197,7 +204,7 @@ Result<Done, RunError> tally_point(const Plan& plan, const Claim& claim, const C
     const auto judgement = judge(claim.holds, rows, spot.values, spot.errors, spot.at);
     if (!judgement) return Unexpected{judgement.error()};
     if (judgement->verdict == Verdict::undecided && std::isnan(judgement->margin)) ++tally.valueless;
-    add(*judgement, outcome.index, along ? std::optional(spot.at) : std::nullopt, tally);
+    add(*judgement, outcome.index, equation, along ? std::optional(spot.at) : std::nullopt, tally);
   }
   return Done{};
 }

@@ -36,6 +36,7 @@ struct ClaimTally {
   std::uint64_t valueless = 0;       ///< Of those straddling: an observable has no value there.
   std::optional<Judgement> weakest;  ///< The smallest margin met, and where.
   std::uint64_t weakest_point = 0;   ///< Grid index.
+  std::string weakest_equation;      ///< Its label, where several are compared.
   std::optional<Instant> weakest_at; ///< The instant, of a claim on a trace or a scan.
 };
 
@@ -53,9 +54,10 @@ struct ClaimReport {
 Result<Judgement, RunError> judge(const ClaimNode& node, const ClaimRows& rows, std::span<const double> values,
                                   std::span<const double> errors, Instant at);
 
-/// Adds every place of one point to the tally. A failed point counts as one failing place.
+/// Adds every place of one point to the tally. A failed point counts as one failing place. `under`: the answers
+/// that Plan::under names, at this point; `rows` gets them behind the plan's observables.
 Result<Done, RunError> tally_point(const Plan& plan, const Claim& claim, const ClaimRows& rows,
-                                   const PointOutcome& outcome, ClaimTally& tally);
+                                   const PointOutcome& outcome, ClaimTally& tally, std::span<const Answer> under = {});
 
 /// The final word. `sampled`: not the whole grid was run, so that only a failure is decided.
 /// `unfinished`: likewise, for a run that was interrupted.

@@ -2,7 +2,6 @@
 
 #include <algorithm>
 #include <cmath>
-#include <map>
 
 #include "runtime/bath/exponential_sum.h"
 #include "runtime/equation/driven_redfield.h"
@@ -11,22 +10,30 @@
 #include "runtime/experiment/memory.h"
 #include "runtime/experiment/noise_of_point.h"
 #include "runtime/experiment/words.h"
+#include "runtime/linear/eigensystem.h"
 
 namespace tarn::runtime {
 namespace {
 
 /// A hierarchy grows with the number of exponentials to the power of its depth: its sums are as good as an
 /// answer to 1e-6 mostly needs, and the error says where that is not enough.
-constexpr double kHierarchySum = 1e-4, kHierarchyCoarser = 1e-3;
-constexpr double kDrivenSum = 1e-7, kDrivenCoarser = 1e-5;
+constexpr double kHierarchySum = 1e-3, kHierarchyCoarser = 1e-2;
+/// Every exponential more is faster than the last, and steps follow the fastest.
+constexpr double kDrivenSum = 1e-5, kDrivenCoarser = 1e-4;
+constexpr double kBelow = 0.3;  ///< Deeper does not help once depth tells this little beside the sums.
 constexpr double kOfDistance = 0.03;  ///< Error of an answer over what the distance of the states could do to it.
 constexpr double kOfAvailable = 0.3, kUsualMemory = 4e9;
 
-/// Twice a bound on |H| along s: frequencies of the system stay below it [rad/ns].
+/// The largest E_max - E_min along s, with some to spare for what lies between: frequencies of the system stay
+/// below it [rad/ns].
 double frequency_bound(const PlanModel& model, const Functions& functions, const RangeOfS& range) {
+  constexpr int kPlaces = 16;
   double most = 1e-3;
-  for (const double x : {0.0, 0.25, 0.5, 0.75, 1.0}) {
-    most = std::max(most, 2 * norm_bound(scaled_words(model.plan().chip.hamiltonian, functions.values(kCoefficients, range.lowest + x * (range.highest - range.lowest), 0))));
+  for (int k = 0; k <= kPlaces; ++k) {
+    const double s = range.lowest + (range.highest - range.lowest) * k / kPlaces;
+    const auto words = scaled_words(model.plan().chip.hamiltonian, functions.values(kCoefficients, s, 0));
+    const Eigen::VectorXd e = eigensystem(dense_operator(words, model.plan().chip.qubits.size())).values;
+    most = std::max(most, 1.1 * (e[e.size() - 1] - e[0]));
   }
   return most;
 }
@@ -91,6 +98,20 @@ void visit_all(PointTask& task, const std::vector<Density>& states) {
   for (std::size_t k = 0; k < states.size(); ++k) task.visit(k, states[k], 1);
 }
 
+/// What a comparison tells of the error of an answer.
+double told(const CoarserStates& coarser, const std::vector<Density>& states) {
+  double most = 0;
+  for (std::size_t k = 0; k < states.size(); ++k) most = std::max(most, coarser.weight * (coarser.states[k] - states[k]).norm());
+  return most;
+}
+
+/// The first comparison is of the depth, the others are of the sums.
+bool depth_is_enough(const HierarchyAnswer& answer) {
+  double sums = 0;
+  for (std::size_t c = 1; c < answer.coarser.size(); ++c) sums = std::max(sums, told(answer.coarser[c], answer.states));
+  return !answer.coarser.empty() && told(answer.coarser.front(), answer.states) < kBelow * sums;
+}
+
 void refine(PointTask& task, HierarchyRefinement refinement) {
   while (task.wants_run()) {
     const auto answer = refinement.next();
@@ -101,7 +122,7 @@ void refine(PointTask& task, HierarchyRefinement refinement) {
     }
     visit_all(task, answer->states);
     const std::vector<double> floor(task.times().size(), answer->floor);
-    task.end_best_run(answer->counters, floor, refinement.exhausted());
+    task.end_best_run(answer->counters, floor, refinement.exhausted() || depth_is_enough(*answer));
   }
 }
 

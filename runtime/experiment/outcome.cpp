@@ -31,6 +31,17 @@ bool lacks_value(const std::vector<Sample>& series) {
   return series.empty() || (series.size() == 1 && std::isnan(series.front().answer.value));
 }
 
+std::uint32_t choice_of(const Plan& plan) {
+  for (std::uint32_t c = 0; c < plan.compared.size(); ++c) {
+    if (plan.compared[c].label == plan.choice.label) return c;
+  }
+  return 0;
+}
+
+std::uint64_t row_of(const Plan& plan, std::uint64_t index, std::uint32_t choice) {
+  return index * std::max<std::size_t>(1, plan.compared.size()) + choice;
+}
+
 Occurrence occurrence_of(const Plan& plan, const Observable& observable) {
   if (std::holds_alternative<Along>(observable.moment)) return Occurrence::trace;
   if (plan.scan && std::holds_alternative<Static>(observable.moment) && !reads_reductions_only(plan, observable)) {

@@ -25,6 +25,11 @@ struct Sample {
   Answer answer;
 };
 
+/// Which of the equations compared a plan runs; 0 where there is one only.
+std::uint32_t choice_of(const Plan& plan);
+/// Points of the grid, each with the equations compared one after the other.
+std::uint64_t row_of(const Plan& plan, std::uint64_t index, std::uint32_t choice);
+
 /// How often an observable has a value: once a grid point, at each instant of its trace, or at each
 /// s of the scan.
 enum class Occurrence : std::uint8_t { once, trace, scan };
@@ -49,6 +54,7 @@ inline constexpr const char* kStatusNotMet = "moment never met";
 
 struct PointOutcome {
   std::uint64_t index = 0;                   ///< In the grid, first axis slowest.
+  std::uint64_t row = 0;                     ///< Among all points of all equations compared: see row_of().
   std::string status = kStatusOk;            ///< Or another of the above, or `KIND: message` of a failed point.
   std::optional<RunError> error;             ///< Set if the point failed; then there are no answers.
   std::vector<std::vector<Sample>> series;   ///< For each observable of the plan.

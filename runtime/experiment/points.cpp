@@ -141,6 +141,7 @@ void Pool::run_group(const Group& group) {
     shares_ -= shares[k];
     PointOutcome outcome = tasks[k]->take_outcome();
     if (outcome.error && outcome.error->kind == "interrupted") continue;
+    outcome.row = items_[group[k]].row;
     mark_moments_never_met(model.plan(), outcome);
     outcomes_[group[k]] = std::move(outcome);
     ++done_;

@@ -14,6 +14,7 @@ namespace tarn::runtime {
 /// One point and the plan it belongs to.
 struct PointItem {
   std::uint64_t index = 0;
+  std::uint64_t row = 0;  ///< As row_of() has it.
   const PlanModel* model = nullptr;
 };
 

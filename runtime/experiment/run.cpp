@@ -31,9 +31,12 @@ class Experiment {
     report_.any_plan = &plans.front().plan;
     for (const PlanAndKernel& each : plans) {
       models_.push_back(std::make_unique<PlanModel>(each.plan, each.kernel, each.tables));
-      for (const std::uint64_t index : each.plan.points) grid_.push_back({index, models_.back().get()});
+      const std::uint32_t choice = choice_of(each.plan);
+      for (const std::uint64_t index : each.plan.points) {
+        grid_.push_back({index, row_of(each.plan, index, choice), models_.back().get()});
+      }
     }
-    std::sort(grid_.begin(), grid_.end(), [](const PointItem& a, const PointItem& b) { return a.index < b.index; });
+    std::sort(grid_.begin(), grid_.end(), [](const PointItem& a, const PointItem& b) { return a.row < b.row; });
     report_.grid = grid_.size();
   }
 
@@ -52,6 +55,7 @@ class Experiment {
   }
   std::filesystem::path folder() const { return *options_.out / report_.experiment; }
   ClaimRows claim_rows(const Plan& plan, std::shared_ptr<Functions> functions) const;
+  std::vector<Answer> answers_under(const Plan& plan, std::uint64_t index) const;
 
   std::span<const PlanAndKernel> plans_;
   const RunOptions& options_;
@@ -97,7 +101,7 @@ void Experiment::restore() {
   if (!read) return;
   restored_ = std::move(read).value();
   for (const PointItem& item : grid_) {
-    const auto found = restored_.find(item.index);
+    const auto found = restored_.find(item.row);
     if (found == restored_.end()) continue;
     Functions functions = item.model->functions_at(item.index);
     if (!complete_unlisted(item.model->plan(), functions, found->second)) restored_.erase(found);
@@ -119,11 +123,15 @@ void Experiment::choose() {
     items_ = grid_;
   } else {
     std::set<std::uint64_t> chosen;
-    for (const std::uint64_t i : sample_of_grid(grid_.size(), std::max<std::uint64_t>(1, *options_.sample))) {
-      chosen.insert(grid_[i].index);
+    std::vector<std::uint64_t> indices;
+    for (const PointItem& item : grid_) {
+      if (indices.empty() || indices.back() != item.index) indices.push_back(item.index);
+    }
+    for (const std::uint64_t i : sample_of_grid(indices.size(), std::max<std::uint64_t>(1, *options_.sample))) {
+      chosen.insert(indices[i]);
     }
     for (const PointItem& item : grid_) {
-      if (chosen.contains(item.index) || restored_.contains(item.index)) items_.push_back(item);
+      if (chosen.contains(item.index) || restored_.contains(item.row)) items_.push_back(item);
     }
   }
   report_.total = items_.size();
@@ -132,7 +140,7 @@ void Experiment::choose() {
 void Experiment::run() {
   std::vector<PointItem> missing;
   for (const PointItem& item : items_) {
-    if (!restored_.contains(item.index)) missing.push_back(item);
+    if (!restored_.contains(item.row)) missing.push_back(item);
   }
   PointsOptions points;
   points.jobs = std::max<std::size_t>(1, options_.jobs);
@@ -158,10 +166,10 @@ void Experiment::keep(std::vector<PointOutcome> fresh) {
     report_.counters += outcome.counters;
     report_.leakage = std::max(report_.leakage, outcome.leakage);
     point_remarks_.insert(outcome.remarks.begin(), outcome.remarks.end());
-    restored_.emplace(outcome.index, std::move(outcome));
+    restored_.emplace(outcome.row, std::move(outcome));
   }
   for (const PointItem& item : items_) {
-    const auto found = restored_.find(item.index);
+    const auto found = restored_.find(item.row);
     if (found == restored_.end()) continue;
     if (found->second.error) ++report_.failed;
     else if (found->second.status != kStatusOk) ++report_.loose;
@@ -181,11 +189,28 @@ void Experiment::keep(std::vector<PointOutcome> fresh) {
 
 ClaimRows Experiment::claim_rows(const Plan& plan, std::shared_ptr<Functions> functions) const {
   return [&plan, functions](std::span<const double> observables, Instant at) {
+    // Behind the plan's observables stand those under another equation.
     for (std::size_t o = 0; o < observables.size(); ++o) {
-      functions->set_input(plan.observable_slot + static_cast<std::uint32_t>(o), observables[o]);
+      const std::size_t count = plan.observables.size();
+      const std::size_t slot = o < count ? plan.observable_slot + o : plan.under_slot + o - count;
+      functions->set_input(static_cast<std::uint32_t>(slot), observables[o]);
     }
     return Result<std::vector<double>, RunError>(functions->values(kClaims, at.s, at.t));
   };
+}
+
+/// What Plan::under names, at one grid point; NaN where that equation has no answer there.
+std::vector<Answer> Experiment::answers_under(const Plan& plan, std::uint64_t index) const {
+  std::vector<Answer> answers;
+  for (const Plan::Under& under : plan.under) {
+    const std::uint64_t row = row_of(plan, index, under.choice);
+    const auto found = std::lower_bound(report_.points.begin(), report_.points.end(), row,
+                                        [](const PointOutcome& point, std::uint64_t wanted) { return point.row < wanted; });
+    const bool there = found != report_.points.end() && found->row == row && !found->series.empty() &&
+                       !found->series[under.observable].empty();
+    answers.push_back(there ? found->series[under.observable].front().answer : Answer{});
+  }
+  return answers;
 }
 
 void Experiment::judge_claims() {
@@ -197,8 +222,10 @@ void Experiment::judge_claims() {
     const Plan& plan = *report_.plan_of[i];
     const auto functions = std::make_shared<Functions>(model_of.at(&plan)->functions_at(report_.points[i].index));
     const ClaimRows rows = claim_rows(plan, functions);
+    const std::vector<Answer> under = answers_under(plan, report_.points[i].index);
     for (std::size_t c = 0; c < claims.size(); ++c) {
-      TARN_CHECK(tally_point(plan, plan.claims[c], rows, report_.points[i], tallies[c]));
+      if (plan.claims[c].under_all && choice_of(plan) != 0) continue;
+      TARN_CHECK(tally_point(plan, plan.claims[c], rows, report_.points[i], tallies[c], under));
     }
   }
   const bool sampled = report_.total < report_.grid;

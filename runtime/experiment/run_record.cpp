@@ -51,6 +51,7 @@ ordered_json claim_record(const ClaimReport& claim, const Plan& plan) {
                       {"within error", claim.tally.straddling}};
   if (claim.tally.weakest) {
     ordered_json weakest = {{"at", point_of(plan, claim.tally.weakest_point)}};
+    if (!claim.tally.weakest_equation.empty()) weakest["equation"] = claim.tally.weakest_equation;
     if (claim.tally.weakest_at) {
       weakest["t [ns]"] = claim.tally.weakest_at->t;
       weakest["s"] = claim.tally.weakest_at->s;

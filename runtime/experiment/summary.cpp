@@ -92,6 +92,7 @@ std::string place_of(const ClaimReport& claim, const Plan& plan) {
       add(fmt::format("{} = {}{}", column.parameter, parameter_text(values[next++], column.unit), unit));
     }
   }
+  if (!claim.tally.weakest_equation.empty()) add(fmt::format("equation = {}", claim.tally.weakest_equation));
   if (claim.tally.weakest_at) {
     if (!plan.scan) add(fmt::format("t = {:.6g} ns", claim.tally.weakest_at->t));
     add(fmt::format("s = {:.6g}", claim.tally.weakest_at->s));

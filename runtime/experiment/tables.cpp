@@ -50,6 +50,7 @@ std::vector<std::string> key_header(const Plan& plan) {
   for (const Axis& axis : plan.axes) {
     for (const AxisColumn& column : axis.columns) header.push_back(column_name(column.parameter, column.unit));
   }
+  if (!plan.compared.empty()) header.push_back("equation");
   return header;
 }
 
@@ -61,6 +62,7 @@ std::vector<std::string> key_fields(const Plan& plan, std::uint64_t index) {
       fields.push_back(parameter_text(values[fields.size()], column.unit));
     }
   }
+  if (!plan.compared.empty()) fields.push_back(plan.choice.label);
   return fields;
 }
 
@@ -319,8 +321,9 @@ Result<std::map<std::uint64_t, PointOutcome>, std::string> read_tables(
   for (std::size_t i = 0; i < indices.size(); ++i) {
     PointOutcome outcome;
     outcome.index = indices[i];
+    outcome.row = row_of(*plan_of[i], indices[i], choice_of(*plan_of[i]));
     const char* misfit = nullptr;
-    if (read_point(*plan_of[i], cursors, outcome, misfit)) outcomes[indices[i]] = std::move(outcome);
+    if (read_point(*plan_of[i], cursors, outcome, misfit)) outcomes[outcome.row] = std::move(outcome);
     if (misfit) return Unexpected{std::string(misfit)};
   }
   if (!cursors.results.at_end()) return Unexpected{std::string("results.csv")};

@@ -31,7 +31,7 @@ std::string parameter_text(double value, const DisplayUnit& unit);
 ResultTables make_tables(std::span<const PointOutcome* const> outcomes, std::span<const Plan* const> plan_of,
                          const Plan& plan);
 
-/// What make_tables wrote for the points `indices` (ascending; plan_of as above), by grid index.
+/// What make_tables wrote for the points `indices` (ascending; plan_of as above), by row: see row_of().
 /// Points whose rows are missing are left out. Observables that read reductions or are not shown
 /// are not filled: see complete_reductions(). The error says which file does not fit the plan.
 Result<std::map<std::uint64_t, PointOutcome>, std::string> read_tables(
