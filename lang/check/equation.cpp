@@ -12,8 +12,8 @@ namespace {
 
 constexpr std::string_view kEquations =
     "equations available: schroedinger, lindblad, davies, redfield, coarse_grained, universal, hierarchy";
-constexpr auto kLater = std::to_array<std::string_view>({"hybrid", "blip"});
-constexpr auto kWords = std::to_array<std::string_view>({"schroedinger", "lindblad", "davies", "redfield", "coarse_grained",
+constexpr auto kLaterEquations = std::to_array<std::string_view>({"hybrid", "blip"});
+constexpr auto kEquationWords = std::to_array<std::string_view>({"schroedinger", "lindblad", "davies", "redfield", "coarse_grained",
                                                          "universal", "hybrid", "blip", "hierarchy"});
 constexpr auto kMemories = std::to_array<std::string_view>({"markov", "growing", "driven"});
 
@@ -142,11 +142,11 @@ EquationI read_equation(Session& session, const Scope& scope, const ast::Path& p
   const std::string& word = path.steps.front().name.text;
   const bool plain = path.steps.size() == 1 && !path.steps.front().index;
   const auto kind = plain ? kind_of(word) : std::nullopt;
-  const bool later = plain && std::find(kLater.begin(), kLater.end(), word) != kLater.end();
+  const bool later = plain && std::find(kLaterEquations.begin(), kLaterEquations.end(), word) != kLaterEquations.end();
   if (later) {
     session.report(path.span, diag::not_available, fmt::format("`{}`", excerpt(session, path.span)), std::string(kEquations));
   } else if (!kind) {
-    session.report(path.span, diag::unknown_equation, excerpt(session, path.span)).remedy(near_and(word, kWords, kEquations));
+    session.report(path.span, diag::unknown_equation, excerpt(session, path.span)).remedy(near_and(word, kEquationWords, kEquations));
   } else {
     equation.kind = *kind;
     OptionReader(session, scope, equation).read(path);

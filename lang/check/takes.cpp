@@ -107,12 +107,22 @@ void check_trajectories(Session& session, const Statements& statements, const In
   else refuse(session, span, "`trajectories`", *other, "it is not completely positive, so no mean over state vectors", kRemedy);
 }
 
-/// What stands still or relaxes by noise and jumps: T1, T2, `begin steady`.
-void check_relaxation(Session& session, const Instance& instance, std::string_view what, Span span) {
+/// Those that carry the memory of the baths along: there is no generator of the chip alone.
+bool carries_memory(const EquationI& equation) {
+  return equation.kind == EquationKind::hierarchy || (equation.kind == EquationKind::redfield && equation.memory == MemoryI::driven);
+}
+
+/// T1, T2 and `begin steady` want noise or jumps; `times` also a generator that stands still.
+void check_relaxation(Session& session, const Instance& instance, std::string_view what, Span span, bool times) {
   for (const EquationI& equation : instance.equations) {
     if (equation.kind == EquationKind::none) continue;
     if (equation.kind == EquationKind::schroedinger) {
       refuse(session, span, what, equation, "nothing relaxes in it", "`davies` takes the noise, `lindblad` the jumps as written");
+      return;
+    }
+    if (times && carries_memory(equation)) {
+      refuse(session, span, what, equation, "it carries the memory of its baths along, so no generator stands still",
+             "`davies`, `redfield`, `coarse_grained` and `universal` have relaxation times");
       return;
     }
     const bool some = !instance.jumps.empty() || (takes_noise(equation.kind) && !instance.noise.empty());
@@ -123,16 +133,20 @@ void check_relaxation(Session& session, const Instance& instance, std::string_vi
   }
 }
 
-/// `davies` takes a jump as one operator: what changes on the way would be left at its first value.
+/// Some equations take a jump as one operator: what changes on the way would be left at its first value.
 void check_jumps(Session& session, const Instance& instance) {
-  if (!any_equation(instance, [](EquationKind kind) { return kind == EquationKind::davies; })) return;
+  const auto taker = std::find_if(instance.equations.begin(), instance.equations.end(), [](const EquationI& equation) {
+    return equation.kind == EquationKind::davies || carries_memory(equation);
+  });
+  if (taker == instance.equations.end()) return;
   for (const JumpTerm& jump : instance.jumps) {
     const bool moves = std::any_of(jump.op.begin(), jump.op.end(), [&](const OperatorTerm& term) {
       const Dependence reads = dependence(session.graph, term.coefficient);
       return reads.s || reads.t;
     });
     if (!moves) continue;
-    session.report(jump.span, diag::not_available, "a jump that changes with `s` or `t` under `davies`",
+    session.report(jump.span, diag::not_available,
+                   fmt::format("a jump that changes with `s` or `t` under `{}`", excerpt(session, taker->span)),
                    "`lindblad` for such jumps");
   }
 }
@@ -251,9 +265,12 @@ void check_equations(Session& session, const Statements& statements, const Readi
   check_jumps(session, instance);
   check_levels(session, statements, instance);
   check_trajectories(session, statements, instance);
-  if (readings.relaxation) check_relaxation(session, instance, fmt::format("`{}`", excerpt(session, *readings.relaxation)), *readings.relaxation);
+  if (readings.relaxation) {
+    const Span span = *readings.relaxation;
+    check_relaxation(session, instance, fmt::format("`{}`", excerpt(session, span)), span, true);
+  }
   const bool steady = instance.begin && std::holds_alternative<BeginSteadyI>(*instance.begin);
-  if (steady) check_relaxation(session, instance, "`begin steady`", statements.begin->span);
+  if (steady) check_relaxation(session, instance, "`begin steady`", statements.begin->span, false);
 }
 
 void check_baths(Session& session, const Instance& instance) {
