@@ -58,3 +58,18 @@ TEST_CASE("a closed ring of ten qubits equals its exact solution") {
     CHECK(std::abs(csv.number(row, "ground_population") - csv.number(row, "exact")) < 2e-6);
   }
 }
+
+TEST_CASE("one qubit under every equation keeps to the exact answer at weak coupling") {
+  // Reference: the hierarchy in the same run; that against closed forms in tests/physics/hierarchy.
+  const Scratch scratch;
+  run_example("05_all_equations/equations.tarn", scratch);
+  const Csv csv = read_csv(scratch.path() / "out/relaxing/results.csv");
+  REQUIRE(csv.rows.size() == 21);
+  for (std::size_t row = 0; row < 7; ++row) CHECK(std::abs(csv.number(row, "up") - csv.number(0, "up")) < 5e-3);
+}
+
+TEST_CASE("a gap below the relaxation rate is beyond Davies, not beyond a window") {
+  const Scratch scratch;
+  run_example("06_narrow_gap/gap.tarn", scratch);
+  CHECK(read_csv(scratch.path() / "out/crossing/results.csv").rows.size() == 25);
+}
