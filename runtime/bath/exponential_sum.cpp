@@ -24,8 +24,8 @@ using Eigen::ArrayXXd;
 using Eigen::Index;
 using Eigen::MatrixXd;
 using Rates = std::vector<Complex>;
-constexpr double kPi = std::numbers::pi;
-constexpr Complex kI{0.0, 1.0};
+constexpr double kPiOfSum = std::numbers::pi;
+constexpr Complex kImaginary{0.0, 1.0};
 constexpr int kMostTerms = 40;
 
 /// C at times evenly spaced in log t, and what integrals over t weigh them with.
@@ -90,7 +90,7 @@ CorrelationSamples sample_correlation(const ThermalBath& bath, double run_length
   s.w.resize(2 * half.size());
   s.w << half, -half;
   const ArrayXd shift = ShiftFunction(bath)(s.w);
-  s.transform = 0.5 * bath.rate(s.w).cast<Complex>() + kI * shift.cast<Complex>();
+  s.transform = 0.5 * bath.rate(s.w).cast<Complex>() + kImaginary * shift.cast<Complex>();
   return s;
 }
 
@@ -185,16 +185,16 @@ ExponentialSum pade_of(const std::vector<DensityPole>& density, double theta, in
   const std::vector<BosePole> bose = bose_poles(count);
   std::vector<Exponential> terms;
   for (const DensityPole& pole : density) {
-    const Complex x = -kI * pole.rate / theta;
+    const Complex x = -kImaginary * pole.rate / theta;
     Complex occupation = 1.0 / x + 0.5;
-    for (const auto& [xi, eta] : bose) occupation += 2.0 * eta * x / ((x - kI * xi) * (x + kI * xi));
-    terms.push_back({-2.0 * kPi * kI * pole.residue * occupation, 0.0, pole.rate});
+    for (const auto& [xi, eta] : bose) occupation += 2.0 * eta * x / ((x - kImaginary * xi) * (x + kImaginary * xi));
+    terms.push_back({-2.0 * kPiOfSum * kImaginary * pole.residue * occupation, 0.0, pole.rate});
   }
   for (const auto& [xi, eta] : bose) {
     const double rate = theta * xi;
     Complex sum = 0.0;
     for (const DensityPole& pole : density) sum += pole.residue / ((pole.rate - rate) * (pole.rate + rate));
-    terms.push_back({-4.0 * kPi * theta * eta * rate * sum.real(), 0.0, rate});
+    terms.push_back({-4.0 * kPiOfSum * theta * eta * rate * sum.real(), 0.0, rate});
   }
   pair_up(terms);
   return finish(std::move(terms), s);
@@ -232,7 +232,7 @@ std::vector<Exponential> fit_coefficients(const Rates& rates, const CorrelationS
     // p Re e + q Im e, e = exp(-rate t), is (p - i q)/2 e + (p + i q)/2 e*.
     const Index imaginary = column++;
     const auto half = [&](Index part) { return 0.5 * Complex(x(real, part), -x(imaginary, part)); };
-    const auto add = [&](Complex a, Complex b, Complex nu) { terms.push_back({a + kI * b, a - kI * b, nu}); };
+    const auto add = [&](Complex a, Complex b, Complex nu) { terms.push_back({a + kImaginary * b, a - kImaginary * b, nu}); };
     add(half(0), half(1), rate);
     add(std::conj(half(0)), std::conj(half(1)), std::conj(rate));
   }
@@ -280,7 +280,7 @@ class CorrelationFit {
       top = std::max(top, std::min(support(component).high, kHighest * support(component).scale));
     const ArrayXd w = sample_frequencies(bath, std::min(kLowest / run_length, 1e-3 * top), top);
     ArrayXXd values(w.size(), 2);
-    values.col(0) = (bath.rate(w) + bath.rate(-w)) / (2.0 * kPi);
+    values.col(0) = (bath.rate(w) + bath.rate(-w)) / (2.0 * kPiOfSum);
     values.col(1) = bath.density(w) / w;
     const double scale = values.col(0).maxCoeff();
     ArrayXXd weights(w.size(), 2);
@@ -361,7 +361,7 @@ Complex correlation(const ExponentialSum& sum, double t) {
 
 Complex half_range(const ExponentialSum& sum, double w) {
   Complex total = sum.rest;
-  for (const Exponential& term : sum.terms) total += term.coefficient / (term.rate - kI * w);
+  for (const Exponential& term : sum.terms) total += term.coefficient / (term.rate - kImaginary * w);
   return total;
 }
 

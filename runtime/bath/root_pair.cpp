@@ -19,8 +19,8 @@ using Eigen::VectorXd;
 
 /// f is made to this part of lambda, as far as its panels allow.
 constexpr double kTolerance = 3e-10;
-constexpr Index kNodes = 20;  // of a panel in w, as many as PanelSeries has terms
-constexpr Index kChecks = 40;
+constexpr Index kPanelNodes = 20;  // of a panel in w, as many as PanelSeries has terms
+constexpr Index kPanelChecks = 40;
 
 /// Where sqrt(gamma) is not smooth (finest = 0) or varies over `finest` only.
 struct RoughPoint {
@@ -140,13 +140,13 @@ class RootRows {
 
   /// Edges that cut panel p where w + sign x meets rough points, finer towards them.
   std::vector<double> pieces_of(Index p, double w, double sign) const {
-    constexpr double kNear = 0.3;
+    constexpr double kNearPole = 0.3;
     constexpr double kFinest = 1e-3;
     const double length = right(p) - left(p);
     std::vector<double> cuts = {left(p), right(p)};
     for (const auto& [point, finest] : rough_) {
       const double at = sign * (point - w);
-      if (at < left(p) - kNear * length || at > right(p) + kNear * length) continue;
+      if (at < left(p) - kNearPole * length || at > right(p) + kNearPole * length) continue;
       const auto cut = [&](double x) {
         if (x > left(p) && x < right(p)) cuts.push_back(x);
       };
@@ -205,8 +205,8 @@ MatrixXd principal_values(const RootRows& rows, const ArrayXd& w) {
 
 /// Off the nodes: half of them spread evenly, half towards w = 0.
 ArrayXd check_places(double w_max) {
-  ArrayXd w(kChecks);
-  for (Index i = 0; i < kChecks; ++i) {
+  ArrayXd w(kPanelChecks);
+  for (Index i = 0; i < kPanelChecks; ++i) {
     const double turns = static_cast<double>(i + 1) * std::numbers::phi;
     const double even = 2.0 * (turns - std::floor(turns)) - 1.0;
     w[i] = w_max * (i % 2 == 0 ? even : std::copysign(std::pow(10.0, -4.0 * std::abs(even)), even));
@@ -223,30 +223,30 @@ PairFunctions root_pair(const ThermalBath& bath, double w_max) {
   if (shift.scale() == 0.0) return {};
   const std::vector<double> edges = frequency_edges(bath, shift, w_max);
   const Index panels = std::ssize(edges) - 1;
-  const Index count = panels * kNodes;
-  ArrayXd w(count + kChecks);
-  const ArrayXd node = chebyshev_nodes(kNodes);
+  const Index count = panels * kPanelNodes;
+  ArrayXd w(count + kPanelChecks);
+  const ArrayXd node = chebyshev_nodes(kPanelNodes);
   for (Index p = 0; p < panels; ++p) {
     const double left = edges[static_cast<std::size_t>(p)];
     const double right = edges[static_cast<std::size_t>(p) + 1];
-    w.segment(p * kNodes, kNodes) = 0.5 * ((1.0 - node) * left + (1.0 + node) * right);
+    w.segment(p * kPanelNodes, kPanelNodes) = 0.5 * ((1.0 - node) * left + (1.0 + node) * right);
   }
-  w.tail(kChecks) = check_places(w_max);
+  w.tail(kPanelChecks) = check_places(w_max);
   const RootRows rows(bath, rough_points(bath, shift), distance_edges(bath, w_max));
   const MatrixXd f = principal_values(rows, w);
 
   // The quadrature against S, what it should be on the diagonal; the interpolation against the quadrature.
   double quadrature = 0.0;
-  for (Index i = 0; i < count; i += kNodes / 4) quadrature = std::max(quadrature, std::abs(f(i, i) - shift.at(w[i])));
+  for (Index i = 0; i < count; i += kPanelNodes / 4) quadrature = std::max(quadrature, std::abs(f(i, i) - shift.at(w[i])));
   for (Index i = count; i < w.size(); ++i) quadrature = std::max(quadrature, std::abs(f(i, i) - shift.at(w[i])));
   const double smallest = std::max(0.1 * kTolerance * shift.scale(), 0.1 * quadrature);
   Decomposition s = decompose(f.topLeftCorner(count, count));
   keep_above(s, smallest);
   PairFunctions pair{PairFunction([bath](const ArrayXd& at) { return bath.rate(at).sqrt().eval(); }),
                      {edges, std::move(s.vectors), std::move(s.values)}};
-  const MatrixXd u = pair.shift.factors({w.data() + count, static_cast<std::size_t>(kChecks)});
+  const MatrixXd u = pair.shift.factors({w.data() + count, static_cast<std::size_t>(kPanelChecks)});
   const MatrixXd made = u * pair.shift.values().asDiagonal() * u.transpose();
-  pair.shift.set_error(quadrature + (made - f.bottomRightCorner(kChecks, kChecks)).cwiseAbs().maxCoeff());
+  pair.shift.set_error(quadrature + (made - f.bottomRightCorner(kPanelChecks, kPanelChecks)).cwiseAbs().maxCoeff());
   return pair;
 }
 

@@ -38,8 +38,8 @@ template <bool Left, bool Right>
 [[gnu::always_inline]] inline void add_products_of_pair(const double* a, const Planes<2>& x, const Planes<2>& y, const double* b,
                                                   Planes<2>& out) {
   using Vector = Rows<2>::Vector;
-  using Index = long long __attribute__((vector_size(4 * sizeof(long long))));
-  constexpr Index kRows[2] = {{0, 1, 0, 1}, {2, 3, 2, 3}}, kColumns[2] = {{0, 0, 2, 2}, {1, 1, 3, 3}};
+  using Lanes = long long __attribute__((vector_size(4 * sizeof(long long))));
+  constexpr Lanes kRows[2] = {{0, 1, 0, 1}, {2, 3, 2, 3}}, kColumns[2] = {{0, 0, 2, 2}, {1, 1, 3, 3}};
   const Planes<2>&left = planes_at<2>(a), &right = planes_at<2>(b);
   Vector re = out.re[0], im = out.im[0];
 #pragma GCC unroll 2

@@ -17,17 +17,17 @@ using Complex = std::complex<double>;
 using Index = Eigen::Index;
 
 /// Up to this many elements of rho the whole map is made dense.
-constexpr Index kDense = 256;
+constexpr Index kDenseElements = 256;
 
 /// Applications of the generator that cost as much as a dense exponential (measured for 1 to 4 qubits).
-double dense_cost(Index elements) {
+double cost_of_dense_map(Index elements) {
   const auto n = static_cast<double>(elements);
   return 100 + 0.03 * n * n * n;
 }
 
-class Propagation {
+class OpenPropagation {
  public:
-  Propagation(OpenGenerator& generator, const OpenRun& run, const Density& initial, const Visit& visit,
+  OpenPropagation(OpenGenerator& generator, const OpenRun& run, const Density& initial, const Visit& visit,
               const Interrupted& interrupted)
       : generator_(generator), run_(run), visit_(visit), interrupted_(interrupted),
         elements_(initial.size()), length_((2 * static_cast<std::size_t>(initial.size()) + 15) / 16 * 16), integrator_(2 * static_cast<std::size_t>(initial.size()), 1),
@@ -89,14 +89,14 @@ class Propagation {
   void hold(std::size_t index) {
     const Piece& piece = pieces_[index];
     const double duration = piece.t1 - piece.t0;
-    if (elements_ > kDense) return integrate(index, 1);
+    if (elements_ > kDenseElements) return integrate(index, 1);
     if (!prepare(piece, {&piece.t0, 1})) {
       failure_ = Failure{FailureKind::not_finite, piece.t0};
       return;
     }
     const Eigen::MatrixXcd map = generator_.dense(0);
     counters_.evaluations += static_cast<std::uint64_t>(elements_);
-    if (8 * map.colwise().norm().maxCoeff() * duration < dense_cost(elements_)) return integrate(index, 1);
+    if (8 * map.colwise().norm().maxCoeff() * duration < cost_of_dense_map(elements_)) return integrate(index, 1);
     double from = piece.t0, known = -1;
     Eigen::MatrixXcd factor;
     Eigen::Map<Eigen::VectorXcd> rho(reinterpret_cast<Complex*>(integrator_.state()), elements_);
@@ -142,7 +142,7 @@ Result<Counters, RunError> propagate_open(OpenGenerator& generator, const OpenRu
                                           const Visit& visit, const Interrupted& interrupted) {
   TARN_CHECK(initial.rows() == generator.dimension() && initial.cols() == generator.dimension());
   TARN_CHECK(std::is_sorted(run.times.begin(), run.times.end()));
-  return Propagation(generator, run, initial, visit, interrupted).run();
+  return OpenPropagation(generator, run, initial, visit, interrupted).run();
 }
 
 }  // namespace tarn::runtime

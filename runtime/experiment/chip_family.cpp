@@ -13,7 +13,7 @@
 namespace tarn::runtime {
 namespace {
 
-constexpr std::size_t kSamples = 257;
+constexpr std::size_t kSampledPositions = 257;
 constexpr double kNarrowest = 0.02;
 constexpr double kRoundingOfCorrelation = 1e-10;
 
@@ -78,8 +78,8 @@ void write_dense(const OperatorSum& sum, std::size_t qubits, MatrixSum& out) {
 }  // namespace
 
 std::vector<double> sampled_positions() {
-  std::vector<double> s(kSamples);
-  for (std::size_t i = 0; i < kSamples; ++i) s[i] = static_cast<double>(i) / (kSamples - 1);
+  std::vector<double> s(kSampledPositions);
+  for (std::size_t i = 0; i < kSampledPositions; ++i) s[i] = static_cast<double>(i) / (kSampledPositions - 1);
   return s;
 }
 

@@ -21,8 +21,8 @@ constexpr double kHierarchySum = 1e-3, kHierarchyCoarser = 1e-2;
 /// Every exponential more is faster than the last, and steps follow the fastest.
 constexpr double kDrivenSum = 1e-5, kDrivenCoarser = 1e-4;
 constexpr double kBelow = 0.3;  ///< Deeper does not help once depth tells this little beside the sums.
-constexpr double kOfDistance = 0.03;  ///< Error of an answer over what the distance of the states could do to it.
-constexpr double kOfAvailable = 0.3, kUsualMemory = 4e9;
+constexpr double kOfStates = 0.03;  ///< Error of an answer over what the distance of the states could do to it.
+constexpr double kOfMemory = 0.3, kMemoryIfUnknown = 4e9;
 
 /// The largest E_max - E_min along s, with some to spare for what lies between: frequencies of the system stay
 /// below it [rad/ns].
@@ -118,7 +118,7 @@ void refine(PointTask& task, HierarchyRefinement refinement) {
     if (!answer) return task.fail(answer.error());
     for (const CoarserStates& coarser : answer->coarser) {
       visit_all(task, coarser.states);
-      task.end_coarser_run({coarser.weight, kOfDistance * coarser.weight});
+      task.end_coarser_run({coarser.weight, kOfStates * coarser.weight});
     }
     visit_all(task, answer->states);
     const std::vector<double> floor(task.times().size(), answer->floor);
@@ -134,7 +134,7 @@ void run_hierarchy(const PlanModel& model, PointTask& task, OpenSystem system, s
   run.breaks.assign(task.breaks().begin(), task.breaks().end());
   HierarchyOptions options;
   if (model.plan().choice.depth) options.depth = static_cast<int>(*model.plan().choice.depth);
-  options.max_bytes = kOfAvailable * memory_available().value_or(kUsualMemory);
+  options.max_bytes = kOfMemory * memory_available().value_or(kMemoryIfUnknown);
   options.tolerance = std::min(1e-8, 0.01 * model.plan().tolerance);
   options.coarser_baths = std::move(coarser);
   options.interrupted = interrupted;
@@ -159,7 +159,7 @@ void run_driven(PointTask& task, const OpenSystem& system, const std::vector<Exp
     if (!first) {
       const auto other = propagate(second);
       if (!other) return task.fail(other.error());
-      task.end_coarser_run({ratio, kOfDistance * ratio});
+      task.end_coarser_run({ratio, kOfStates * ratio});
     }
     const auto counters = propagate(system);
     if (!counters) return task.fail(counters.error());

@@ -1,5 +1,7 @@
 #include "runtime/experiment/noise_of_point.h"
 
+#include <fmt/format.h>
+
 #include <algorithm>
 #include <cmath>
 #include <limits>
@@ -9,6 +11,7 @@
 #include "runtime/bath/bath_times.h"
 #include "runtime/bath/half_range.h"
 #include "runtime/experiment/bath_of_plan.h"
+#include "runtime/experiment/words.h"
 
 namespace tarn::runtime {
 namespace {
@@ -27,6 +30,15 @@ GrowingFunction growing_of(const ThermalBath& bath, double duration) {
     const auto n = static_cast<Eigen::Index>(w.size());
     Eigen::Map<Eigen::ArrayXcd>(out, n) = (*made)(t, Eigen::Map<const Eigen::ArrayXd>(w.data(), n));
   };
+}
+
+/// A bound on |A| along s; exact for one Pauli word.
+double largest_norm(const OperatorSum& op, const Functions& functions, const RangeOfS& range) {
+  double norm = 0;
+  for (const double x : {0.0, 0.25, 0.5, 0.75, 1.0}) {
+    norm = std::max(norm, norm_bound(scaled_words(op, functions.values(kCoefficients, range.lowest + x * (range.highest - range.lowest), 0))));
+  }
+  return norm;
 }
 
 }  // namespace
@@ -74,6 +86,44 @@ std::vector<FastBath> fast_noise_of(const EquationChoice& choice, const NoiseOpe
     of_operator.push_back(found->second);
   }
   return of_operator;
+}
+
+Result<BathTimes, RunError> bath_times_of_run(const Plan& plan, std::uint32_t bath, const ThermalBath& made, double duration) {
+  auto times = bath_times(made, duration > 0 ? duration : 1.0);
+  if (times && !(duration > 0) && std::isfinite(times->tau_sb)) times = bath_times(made, 10 * times->tau_sb);
+  if (!times) return Unexpected{bath_error(plan, bath, times.error())};
+  return *times;
+}
+
+double width_bound(const Plan& plan, const Functions& functions, const RangeOfS& range) {
+  double most = 1e-3;
+  for (const double x : {0.0, 0.25, 0.5, 0.75, 1.0}) {
+    const double s = range.lowest + x * (range.highest - range.lowest);
+    most = std::max(most, 2 * norm_bound(scaled_words(plan.chip.hamiltonian, functions.values(kCoefficients, s, 0))));
+  }
+  return most;
+}
+
+Result<std::vector<double>, RunError> windows_of(const Plan& plan, const NoiseOperators& noise,
+                                                 const ThermalBaths& baths,
+                                                 const Functions& functions, const RangeOfS& range, const PointTask& task) {
+  std::vector<double> windows;
+  if (plan.choice.equation != Equation::coarse_grained) return windows;
+  if (plan.choice.window) {
+    const auto given = finite_setting(*plan.choice.window, task.settings(), "the window");
+    if (!given) return Unexpected{given.error()};
+    if (!(*given > 0)) {
+      return Unexpected{RunError{"window_out_of_range", fmt::format("the window is {:.6g} ns; it must be above 0", *given), plan.choice.window->place}};
+    }
+    windows.assign(noise.ops.size(), *given);
+    return windows;
+  }
+  for (std::size_t c = 0; c < noise.ops.size(); ++c) {
+    const auto window = automatic_window(plan, noise.bath[c], *baths[noise.bath[c]], largest_norm(noise.ops[c], functions, range), task.timeline().duration());
+    if (!window) return Unexpected{window.error()};
+    windows.push_back(*window);
+  }
+  return windows;
 }
 
 }  // namespace tarn::runtime

@@ -5,6 +5,7 @@
 #include <span>
 #include <vector>
 
+#include "runtime/bath/bath_times.h"
 #include "runtime/experiment/chip_family.h"
 #include "runtime/generator/operator_form.h"
 
@@ -23,6 +24,17 @@ Result<ThermalBaths, RunError> fast_baths(const Plan& plan, std::span<const doub
 /// 0: of 10 tau_SB. Source: the geometric mean is common practice; times: Quantum 4, 227 (2020). Errors: `bad_bath`.
 Result<double, RunError> automatic_window(const Plan& plan, std::uint32_t bath, const ThermalBath& made, double norm,
                                           double duration);
+
+/// tau_SB of a unit operator and tau_B with the run's length; without a pace 10 tau_SB. Errors: `bad_bath`.
+Result<BathTimes, RunError> bath_times_of_run(const Plan& plan, std::uint32_t bath, const ThermalBath& made, double duration);
+
+/// A bound on E_max - E_min along s, from the words of H [rad/ns].
+double width_bound(const Plan& plan, const Functions& functions, const RangeOfS& range);
+
+/// The averaging time of every noise operator [ns]; none where the equation does not average. Errors: `bad_bath`,
+/// `not_finite`, `window_out_of_range`.
+Result<std::vector<double>, RunError> windows_of(const Plan& plan, const NoiseOperators& noise, const ThermalBaths& baths,
+                                                 const Functions& functions, const RangeOfS& range, const PointTask& task);
 
 /// A FastBath for every noise operator, good for frequencies up to `width` [rad/ns] and times up to `duration`
 /// [ns]. `windows`: of each operator, for `coarse_grained`.

@@ -5,6 +5,7 @@
 #include <algorithm>
 #include <cmath>
 #include <complex>
+#include <numbers>
 
 #include "runtime/equation/propagate_open.h"
 #include "runtime/experiment/bath_of_plan.h"
@@ -36,13 +37,15 @@ double widest(const LevelModel<Scalar>& model, const RangeOfS& range) {
   return std::max(1.05 * most, 1e-6);
 }
 
-/// A bound on |A| along s; exact for one Pauli word.
-double largest_norm(const OperatorSum& op, const Functions& functions, const RangeOfS& range) {
-  double norm = 0;
-  for (const double x : {0.0, 0.25, 0.5, 0.75, 1.0}) {
-    norm = std::max(norm, norm_bound(scaled_words(op, functions.values(kCoefficients, range.lowest + x * (range.highest - range.lowest), 0))));
-  }
-  return norm;
+/// A window makes some width x window / pi jump operators of every bath, which change along s as fast: beyond
+/// this phase [rad] tables no longer fit.
+constexpr double kMostTurnsOfWindow = 1500;
+
+RunError window_too_long(const Plan& plan, double window, double width) {
+  return {"window_too_long",
+          fmt::format("a window of {:.4g} ns is too long for levels {:.4g} GHz apart: up to {:.3g} ns can be tabulated; such a window averages as `davies` does",
+                      window, width / (2 * std::numbers::pi), 2 * kMostTurnsOfWindow / width),
+          plan.choice.place};
 }
 
 struct Request {
@@ -60,6 +63,10 @@ template <class Scalar>
 Result<std::shared_ptr<const NoiseTable>, RunError> make_table(const HamiltonianFamily& family, const Request& request) {
   const Plan& plan = request.plan;
   const LevelModel<Scalar> model = dense_levels<Scalar>(family);
+  const double width = widest(model, request.range);
+  for (const double window : request.windows) {
+    if (!(0.5 * width * window < kMostTurnsOfWindow)) return Unexpected{window_too_long(plan, window, width)};
+  }
   EquationChoice choice = plan.choice;
   if (!request.grows) choice.memory = Memory::markov;
   NoiseTableOptions options;
@@ -73,33 +80,10 @@ Result<std::shared_ptr<const NoiseTable>, RunError> make_table(const Hamiltonian
     options.breaks = request.task.breaks();
   }
   options.interrupted = request.interrupted;
-  auto table = NoiseTable::make<Scalar>(model, fast_noise_of(choice, request.noise, request.baths, widest(model, request.range),
+  auto table = NoiseTable::make<Scalar>(model, fast_noise_of(choice, request.noise, request.baths, width,
                                                               request.task.timeline().duration(), request.windows), options);
   if (!table) return Unexpected{RunError{"interrupted", "stopped before the end", {}}};
   return table;
-}
-
-/// The averaging time of every noise operator; none where the equation does not average.
-Result<std::vector<double>, RunError> windows_of(const Plan& plan, const NoiseOperators& noise,
-                                                 const ThermalBaths& baths,
-                                                 const Functions& functions, const RangeOfS& range, const PointTask& task) {
-  std::vector<double> windows;
-  if (plan.choice.equation != Equation::coarse_grained) return windows;
-  if (plan.choice.window) {
-    const auto given = finite_setting(*plan.choice.window, task.settings(), "the window");
-    if (!given) return Unexpected{given.error()};
-    if (!(*given > 0)) {
-      return Unexpected{RunError{"window_out_of_range", fmt::format("the window is {:.6g} ns; it must be above 0", *given), plan.choice.window->place}};
-    }
-    windows.assign(noise.ops.size(), *given);
-    return windows;
-  }
-  for (std::size_t c = 0; c < noise.ops.size(); ++c) {
-    const auto window = automatic_window(plan, noise.bath[c], *baths[noise.bath[c]], largest_norm(noise.ops[c], functions, range), task.timeline().duration());
-    if (!window) return Unexpected{window.error()};
-    windows.push_back(*window);
-  }
-  return windows;
 }
 
 }  // namespace

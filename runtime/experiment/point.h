@@ -15,6 +15,7 @@
 #include "runtime/experiment/generator_at.h"
 #include "runtime/experiment/observations.h"
 #include "runtime/experiment/plan_model.h"
+#include "runtime/validity/validity.h"
 
 namespace tarn::runtime {
 
@@ -80,6 +81,7 @@ class PointTask {
   void note_held_offsets();
   void note_lacking(const InstantReadings& readings, double s);
   Result<InstantReadings, RunError> make_readings(const Observation& observation);
+  Result<double, RunError> verdict_until(Instant at);
   const InstantReadings* readings_of(std::size_t observation);
   double largest_phase() const;
   std::vector<Measured> readings_with_errors(std::size_t observation) const;
@@ -120,6 +122,7 @@ class PointTask {
   double rounding_ = 0;                            ///< Of coherences, by the phase they have gathered.
   std::vector<double> shared_;                     ///< Error of the state at each observation that all runs share.
   double floor_ = 0;
+  std::vector<std::pair<double, Validity>> verdicts_;  ///< Of the equation, at instants [ns] along the run.
   double tolerance_ = 0;
   bool wants_run_ = false;
   PointOutcome outcome_;

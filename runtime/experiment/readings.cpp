@@ -69,6 +69,7 @@ struct InstantReadings::Preparer {
   const Target* target;
   std::span<const double> coefficients;  ///< Of all operators at the instant.
   const ModeAt& mode;
+  const VerdictAt& verdict;
   Prepared& prepared;                    ///< To be filled.
   double& norm;
   std::vector<std::string>& reasons;  ///< Why values are lacking.
@@ -137,9 +138,10 @@ struct InstantReadings::Preparer {
     if (found->share < kOneMode) reasons.push_back("`" + name + "` is marked: several modes share what decays, and the one it is of carries less than 90 %");
     return done(OfLevels{{1 / found->rate, 0}}, 0);
   }
-  Outcome operator()(const ReadVerdict&) const { return not_yet("verdict"); }
-  static Outcome not_yet(const std::string& word) {
-    return Unexpected{RunError{"not_available", "`" + word + "` is not available yet"}};
+  Outcome operator()(const ReadVerdict&) const {
+    const auto found = verdict(at);
+    if (!found) return Unexpected{found.error()};
+    return done(OfLevels{{*found, 0}}, 0);
   }
 
   /// The reading has no value at this instant; others may.
@@ -173,13 +175,13 @@ InstantReadings::Preparer::Outcome InstantReadings::Preparer::operator()(const R
 Result<InstantReadings, RunError> InstantReadings::make(const Plan& plan, std::span<const std::uint32_t> rows,
                                                         Instant at, const Functions& functions, ChipLevels& levels,
                                                         std::span<const double> settings, const Target* target,
-                                                        const ModeAt& mode) {
+                                                        const ModeAt& mode, const VerdictAt& verdict) {
   const std::vector<double> coefficients = functions.values(kCoefficients, at.s, at.t);
   InstantReadings readings;
   readings.prepared_.resize(plan.readings.size());
   readings.norms_.assign(plan.readings.size(), 0.0);
   for (const std::uint32_t row : rows) {
-    const Preparer prepare{plan, at, levels, settings, target, coefficients, mode, readings.prepared_[row],
+    const Preparer prepare{plan, at, levels, settings, target, coefficients, mode, verdict, readings.prepared_[row],
                            readings.norms_[row], readings.lacking_};
     const auto done = std::visit(prepare, plan.readings[row]);
     if (!done) return Unexpected{done.error()};

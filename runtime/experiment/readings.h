@@ -32,6 +32,9 @@ struct ReadingSums {
 /// equation has no such generator.
 using ModeAt = std::function<Result<Mode, RunError>(double s, std::optional<LevelPair> pair)>;
 
+/// The worst verdict on the equation up to an instant: 0 within, 1 marginal, 2 outside.
+using VerdictAt = std::function<Result<double, RunError>(Instant at)>;
+
 class InstantReadings {
  public:
   /// Prepares readings `rows` of the plan at `at`; others and reductions stay 0.
@@ -39,7 +42,7 @@ class InstantReadings {
   static Result<InstantReadings, RunError> make(const Plan& plan, std::span<const std::uint32_t> rows, Instant at,
                                                 const Functions& functions, ChipLevels& levels,
                                                 std::span<const double> settings, const Target* target,
-                                                const ModeAt& mode);
+                                                const ModeAt& mode, const VerdictAt& verdict);
 
   ReadingSums empty_sums() const;
   /// Adds a state with its weight. The kets of a mixture are orthonormal and evolve unitarily.

@@ -5,13 +5,13 @@
 #include "runtime/trajectories/unravelling.h"
 
 namespace tarn::runtime {
-namespace {
+// Named, because the functions handed out hold them: GCC warns of that where sources are joined.
 
 using Complex = std::complex<double>;
 using Index = Eigen::Index;
 
 /// Pairs (n, m) that one jump joins, and how often it comes.
-struct JumpGroup {
+struct LevelJumpGroup {
   std::size_t coupling;
   std::vector<std::uint32_t> pairs;  ///< n + K m.
   double rate, shift;
@@ -19,14 +19,14 @@ struct JumpGroup {
 
 /// The jumps of one instant, in its levels.
 template <class Scalar>
-struct Instant {
+struct LevelInstant {
   Frame<Scalar> frame;
   std::vector<Matrix<Scalar>> elements;  ///< Of each coupling.
-  std::vector<JumpGroup> groups;
+  std::vector<LevelJumpGroup> groups;
 };
 
 template <class Scalar>
-struct Davies {
+struct DaviesUnravelling {
   LevelModel<Scalar> model;
   std::vector<BathFunctions> baths;
   double tolerance;
@@ -34,8 +34,8 @@ struct Davies {
   LabOperators lab = {};
   std::shared_ptr<const SmoothTable> table = {};
 
-  Instant<Scalar> at(double s) const {
-    Instant<Scalar> now;
+  LevelInstant<Scalar> at(double s) const {
+    LevelInstant<Scalar> now;
     now.frame = model.solve(s, levels);
     const FrequencyGroups frequencies = frequency_groups(now.frame.energies, tolerance);
     std::vector<double> w(frequencies.count(), 0.0), rates(w.size()), shifts(w.size(), 0.0);
@@ -52,7 +52,7 @@ struct Davies {
       baths[c].rate(w, rates.data());
       if (baths[c].shift) baths[c].shift(w, shifts.data());
       for (std::size_t g = 0; g < w.size(); ++g) {
-        JumpGroup group{c, {}, rates[g], baths[c].shift ? shifts[g] : 0.0};
+        LevelJumpGroup group{c, {}, rates[g], baths[c].shift ? shifts[g] : 0.0};
         for (const std::uint32_t pair : pairs_of(g))
           if (std::abs(elements.data()[pair]) > negligible) group.pairs.push_back(pair);
         if (!group.pairs.empty()) now.groups.push_back(std::move(group));
@@ -72,10 +72,10 @@ struct Davies {
   }
 
   Eigen::MatrixXcd bath_drift(double s) const {
-    const Instant<Scalar> now = at(s);
+    const LevelInstant<Scalar> now = at(s);
     // sum A_w^dagger A_w (gamma/2 + i S).
     Eigen::MatrixXcd loss = Eigen::MatrixXcd::Zero(levels, levels);
-    for (const JumpGroup& group : now.groups) {
+    for (const LevelJumpGroup& group : now.groups) {
       const Scalar* a = now.elements[group.coupling].data();
       const Complex weight(0.5 * group.rate, group.shift);
       for (const std::uint32_t p : group.pairs)
@@ -87,7 +87,7 @@ struct Davies {
   }
 
   void jumps(double s, double t, const Ket& psi, JumpImages& out) const {
-    const Instant<Scalar> now = at(s);
+    const LevelInstant<Scalar> now = at(s);
     const auto coefficients = lab_coefficients(lab, s, t);
     TARN_CHECK(coefficients.has_value());
     const auto groups = static_cast<Index>(now.groups.size()), own = static_cast<Index>(lab.jumps.size());
@@ -97,7 +97,7 @@ struct Davies {
     const bool stays = own == 0;
     Eigen::MatrixXcd images = Eigen::MatrixXcd::Zero(levels, groups);
     for (Index g = 0; g < groups; ++g) {
-      const JumpGroup& group = now.groups[static_cast<std::size_t>(g)];
+      const LevelJumpGroup& group = now.groups[static_cast<std::size_t>(g)];
       const Scalar* a = now.elements[group.coupling].data();
       for (const std::uint32_t pair : group.pairs)
         images(pair % levels, g) += std::sqrt(group.rate) * Complex(a[pair]) * inside[pair / levels];
@@ -115,14 +115,12 @@ struct Davies {
   }
 };
 
-}  // namespace
-
 template <class Scalar>
 Unravelling unravel_davies(LevelModel<Scalar> model, std::vector<BathFunctions> baths, double tolerance, Index levels,
                            LabOperators lab, bool reads_t, std::shared_ptr<const SmoothTable> table) {
   TARN_CHECK(baths.size() == model.couplings);
   const Index dimension = model.dimension, kept = levels > 0 ? std::min(levels, dimension) : dimension;
-  const auto davies = std::make_shared<const Davies<Scalar>>(Davies<Scalar>{std::move(model), std::move(baths), tolerance, kept, std::move(lab), std::move(table)});
+  const auto davies = std::make_shared<const DaviesUnravelling<Scalar>>(DaviesUnravelling<Scalar>{std::move(model), std::move(baths), tolerance, kept, std::move(lab), std::move(table)});
   Unravelling made;
   made.dimension = dimension;
   made.reads_t = reads_t;
@@ -135,7 +133,7 @@ template <class Scalar>
 std::shared_ptr<const SmoothTable> davies_drift(const LevelModel<Scalar>& model, const std::vector<BathFunctions>& baths, double tolerance,
                                                 Index levels, const SmoothTable::Options& options) {
   const Index dimension = model.dimension;
-  const Davies<Scalar> davies{model, baths, tolerance, levels > 0 ? std::min(levels, dimension) : dimension};
+  const DaviesUnravelling<Scalar> davies{model, baths, tolerance, levels > 0 ? std::min(levels, dimension) : dimension};
   SmoothTable::Options sized = options;
   sized.size = static_cast<std::size_t>(2 * dimension * dimension);
   const auto made = SmoothTable::make([&](double s, double* out) {

@@ -11,11 +11,11 @@ namespace {
 
 constexpr double kNone = std::numeric_limits<double>::quiet_NaN();
 
-double worst_ratio(const Judgement& judgement) {
+double worst_ratio(const ValidityJudgement& judgement) {
   return judgement.conditions.empty() ? 0.0 : judgement.conditions[judgement.worst].ratio;
 }
 
-std::string reason_of(const Judgement& at) {
+std::string reason_of(const ValidityJudgement& at) {
   if (at.conditions.empty()) return "";
   const ConditionRatio& worst = at.conditions[at.worst];
   return fmt::format("{} at s = {:.4g}, t = {:.4g} ns by `{}` ({:.2g}): {}", validity_name(at.validity), at.s, at.t, worst.condition->name,
@@ -33,7 +33,7 @@ std::vector<std::string> scale_names(Equation equation) {
 
 }  // namespace
 
-RunValidity run_validity(std::span<const Judgement> run) {
+RunValidity run_validity(std::span<const ValidityJudgement> run) {
   TARN_CHECK(!run.empty());
   RunValidity whole;
   for (std::size_t k = 0; k < run.size(); ++k) {
@@ -53,7 +53,7 @@ RunValidity run_validity(std::span<const Judgement> run) {
 
 std::vector<ValidityColumn> validity_columns(Equation equation) {
   std::vector<ValidityColumn> columns{{"s", ""}, {"t", "ns"}, {"tau_SB", "ns"}, {"tau_B", "ns"}};
-  if (equation == Equation::coarse_grained) columns.push_back({"window", "ns"});
+  if (equation == Equation::coarse_grained) columns.push_back(ValidityColumn{"window", "ns"});
   columns.push_back({"T1", "ns"});
   columns.push_back({"T2", "ns"});
   columns.push_back({"smallest spacing", "GHz"});
@@ -63,7 +63,7 @@ std::vector<ValidityColumn> validity_columns(Equation equation) {
   return columns;
 }
 
-std::vector<double> validity_numbers(const Judgement& at, Equation equation) {
+std::vector<double> validity_numbers(const ValidityJudgement& at, Equation equation) {
   std::vector<double> numbers{at.s, at.t, at.tau_sb, at.tau_b};
   if (equation == Equation::coarse_grained) numbers.push_back(at.window);
   numbers.push_back(at.t1.value_or(kNone));

@@ -25,7 +25,7 @@ struct RunValidity {
 };
 
 /// Precondition: `run` is not empty.
-RunValidity run_validity(std::span<const Judgement> run);
+RunValidity run_validity(std::span<const ValidityJudgement> run);
 
 /// A column of validity.csv; unit empty for plain numbers.
 struct ValidityColumn {
@@ -37,6 +37,6 @@ std::vector<ValidityColumn> validity_columns(Equation equation);
 
 /// A row of as many numbers, in the units of the columns; NaN where there is none: no mode, or a condition
 /// that this variant of the equation has not.
-std::vector<double> validity_numbers(const Judgement& judgement, Equation equation);
+std::vector<double> validity_numbers(const ValidityJudgement& judgement, Equation equation);
 
 }  // namespace tarn::runtime

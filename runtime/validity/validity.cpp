@@ -20,24 +20,24 @@ struct Ratio {
   std::string sentence;
 };
 
-Ratio bath_memory(const ValidityInput& in, const Judgement& of) {
+Ratio bath_memory(const ValidityInput& in, const ValidityJudgement& of) {
   double sum = 0;
   for (const NoiseScale& noise : in.noises) sum += noise.times.tau_b / noise.tau_sb();
   return {sum, fmt::format("the bath remembers for {:.3g} ns and changes the state within {:.3g} ns", of.tau_b, of.tau_sb)};
 }
 
-Ratio drive_over_memory(const ValidityInput& in, const Judgement& of) {
+Ratio drive_over_memory(const ValidityInput& in, const ValidityJudgement& of) {
   return {in.drive * of.tau_b * of.tau_b, fmt::format("while the bath remembers ({:.3g} ns) the Hamiltonian moves by {:.3g} GHz", of.tau_b,
                                                        gigahertz(in.drive * of.tau_b))};
 }
 
-Ratio secular(const ValidityInput& in, const Judgement& of) {
+Ratio secular(const ValidityInput& in, const ValidityJudgement& of) {
   return {in.secular, fmt::format("jumps that are taken apart interfere: the fastest decay is {:.3g}/ns, the narrowest spacing of frequencies "
                                   "{:.3g} GHz",
                                   in.largest_rate, gigahertz(of.spacing))};
 }
 
-Ratio window_memory(const ValidityInput& in, const Judgement&) {
+Ratio window_memory(const ValidityInput& in, const ValidityJudgement&) {
   Ratio worst;
   for (const NoiseScale& noise : in.noises) {
     const double ratio = noise.times.tau_b / noise.window;
@@ -48,27 +48,27 @@ Ratio window_memory(const ValidityInput& in, const Judgement&) {
   return worst;
 }
 
-Ratio window_relaxation(const ValidityInput& in, const Judgement& of) {
+Ratio window_relaxation(const ValidityInput& in, const ValidityJudgement& of) {
   return {of.window * in.largest_rate, fmt::format("the window is {:.3g} ns, the fastest decay takes {:.3g} ns", of.window,
                                                     in.largest_rate > 0 ? 1 / in.largest_rate : kInfinity)};
 }
 
-Ratio window_heating(const ValidityInput& in, const Judgement& of) {
+Ratio window_heating(const ValidityInput& in, const ValidityJudgement& of) {
   return {in.heating, fmt::format("averaging over {:.3g} ns moves the balance of two levels by {:.2g}", of.window, in.heating)};
 }
 
-Ratio drive_over_window(const ValidityInput& in, const Judgement& of) {
+Ratio drive_over_window(const ValidityInput& in, const ValidityJudgement& of) {
   return {in.drive * of.window * of.tau_b,
           fmt::format("within the window ({:.3g} ns) the Hamiltonian moves by {:.3g} GHz, and the bath remembers for {:.3g} ns", of.window,
                       gigahertz(in.drive * of.window), of.tau_b)};
 }
 
-Ratio leakage(const ValidityInput& in, const Judgement&) {
+Ratio leakage(const ValidityInput& in, const ValidityJudgement&) {
   return {in.leakage / in.tolerance,
           fmt::format("a population of {:.2g} has left the levels kept, {:.2g} is the tolerance", in.leakage, in.tolerance)};
 }
 
-Ratio ratio_of(ConditionKind kind, const ValidityInput& in, const Judgement& of) {
+Ratio ratio_of(ConditionKind kind, const ValidityInput& in, const ValidityJudgement& of) {
   switch (kind) {
     case ConditionKind::bath_memory: return bath_memory(in, of);
     case ConditionKind::drive_over_memory: return drive_over_memory(in, of);
@@ -130,9 +130,9 @@ double smallest_spacing(const Eigen::VectorXd& energies) {
   return smallest;
 }
 
-Judgement judge(const ValidityInput& in) {
+ValidityJudgement judge(const ValidityInput& in) {
   TARN_CHECK(in.tolerance > 0);
-  Judgement judged;
+  ValidityJudgement judged;
   judged.s = in.s;
   judged.t = in.t;
   judged.t1 = in.t1;

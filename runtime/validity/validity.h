@@ -63,7 +63,7 @@ struct ErrorScale {
   double value = 0;
 };
 
-struct Judgement {
+struct ValidityJudgement {
   double s = 0, t = 0;
   std::vector<ConditionRatio> conditions;  ///< In the order of kConditions; none for an equation without conditions.
   std::size_t worst = 0;                   ///< The largest ratio, if there are conditions.
@@ -75,7 +75,7 @@ struct Judgement {
   double spacing = std::numeric_limits<double>::infinity();                        ///< smallest_spacing() [rad/ns]
 };
 
-Judgement judge(const ValidityInput& input);
+ValidityJudgement judge(const ValidityInput& input);
 
 /// The smallest difference of two Bohr frequencies E_m - E_n that is no coincidence (above 1e-8 of the width) [rad/ns];
 /// infinity if there is none.

@@ -84,7 +84,7 @@ TEST_CASE("a driven anneal under Redfield's equation, written out, for 1 to 3 qu
     CHECK(table->resolved());
     const Density start = ground_state(Track<double>(model, {}), 0);
     const Density expected = brute_ramp(family, gamma, 1.0, start, 400);
-    const Density found = run_open(family, table, ramp(1.0), start, 1e-10);
+    const Density found = run_open(family, table, tarn::runtime::testing::ramp(1.0), start, 1e-10);
     CHECK((found - expected).norm() < 2e-7);
     CHECK(std::abs(found.trace() - 1.0) < 1e-12);
     CHECK((found - found.adjoint()).norm() < 1e-13);

@@ -332,11 +332,11 @@ std::optional<std::vector<CaseVerdict>> judged_case(const RandomCase& one, doubl
     verdict.equation = equation;
     const auto found = answers(one, equation);
     verdict.error = found ? largest_difference(one, *found, *exact) : std::numeric_limits<double>::infinity();
-    std::vector<Judgement> run;
+    std::vector<ValidityJudgement> run;
     for (const ValidityInput& input : inputs_along(one, equation, 11)) run.push_back(judge(input));
     verdict.validity = run_validity(run);
     verdict.ratios.assign(run[0].conditions.size(), 0.0);
-    for (const Judgement& judgement : run)
+    for (const ValidityJudgement& judgement : run)
       for (std::size_t k = 0; k < verdict.ratios.size(); ++k) verdict.ratios[k] = std::max(verdict.ratios[k], judgement.conditions[k].ratio);
     verdicts.push_back(std::move(verdict));
   }

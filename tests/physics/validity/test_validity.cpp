@@ -13,7 +13,7 @@ using namespace tarn::runtime;
 
 namespace {
 
-constexpr double kTwoPi = 2 * std::numbers::pi;
+constexpr double kWholeTurn = 2 * std::numbers::pi;
 
 /// An exponential C = c exp(-nu t) has tau_SB = nu/c, tau_B = 1/nu: closed form.
 NoiseScale exponential_noise(double c, double nu, double norm = 1) { return {norm, {nu / c, 1 / nu, 0, 0}, 0}; }
@@ -30,7 +30,7 @@ ValidityInput qubit(Equation equation) {
   return in;
 }
 
-const ConditionRatio* find(const Judgement& judgement, ConditionKind kind) {
+const ConditionRatio* find(const ValidityJudgement& judgement, ConditionKind kind) {
   for (const ConditionRatio& ratio : judgement.conditions)
     if (ratio.condition->kind == kind) return &ratio;
   return nullptr;
@@ -81,7 +81,7 @@ TEST_CASE("the table names every condition once, and every fast equation has one
 TEST_CASE("memory against relaxation, two operators, one of norm 2") {
   ValidityInput in = qubit(Equation::redfield);
   in.noises = {exponential_noise(0.5, 10), exponential_noise(0.1, 5, 2)};  // tau_B/tau_SB: 0.005 and 0.016.
-  const Judgement judged = judge(in);
+  const ValidityJudgement judged = judge(in);
   const ConditionRatio* memory = find(judged, ConditionKind::bath_memory);
   REQUIRE(memory);
   CHECK(memory->ratio == Approx(memory->condition->weight * (0.5 / 100 + 4 * 0.1 / 25)));
@@ -94,7 +94,7 @@ TEST_CASE("memory against relaxation, two operators, one of norm 2") {
 TEST_CASE("the drive counts against the memory, not where the equation follows it") {
   ValidityInput in = qubit(Equation::redfield);
   in.drive = 30;
-  const Judgement still = judge(in);
+  const ValidityJudgement still = judge(in);
   REQUIRE(find(still, ConditionKind::drive_over_memory));
   CHECK(find(still, ConditionKind::drive_over_memory)->ratio == Approx(30 * 0.1 * 0.1));
   CHECK(still.validity == Validity::marginal);
@@ -105,7 +105,7 @@ TEST_CASE("the drive counts against the memory, not where the equation follows i
 
 TEST_CASE("the window of the coarse-grained equation lies between two times") {
   ValidityInput in = qubit(Equation::coarse_grained);
-  const Judgement judged = judge(in);
+  const ValidityJudgement judged = judge(in);
   CHECK(find(judged, ConditionKind::window_memory)->ratio == Approx(0.1 / 1.5));
   CHECK(find(judged, ConditionKind::window_relaxation)->ratio == Approx(1.5 * 0.03));
   in.noises[0].window = 0.05;  // Shorter than the memory.
@@ -173,7 +173,7 @@ TEST_CASE("heating by a window is what averaging does to two levels") {
 }
 
 TEST_CASE("along a run: the worst place, where the verdict changes and why") {
-  std::vector<Judgement> run;
+  std::vector<ValidityJudgement> run;
   for (int k = 0; k <= 10; ++k) {
     ValidityInput in = qubit(Equation::davies);
     in.s = k / 10.0;
@@ -207,7 +207,7 @@ TEST_CASE("a row has a number for each column, whatever the equation") {
       for (std::size_t k = 0; k < columns.size(); ++k) {
         if (columns[k].name == "T1") CHECK(numbers[k] == 40);
         if (columns[k].name == "T2") CHECK(std::isnan(numbers[k]));
-        if (columns[k].name == "smallest spacing") CHECK(numbers[k] == Approx(6 / kTwoPi));
+        if (columns[k].name == "smallest spacing") CHECK(numbers[k] == Approx(6 / kWholeTurn));
         if (columns[k].name == "ratio drive over memory") CHECK(std::isnan(numbers[k]) == (memory == Memory::driven && equation == Equation::redfield));
       }
     }
