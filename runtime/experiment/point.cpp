@@ -199,7 +199,13 @@ Result<double, RunError> PointTask::verdict_until(Instant at) {
     if (!judged) return Unexpected{judged.error()};
     for (const ValidityJudgement& judgement : *judged) verdicts_.emplace_back(judgement.t, judgement.validity);
     const RunValidity run = run_validity(*judged);
-    if (run.validity != Validity::within) remark(fmt::format("{}: {}", equation_name(plan_.choice), run.reason));
+    const ValidityJudgement& at_worst = (*judged)[run.worst];
+    if (run.validity != Validity::within) {
+      // Without t, so that runs of several lengths say it once.
+      const ConditionRatio& worst = at_worst.conditions[at_worst.worst];
+      remark(fmt::format("{} is {}, worst at s = {:.4g} by `{}` ({:.2g}): {}", equation_name(plan_.choice), validity_name(run.validity),
+                         at_worst.s, worst.condition->name, worst.ratio, worst.sentence));
+    }
   }
   Validity worst = Validity::within;
   for (const auto& [t, validity] : verdicts_) {
@@ -304,8 +310,14 @@ std::vector<Comparison> PointTask::comparisons(std::size_t i) const {
 
 Answer PointTask::answer_of(std::size_t i, std::uint32_t o) {
   const Observable& observable = plan_.observables[o];
-  return estimate_answer(fine_[i], comparisons(i), shared_[i], observable_rows(plan_, functions_, observations_[i].at),
-                         observable.row, observable.readings, norms_[i]);
+  Answer answer = estimate_answer(fine_[i], comparisons(i), shared_[i], observable_rows(plan_, functions_, observations_[i].at),
+                                  observable.row, observable.readings, norms_[i]);
+  // A verdict is one of three words: `<=` must not straddle its own limit.
+  const bool word = !observable.readings.empty() && std::all_of(observable.readings.begin(), observable.readings.end(), [&](std::uint32_t r) {
+    return std::holds_alternative<ReadVerdict>(plan_.readings[r]);
+  });
+  if (word) answer.error = 0;
+  return answer;
 }
 
 /// Answers of the observables that read no reduction, and the distribution.
