@@ -1,6 +1,7 @@
 #include "compiler/driver/landed.h"
 
 namespace tarn::compiler {
+
 void refuse_not_landed(std::span<const Instance> instances, Diagnostics& diagnostics) {
   for (const Instance& instance : instances) {
     if (instance.trajectories) {

@@ -10,7 +10,6 @@
 #include "runtime/experiment/memory.h"
 #include "runtime/experiment/noise_of_point.h"
 #include "runtime/experiment/words.h"
-#include "runtime/linear/eigensystem.h"
 
 namespace tarn::runtime {
 namespace {
@@ -24,23 +23,9 @@ constexpr double kBelow = 0.3;  ///< Deeper does not help once depth tells this 
 constexpr double kOfStates = 0.03;  ///< Error of an answer over what the distance of the states could do to it.
 constexpr double kOfMemory = 0.3, kMemoryIfUnknown = 4e9;
 
-/// The largest E_max - E_min along s, with some to spare for what lies between: frequencies of the system stay
-/// below it [rad/ns].
-double frequency_bound(const PlanModel& model, const Functions& functions, const RangeOfS& range) {
-  constexpr int kPlaces = 16;
-  double most = 1e-3;
-  for (int k = 0; k <= kPlaces; ++k) {
-    const double s = range.lowest + (range.highest - range.lowest) * k / kPlaces;
-    const auto words = scaled_words(model.plan().chip.hamiltonian, functions.values(kCoefficients, s, 0));
-    const Eigen::VectorXd e = eigensystem(dense_operator(words, model.plan().chip.qubits.size())).values;
-    most = std::max(most, 1.1 * (e[e.size() - 1] - e[0]));
-  }
-  return most;
-}
-
 /// The sums of every noise operator's bath.
 Result<std::vector<ExponentialSum>, RunError> sums_of(const Plan& plan, const NoiseOperators& noise,
-                                                      std::span<const std::shared_ptr<const ThermalBath>> baths,
+                                                      const ThermalBaths& baths,
                                                       double tolerance, double duration, double w_max) {
   std::vector<ExponentialSum> of_bath;
   for (std::uint32_t b = 0; b < baths.size(); ++b) {

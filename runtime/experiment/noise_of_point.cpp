@@ -4,13 +4,13 @@
 
 #include <algorithm>
 #include <cmath>
-#include <limits>
 #include <map>
 #include <utility>
 
 #include "runtime/bath/bath_times.h"
 #include "runtime/bath/half_range.h"
 #include "runtime/experiment/bath_of_plan.h"
+#include "runtime/experiment/lowest_levels.h"
 #include "runtime/experiment/words.h"
 
 namespace tarn::runtime {
@@ -55,17 +55,6 @@ Result<ThermalBaths, RunError> fast_baths(const Plan& plan, std::span<const doub
   return baths;
 }
 
-Result<double, RunError> automatic_window(const Plan& plan, std::uint32_t bath, const ThermalBath& made, double norm,
-                                          double duration) {
-  auto times = bath_times(made, duration > 0 ? duration : 1.0);
-  if (!times) return Unexpected{bath_error(plan, bath, times.error())};
-  const double tau_sb = times->tau_sb / (norm * norm);
-  if (std::isinf(tau_sb)) return std::numeric_limits<double>::infinity();
-  if (!(duration > 0)) times = bath_times(made, 10 * tau_sb);
-  if (!times) return Unexpected{bath_error(plan, bath, times.error())};
-  return std::exp2(std::round(4 * std::log2(std::sqrt(tau_sb * times->tau_b))) / 4);
-}
-
 std::vector<FastBath> fast_noise_of(const EquationChoice& choice, const NoiseOperators& noise,
                                     const ThermalBaths& baths, double width,
                                     double duration, std::span<const double> windows) {
@@ -95,11 +84,14 @@ Result<BathTimes, RunError> bath_times_of_run(const Plan& plan, std::uint32_t ba
   return *times;
 }
 
-double width_bound(const Plan& plan, const Functions& functions, const RangeOfS& range) {
-  double most = 1e-3;
-  for (const double x : {0.0, 0.25, 0.5, 0.75, 1.0}) {
-    const double s = range.lowest + x * (range.highest - range.lowest);
-    most = std::max(most, 2 * norm_bound(scaled_words(plan.chip.hamiltonian, functions.values(kCoefficients, s, 0))));
+double frequency_bound(const PlanModel& model, const Functions& functions, const RangeOfS& range) {
+  constexpr int kPlaces = 32;
+  constexpr double kToSpare = 1.1;
+  double most = 1e-6;
+  for (int k = 0; k <= kPlaces; ++k) {
+    const double s = range.lowest + (range.highest - range.lowest) * k / kPlaces;
+    const auto words = scaled_words(model.plan().chip.hamiltonian, functions.values(kCoefficients, s, 0));
+    most = std::max(most, kToSpare * all_levels(dense_operator(words, model.plan().chip.qubits.size())).width);
   }
   return most;
 }
@@ -119,9 +111,11 @@ Result<std::vector<double>, RunError> windows_of(const Plan& plan, const NoiseOp
     return windows;
   }
   for (std::size_t c = 0; c < noise.ops.size(); ++c) {
-    const auto window = automatic_window(plan, noise.bath[c], *baths[noise.bath[c]], largest_norm(noise.ops[c], functions, range), task.timeline().duration());
-    if (!window) return Unexpected{window.error()};
-    windows.push_back(*window);
+    const auto times = bath_times_of_run(plan, noise.bath[c], *baths[noise.bath[c]], task.timeline().duration());
+    if (!times) return Unexpected{times.error()};
+    const double mean = std::sqrt(times->tau_sb * times->tau_b) / largest_norm(noise.ops[c], functions, range);
+    // A bath that is no bath has no time of its own; quarters of an octave let anneals of similar length share tables.
+    windows.push_back(std::isfinite(mean) ? std::exp2(std::round(4 * std::log2(mean)) / 4) : mean);
   }
   return windows;
 }

@@ -19,19 +19,16 @@ using ThermalBaths = std::vector<std::shared_ptr<const ThermalBath>>;
 Result<ThermalBaths, RunError> fast_baths(const Plan& plan, std::span<const double> settings,
                                           std::shared_ptr<const Functions> functions);
 
-/// The averaging time of a bath for coupling operators of norm `norm` [ns]: sqrt(tau_SB tau_B), rounded to a
-/// quarter of an octave, so that anneals of similar length share their tables. tau_B is of a run of `duration`;
-/// 0: of 10 tau_SB. Source: the geometric mean is common practice; times: Quantum 4, 227 (2020). Errors: `bad_bath`.
-Result<double, RunError> automatic_window(const Plan& plan, std::uint32_t bath, const ThermalBath& made, double norm,
-                                          double duration);
-
 /// tau_SB of a unit operator and tau_B with the run's length; without a pace 10 tau_SB. Errors: `bad_bath`.
 Result<BathTimes, RunError> bath_times_of_run(const Plan& plan, std::uint32_t bath, const ThermalBath& made, double duration);
 
-/// A bound on E_max - E_min along s, from the words of H [rad/ns].
-double width_bound(const Plan& plan, const Functions& functions, const RangeOfS& range);
+/// The largest E_max - E_min along s, with some to spare for what lies between the places looked at: Bohr frequencies
+/// stay below it [rad/ns].
+double frequency_bound(const PlanModel& model, const Functions& functions, const RangeOfS& range);
 
-/// The averaging time of every noise operator [ns]; none where the equation does not average. Errors: `bad_bath`,
+/// The averaging time of every noise operator [ns]; none where the equation does not average. Automatic:
+/// sqrt(tau_SB tau_B), rounded to a quarter of an octave. Source: the geometric mean is common practice; times:
+/// Quantum 4, 227 (2020). Errors: `bad_bath`,
 /// `not_finite`, `window_out_of_range`.
 Result<std::vector<double>, RunError> windows_of(const Plan& plan, const NoiseOperators& noise, const ThermalBaths& baths,
                                                  const Functions& functions, const RangeOfS& range, const PointTask& task);

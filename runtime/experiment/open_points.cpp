@@ -18,23 +18,9 @@ namespace {
 
 using Complex = std::complex<double>;
 
-constexpr std::size_t kWidthSamples = 65;
-
 FastEquation fast_equation(Equation equation) {
   if (equation == Equation::redfield || equation == Equation::lindblad) return FastEquation::redfield;
   return equation == Equation::universal ? FastEquation::universal : FastEquation::coarse_grained;
-}
-
-/// The largest E_max - E_min along s, with a little to spare [rad/ns].
-template <class Scalar>
-double widest(const LevelModel<Scalar>& model, const RangeOfS& range) {
-  double most = 0;
-  for (std::size_t k = 0; k < kWidthSamples; ++k) {
-    const double x = static_cast<double>(k) / (kWidthSamples - 1);
-    const Eigen::VectorXd e = model.solve(range.lowest + x * (range.highest - range.lowest), model.dimension).energies;
-    most = std::max(most, e[e.size() - 1] - e[0]);
-  }
-  return std::max(1.05 * most, 1e-6);
 }
 
 /// A window makes some width x window / pi jump operators of every bath, which change along s as fast: beyond
@@ -56,6 +42,7 @@ struct Request {
   std::span<const double> windows;  ///< Of every noise operator [ns], where the equation averages.
   const PointTask& task;
   bool grows;                       ///< Coefficients are integrated up to t.
+  double width;                     ///< Bohr frequencies stay below it [rad/ns].
   const Interrupted& interrupted;
 };
 
@@ -63,7 +50,7 @@ template <class Scalar>
 Result<std::shared_ptr<const NoiseTable>, RunError> make_table(const HamiltonianFamily& family, const Request& request) {
   const Plan& plan = request.plan;
   const LevelModel<Scalar> model = dense_levels<Scalar>(family);
-  const double width = widest(model, request.range);
+  const double width = request.width;
   for (const double window : request.windows) {
     if (!(0.5 * width * window < kMostTurnsOfWindow)) return Unexpected{window_too_long(plan, window, width)};
   }
@@ -99,7 +86,8 @@ Result<OpenPoints::Table, RunError> OpenPoints::table_for(PointTask& task, bool 
   if (!finite_levels(plan, *functions)) {
     return Unexpected{RunError{"not_finite", "a coefficient of the Hamiltonian or of a noise operator is not finite"}};
   }
-  const RangeOfS range = followed_range(task.timeline());
+  // A scan has no pace: it stands at one s after the other.
+  const RangeOfS range = plan.scan ? RangeOfS{0, 1} : followed_range(task.timeline());
   std::vector<double> key = levels_key(plan, *functions, task.settings());
   key.insert(key.end(), {range.lowest, range.highest});
   for (std::uint32_t b = 0; b < plan.chip.baths.size(); ++b) {
@@ -118,7 +106,7 @@ Result<OpenPoints::Table, RunError> OpenPoints::table_for(PointTask& task, bool 
   const bool grows = plan.choice.memory == Memory::growing && !standing;
   const auto make = [&]() -> Result<Table, RunError> {
     const HamiltonianFamily family = family_of(model_, functions, *noise, task.positions());
-    const Request request{plan, *noise, *baths, range, *windows, task, grows, interrupted};
+    const Request request{plan, *noise, *baths, range, *windows, task, grows, frequency_bound(model_, *functions, range), interrupted};
     return is_real(family) ? make_table<double>(family, request) : make_table<Complex>(family, request);
   };
   // Coefficients that grow with t belong to one run.

@@ -12,32 +12,14 @@
 #include "runtime/experiment/reductions.h"
 #include "runtime/experiment/tables.h"
 #include "runtime/experiment/validity_of_point.h"
-#include "runtime/validity/along.h"
 
 namespace tarn::runtime {
 namespace {
 
 /// Vectors of level sets are kept between runs up to this many amplitudes.
 constexpr std::size_t kKeptAmplitudes = std::size_t{1} << 24;
-constexpr std::size_t kJudged = 21;  ///< Instants at which an equation is judged along a run.
 constexpr double kEpsilon = std::numeric_limits<double>::epsilon();
 constexpr double kFirstTolerance = 0.3;  ///< Of the tolerance asked: most points need two runs then.
-
-/// As the user wrote it, or its label.
-std::string equation_name(const EquationChoice& choice) {
-  if (!choice.label.empty()) return choice.label;
-  switch (choice.equation) {
-    case Equation::davies: return "davies";
-    case Equation::redfield: return "redfield";
-    case Equation::coarse_grained: return "coarse_grained";
-    case Equation::universal: return "universal";
-    case Equation::hierarchy: return "hierarchy";
-    case Equation::lindblad: return "lindblad";
-    case Equation::schroedinger: return "schroedinger";
-    case Equation::none: break;
-  }
-  return "no equation";
-}
 
 bool any_reading(const Plan& plan, bool (*holds)(const Reading&)) {
   for (const Observable& observable : plan.observables) {
@@ -190,33 +172,16 @@ Result<InstantReadings, RunError> PointTask::make_readings(const Observation& ob
                                target_ ? &*target_ : nullptr, mode, [this](Instant at) { return verdict_until(at); });
 }
 
-/// What moves is judged at even instants, once; what stands still where it is asked.
 Result<double, RunError> PointTask::verdict_until(Instant at) {
+  // Judged once: what moves along the run, what stands still where it is asked.
   const bool moves = !timeline_.segments.empty();
-  if (moves && verdicts_.empty()) {
-    const std::vector<Instant> instants = even_instants(timeline_, kJudged);
-    const auto judged = judge_point(*this, watch_.generator, instants);
+  if (!moves || !judged_) {
+    auto judged = moves ? judge_run(*this, watch_.generator) : judge_instant(*this, watch_.generator, at);
     if (!judged) return Unexpected{judged.error()};
-    for (const ValidityJudgement& judgement : *judged) verdicts_.emplace_back(judgement.t, judgement.validity);
-    const RunValidity run = run_validity(*judged);
-    const ValidityJudgement& at_worst = (*judged)[run.worst];
-    if (run.validity != Validity::within) {
-      // Without t, so that runs of several lengths say it once.
-      const ConditionRatio& worst = at_worst.conditions[at_worst.worst];
-      remark(fmt::format("{} is {}, worst at s = {:.4g} by `{}` ({:.2g}): {}", equation_name(plan_.choice), validity_name(run.validity),
-                         at_worst.s, worst.condition->name, worst.ratio, worst.sentence));
-    }
+    judged_ = std::move(judged).value();
+    if (!judged_->reason.empty()) remark(judged_->reason);
   }
-  Validity worst = Validity::within;
-  for (const auto& [t, validity] : verdicts_) {
-    if (t <= at.t + 1e-9 * timeline_.duration()) worst = std::max(worst, validity);
-  }
-  if (!moves) {
-    const auto judged = judge_point(*this, watch_.generator, {&at, 1});
-    if (!judged) return Unexpected{judged.error()};
-    worst = judged->front().validity;
-  }
-  return static_cast<double>(worst);
+  return static_cast<double>(judged_->until(moves ? at.t + 1e-9 * timeline_.duration() : at.t));
 }
 
 const InstantReadings* PointTask::readings_of(std::size_t observation) {

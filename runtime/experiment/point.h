@@ -15,7 +15,7 @@
 #include "runtime/experiment/generator_at.h"
 #include "runtime/experiment/observations.h"
 #include "runtime/experiment/plan_model.h"
-#include "runtime/validity/validity.h"
+#include "runtime/experiment/point_verdict.h"
 
 namespace tarn::runtime {
 
@@ -122,7 +122,7 @@ class PointTask {
   double rounding_ = 0;                            ///< Of coherences, by the phase they have gathered.
   std::vector<double> shared_;                     ///< Error of the state at each observation that all runs share.
   double floor_ = 0;
-  std::vector<std::pair<double, Validity>> verdicts_;  ///< Of the equation, at instants [ns] along the run.
+  std::optional<PointVerdict> judged_;             ///< Of the equation, where a reading asks.
   double tolerance_ = 0;
   bool wants_run_ = false;
   PointOutcome outcome_;

@@ -1,5 +1,7 @@
 #include "runtime/experiment/validity_of_point.h"
 
+#include <fmt/format.h>
+
 #include <algorithm>
 #include <cmath>
 #include <complex>
@@ -10,6 +12,7 @@
 #include "runtime/experiment/noise_of_point.h"
 #include "runtime/levels/track.h"
 #include "runtime/linear/eigensystem.h"
+#include "runtime/validity/along.h"
 #include "runtime/validity/secular.h"
 #include "runtime/validity/window.h"
 
@@ -17,6 +20,8 @@ namespace tarn::runtime {
 namespace {
 
 using Complex = std::complex<double>;
+constexpr std::size_t kJudgedInstants = 21;
+
 using RateFunction = std::function<void(std::span<const double>, double*)>;
 
 /// Half the distance of the outer eigenvalues.
@@ -136,8 +141,6 @@ Result<std::vector<ValidityJudgement>, RunError> judged(PointTask& task, const G
   return list;
 }
 
-}  // namespace
-
 Result<std::vector<ValidityJudgement>, RunError> judge_point(PointTask& task, const GeneratorAt& generator,
                                                              std::span<const Instant> instants) {
   const Plan& plan = task.model().plan();
@@ -151,10 +154,41 @@ Result<std::vector<ValidityJudgement>, RunError> judge_point(PointTask& task, co
   const auto windows = windows_of(plan, *operators, *baths, *functions, range, task);
   if (!windows) return Unexpected{windows.error()};
   const HamiltonianFamily family = family_of(task.model(), functions, *operators, task.positions());
-  auto noise = noise_of(task, *operators, *baths, *windows, width_bound(plan, *functions, range));
+  auto noise = noise_of(task, *operators, *baths, *windows, frequency_bound(task.model(), *functions, range));
   if (!noise) return Unexpected{noise.error()};
   if (is_real(family)) return judged<double>(task, generator, family, *std::move(noise), instants);
   return judged<Complex>(task, generator, family, *std::move(noise), instants);
+}
+
+bool has_conditions(Equation equation) {
+  return std::any_of(std::begin(kConditions), std::end(kConditions), [&](const Condition& each) { return concerns(each, equation); });
+}
+
+Result<PointVerdict, RunError> verdict_of(PointTask& task, const GeneratorAt& generator, std::span<const Instant> instants) {
+  const EquationChoice& choice = task.model().plan().choice;
+  PointVerdict verdict;
+  if (!has_conditions(choice.equation)) return verdict;
+  const auto judged = judge_point(task, generator, instants);
+  if (!judged) return Unexpected{judged.error()};
+  for (const ValidityJudgement& judgement : *judged) verdict.at.emplace_back(judgement.t, judgement.validity);
+  const RunValidity run = run_validity(*judged);
+  const ValidityJudgement& worst_place = (*judged)[run.worst];
+  if (run.validity == Validity::within || worst_place.conditions.empty()) return verdict;
+  const ConditionRatio& worst = worst_place.conditions[worst_place.worst];
+  verdict.reason = fmt::format("{} is {}, worst at s = {:.4g} by `{}` ({:.2g}): {}",
+                               choice.label.empty() ? equation_word(choice.equation) : choice.label, validity_name(run.validity),
+                               worst_place.s, worst.condition->name, worst.ratio, worst.sentence);
+  return verdict;
+}
+
+}  // namespace
+
+Result<PointVerdict, RunError> judge_run(PointTask& task, const GeneratorAt& generator) {
+  return verdict_of(task, generator, even_instants(task.timeline(), kJudgedInstants));
+}
+
+Result<PointVerdict, RunError> judge_instant(PointTask& task, const GeneratorAt& generator, Instant at) {
+  return verdict_of(task, generator, {&at, 1});
 }
 
 }  // namespace tarn::runtime

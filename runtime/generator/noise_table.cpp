@@ -126,6 +126,9 @@ std::shared_ptr<const NoiseTable> NoiseTable::make(const LevelModel<Scalar>& mod
                     : lindblad_form<Scalar>(model, frame, baths, options.shift);
   };
   auto made = std::make_shared<NoiseTable>();
+  for (const FastBath& bath : baths) {
+    if (bath.pair) made->bath_error_ += bath.pair->rate.error() + (options.shift ? bath.pair->shift.error() : 0.0);
+  }
   NoiseLayout& layout = made->layout_;
   layout.dimension = model.dimension;
   made->along_time_ = options.along != nullptr;

@@ -73,8 +73,9 @@ class NoiseTable {
   /// right_j where they do not change with s.
   const std::vector<Eigen::MatrixXcd>& fixed_right() const { return fixed_right_; }
 
-  /// Difference between table and formulas that was let stand [rad/ns].
-  double error() const { return table_->error(); }
+  /// What an element of the generator may be off by: differences between table and formulas that were let stand, and
+  /// those of the baths' pair functions, for operators of norm 1 [rad/ns].
+  double error() const { return table_->error() + bath_error_; }
   bool resolved() const { return table_->resolved(); }
   std::size_t evaluations() const { return table_->evaluations(); }
   std::size_t panels() const { return table_->panels(); }
@@ -82,6 +83,7 @@ class NoiseTable {
  private:
   NoiseLayout layout_;
   bool along_time_ = false;
+  double bath_error_ = 0;
   std::vector<Eigen::MatrixXcd> fixed_right_;
   std::optional<SmoothTable> table_;
 };

@@ -146,6 +146,9 @@ std::optional<SmoothTable> SmoothTable::make(const Function& function, const Opt
 }
 
 void SmoothTable::first(double s, std::size_t count, double* out) const {
+  // A value held at an end would look like an answer.
+  const double slack = 1e-6 * (rights_.back() - lefts_.front());
+  TARN_CHECK(s >= lefts_.front() - slack && s <= rights_.back() + slack);
   const auto after = std::upper_bound(lefts_.begin(), lefts_.end(), s);
   const std::size_t panel = after == lefts_.begin() ? 0 : static_cast<std::size_t>(after - lefts_.begin()) - 1;
   const double left = lefts_[panel], right = rights_[panel];

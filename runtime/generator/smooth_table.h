@@ -29,7 +29,7 @@ class SmoothTable {
   /// Empty if interrupted.
   static std::optional<SmoothTable> make(const Function& function, const Options& options);
 
-  /// All values at s, which is held within the range.
+  /// All values at s. Precondition: s is within the range, to rounding.
   void at(double s, double* out) const { first(s, size_, out); }
   /// The first `count` of them.
   void first(double s, std::size_t count, double* out) const;

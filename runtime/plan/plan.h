@@ -137,6 +137,12 @@ struct PaceFollow { std::vector<double> t, s; Place place; };  ///< Linear betwe
 using PacePiece = std::variant<PaceStart, PaceRamp, PaceHold, PaceStep, PaceFollow>;
 
 enum class Equation : std::uint8_t { none, schroedinger, lindblad, davies, redfield, coarse_grained, universal, hierarchy };
+/// As the language writes it.
+constexpr const char* equation_word(Equation equation) {
+  constexpr const char* kWords[] = {"none", "schroedinger", "lindblad", "davies", "redfield", "coarse_grained", "universal", "hierarchy"};
+  return kWords[static_cast<int>(equation)];
+}
+
 /// Of redfield: coefficients in the limit of long times, integrated up to t, or driven with the anneal.
 enum class Memory : std::uint8_t { markov, growing, driven };
 

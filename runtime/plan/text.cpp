@@ -160,10 +160,8 @@ std::string text(const ClaimNode& node) {
 }
 
 std::string text(const EquationChoice& choice) {
-  static constexpr const char* kEquations[] = {"none",     "schroedinger",   "lindblad",  "davies",
-                                               "redfield", "coarse_grained", "universal", "hierarchy"};
   static constexpr const char* kMemories[] = {"markov", "growing", "driven"};
-  std::string result = kEquations[static_cast<int>(choice.equation)];
+  std::string result = equation_word(choice.equation);
   if (!choice.label.empty()) result = choice.label + " = " + result;
   if (choice.equation == Equation::redfield) result += fmt::format(", memory {}", kMemories[static_cast<int>(choice.memory)]);
   if (choice.equation == Equation::coarse_grained) {
